@@ -1,0 +1,638 @@
+/*
+** libstub -- via-stub analysis for multilayer boards, in process, in SI units.
+**
+** On a multilayer board a fast signal changes layers through a plated barrel. Whatever is left of the
+** barrel beyond the layers where the signal enters and leaves is an open stub. This library says how
+** long the stubs of a via are, where they notch the channel, what they cost at a given symbol rate,
+** whether to drill them back, from which side and how deep, and does so for one via or a whole board.
+**
+** The tour, left to right; every part includes only what stands left of it:
+**
+**     status -> formulas -> material -> stackup -> via -> model -> criteria -> plan
+**
+** Eight calls make a first program:
+**
+**     lstub_layer layers[3];                    fill after LSTUB_INIT(layers[i])
+**     lstub_stackup_create(layers, 3, sizeof layers[0], NULL, &board, &err);
+**     LSTUB_INIT(via); via.drill = 0.25e-3; via.antipad = 0.75e-3; via.connects = ...
+**     lstub_model_create(board, &via, NULL, NULL, &model, &err);
+**     lstub_model_notches(model, LSTUB_ALL_STUBS, 67e9, notches, 8, sizeof notches[0], &count, &err);
+**     lstub_model_margin(model, &signal, &criteria, &margin, &err);
+**     lstub_model_destroy(model);
+**     lstub_stackup_destroy(board);
+**
+** Units      Metre, hertz, ohm, henry, farad, siemens, second. Dk is relative. Diameters, not radii,
+**            for drills, pads and antipads. Time factor exp(+jwt), permittivity e' (1 - j tan d).
+**            A complex array is double[2 n]: re, im, re, im ... (C99 double complex, NumPy complex128).
+** Depth      Measured downwards; 0 is the outer face of the top copper layer. Solder mask above it has
+**            negative depth.
+** Layers     Counted from 0 at the top over all layers of the stackup, dielectrics included.
+** Structs    Inputs and outputs start with `size`; LSTUB_INIT(x) zeroes x and sets it. A longer struct of
+**            a newer program is accepted when the part this library does not know is zero, and refused
+**            otherwise; a shorter one of an older program reads as zero beyond its end. Each member says
+**            what 0 means. Names and arrays that a struct points to are copied where they are kept.
+**            Arrays of structs carry a stride in bytes. `reserved` members must be 0.
+** Handles    Immutable once made, need nothing that they were made from, and may be used by any number
+**            of threads at once. The caller allocates everything else.
+** Status     0 done; > 0 done, but outside the stated range of the model; < 0 nothing was produced and
+**            outputs are untouched, but for batch outputs, which hold NaN (doubles) and the item's status.
+** Errors     A message in a struct of the caller's names the argument, its value, unit and range, and
+**            the index of the item. NULL is allowed wherever a message is wanted.
+** Threads    No globals, no lazy tables, no locale, no printing, no threads of its own.
+** Care       Results are estimates from a model. Confirm drill depths, tolerances and clearances with
+**            the fabricator; verify critical links by measurement or full-wave simulation;
+**            safety-related equipment follows its own codes and licensed practice.
+*/
+#ifndef LIBSTUB_H
+#define LIBSTUB_H
+
+#include <stddef.h>
+#include <stdint.h>
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+#if defined(_WIN32) && defined(LSTUB_BUILD_SHARED)
+#define LSTUB_API __declspec(dllexport)
+#elif defined(__GNUC__)
+#define LSTUB_API __attribute__((visibility("default")))
+#else
+#define LSTUB_API
+#endif
+
+/* ---- versions ----------------------------------------------------------------------------------- */
+
+#define LSTUB_VERSION "0.1.0"
+#define LSTUB_ABI     0          /* raised when an old program could no longer run with the library   */
+
+LSTUB_API const char *lstub_version(void);        /* of the library in use, "0.1.0"                   */
+LSTUB_API int32_t     lstub_abi(void);            /* LSTUB_ABI of the library in use: compare at load */
+LSTUB_API int32_t     lstub_model_revision(void); /* raised whenever numbers change                   */
+
+/* ---- status, messages, memory ------------------------------------------------------------------- */
+
+#define LSTUB_OK             0
+#define LSTUB_W_RANGE        1   /* done, outside the stated range of the model                       */
+#define LSTUB_W_CAPACITY     2   /* done, but there were more results than the array holds            */
+#define LSTUB_E_ARGUMENT   (-1)  /* a value outside its range, NaN or infinity                        */
+#define LSTUB_E_NULL       (-2)  /* a pointer that must not be null                                   */
+#define LSTUB_E_SIZE       (-3)  /* `size` or a stride is not that of a struct, or reserved is not 0  */
+#define LSTUB_E_NEWER      (-4)  /* a member this library does not know is not zero                   */
+#define LSTUB_E_MEMORY     (-5)  /* the allocator returned null                                       */
+#define LSTUB_E_GEOMETRY   (-6)  /* values that are fine one by one contradict each other             */
+#define LSTUB_E_NONE       (-7)  /* there is no such thing: no such layer, no stub, no notch          */
+#define LSTUB_E_UNSUPPORTED (-8) /* the chosen fidelity cannot compute this feature                   */
+#define LSTUB_E_MIXED      (-9)  /* batch: items failed for different reasons                         */
+#define LSTUB_E_READ      (-10)  /* a file cannot be read                                             */
+#define LSTUB_E_WRITE     (-11)  /* a file cannot be written; what stood there before still stands    */
+#define LSTUB_E_FORMAT    (-12)  /* a file is not what it should be; the message has the line         */
+
+LSTUB_API const char *lstub_status_name(int32_t status);   /* "LSTUB_E_ARGUMENT"; never null          */
+
+typedef struct lstub_error {     /* the caller's; filled on every status but LSTUB_OK                 */
+    size_t  size;
+    int32_t status;
+    int32_t reserved;
+    int64_t index;               /* of the item that failed, or of the line of a file; -1: no item    */
+    char    field[64];           /* the argument or member: "drill"                                   */
+    char    message[256];        /* "layer 7 'L5': thickness = -0.0001 m: must be > 0"                */
+} lstub_error;
+
+/* Memory for handles. `allocate` returns null when there is none left and must align like malloc;
+** `release` takes null. A null allocator means malloc and free. Copied into the handle. */
+typedef struct lstub_allocator {
+    size_t size;
+    void *(*allocate)(void *user, size_t bytes);
+    void  (*release)(void *user, void *memory);
+    void  *user;
+} lstub_allocator;
+
+/* Zero a struct and set its size. The only initialiser: everything in the structs below starts at 0. */
+LSTUB_API void lstub_init(void *data, size_t size);
+#define LSTUB_INIT(x) lstub_init(&(x), sizeof(x))
+
+/* ---- formulas: published closed forms, one line each ---------------------------------------------
+**
+** For checks, teaching and first estimates. Each writes one or a few doubles and returns LSTUB_OK,
+** LSTUB_E_ARGUMENT or LSTUB_E_NULL. Lengths > 0, Dk >= 1, frequencies > 0, all finite. */
+
+/* Null n (1, 3, 5 ... odd, >= 1) of an ideal open stub: f = n c / (4 L sqrt(Dk)), in Hz.
+** Source: any transmission-line text, e.g. Pozar, Microwave Engineering. Valid for a thin barrel with an
+** ideal open end; Dk is the effective one of the barrel, not that of the laminate. */
+LSTUB_API int32_t lstub_quarter_wave_frequency(double length, double dk, int32_t n, double *f, lstub_error *err);
+/* The same solved for the length, in m, and for Dk. Dk below 1 comes back as it is, with LSTUB_W_RANGE. */
+LSTUB_API int32_t lstub_quarter_wave_length(double f, double dk, int32_t n, double *length, lstub_error *err);
+LSTUB_API int32_t lstub_quarter_wave_dk(double f, double length, int32_t n, double *dk, lstub_error *err);
+/* Dk of a line that delays by `delay` seconds per metre: (c delay)^2. */
+LSTUB_API int32_t lstub_delay_dk(double delay, double *dk, lstub_error *err);
+
+/* Nulls with a capacitance at the open end: the root number n = 1, 2, 3 ... of
+** cot(2 pi f L sqrt(Dk)/c) = 2 pi f Ce Zs. end_capacitance >= 0. Source: open-end correction (Pozar). */
+LSTUB_API int32_t lstub_loaded_stub_frequency(double length, double dk, double zs, double end_capacitance,
+                                              int32_t n, double *f, lstub_error *err);
+/* Depth of null n (odd) of a stub on a matched line z0, dielectric loss only, in dB (negative):
+** 20 log10(2 Zs T/(2 Zs T + Z0)), T = tanh(n pi tan d/4). Derived from Zin = Zs coth(gamma L). */
+LSTUB_API int32_t lstub_notch_floor(double zs, double z0, double loss_tangent, int32_t n, double *db, lstub_error *err);
+/* Loss of a lossless stub below its first null f1, in dB: 10 log10(1 + (Z0 tan(pi f/2 f1)/(2 Zs))^2). */
+LSTUB_API int32_t lstub_stub_skirt(double zs, double z0, double f_over_f1, double *db, lstub_error *err);
+/* Longest stub by the rule of thumb 0.3 inch Gb/s: 0.0254 * 0.3e9/bit_rate, in m.
+** Source: E. Bogatin, rule of thumb 18, EDN Asia, 19 Jan 2015. For comparison only. */
+LSTUB_API int32_t lstub_rule_of_thumb_length(double bit_rate, double *length, lstub_error *err);
+
+/* Coaxial line of a barrel in an antipad: capacitance (F/m), inductance (H/m), impedance (ohm).
+** C' = 2 pi eps0 Dk/ln(b/a), L' = (mu0/2 pi) ln(b/a). Textbook. Any output may be null. */
+LSTUB_API int32_t lstub_coax(double inner_diameter, double outer_diameter, double dk,
+                             double *capacitance, double *inductance, double *impedance, lstub_error *err);
+/* Loop inductance (H/m) of a barrel with `count` return vias on a circle of radius `distance`:
+** (mu0/2 pi)[ln(s/a) + (1/M) ln(s/(M r_g))]. Derived; M = 1 is the two-wire line with s >> a.
+** Refused where the return vias would touch each other or the barrel. */
+LSTUB_API int32_t lstub_return_inductance(double drill, int32_t count, double distance, double return_drill,
+                                          double *inductance, lstub_error *err);
+/* Two equal barrels at `pitch`: odd-mode inductance of one (H/m), (mu0/2 pi) acosh(s/d); and the
+** differential impedance (eta0/(pi sqrt(Dk))) acosh(s/d) without planes. Textbook (two-wire line). */
+LSTUB_API int32_t lstub_twin_rod(double drill, double pitch, double dk, double *odd_inductance,
+                                 double *differential_impedance, lstub_error *err);
+/* Capacitance (F) between a barrel and one plane of an infinite plate pair of spacing h: the sum over
+** odd modes of 8 pi eps (1 - K0(k b)/K0(k a))/(h ln(b/a) k^2), static, uniaxial dielectric.
+** Source: Zhang, Fan, Selli, Cocchini, de Paulis, IEEE T-MTT 56(9), 2008. Good to 1e-6 relative of that sum.
+** Against electrostatic finite elements the TEM field assumed in the antipad costs up to a few percent. */
+LSTUB_API int32_t lstub_plate_capacitance(double drill, double antipad, double spacing, double dk_through_plane,
+                                          double dk_in_plane, double *capacitance, lstub_error *err);
+/* Capacitance (F) and inductance (H) of a whole via, handbook forms, good to 50 percent:
+** C = 1.41 Dk T D1/(D2 - D1) and L = 5.08 h (ln(4h/d) + 1) with inches, pF and nH, here in SI.
+** Source: Johnson, Graham, High-Speed Digital Design, 1993, ch. 7 (from memory). */
+LSTUB_API int32_t lstub_handbook_capacitance(double thickness, double pad, double antipad, double dk,
+                                             double *capacitance, lstub_error *err);
+LSTUB_API int32_t lstub_handbook_inductance(double length, double diameter, double *inductance, lstub_error *err);
+
+/* ---- material ----------------------------------------------------------------------------------- */
+
+typedef struct lstub_dielectric {
+    size_t size;
+    double dk;              /* through-plane (data sheet) Dk at f_ref               1 to 1000          */
+    double in_plane_ratio;  /* in-plane Dk over through-plane Dk; 0: 1              0.5 to 2           */
+    double loss_tangent;    /* at f_ref                                             0 to 0.5           */
+    double f_ref;           /* Hz; 0: 1e9                                           1e5 to 1e11        */
+} lstub_dielectric;
+
+typedef struct lstub_conductor {
+    size_t size;
+    double conductivity;    /* S/m; 0: 5.8e7                                        1e5 to 1e8         */
+    double roughness;       /* rms height, m; 0: smooth                             0 to 20e-6         */
+} lstub_conductor;          /* carried with the stackup; no model of this version uses it             */
+
+/*
+** Complex relative permittivity over frequency, causal: wideband model of Djordjevic, Biljic,
+** Likar-Smiljanic, Sarkar, IEEE T-EMC 43(4), 2001, through (dk, loss_tangent) at f_ref, between 1 kHz and
+** 1 THz; the in-plane value is the through-plane one times in_plane_ratio.
+** In   freq[n] Hz, 1e3 to 1e12.   Out  through_plane[2 n], in_plane[2 n] (re, im; im <= 0); each may be null.
+*/
+LSTUB_API int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectric, const double *freq, size_t n,
+                                                double *through_plane, double *in_plane, lstub_error *err);
+
+/* ---- stackup ------------------------------------------------------------------------------------ */
+
+#define LSTUB_LAYER_DIELECTRIC 1
+#define LSTUB_LAYER_SIGNAL     2   /* copper with traces: no plane around a barrel                     */
+#define LSTUB_LAYER_PLANE      3   /* copper plane                                                     */
+#define LSTUB_LAYER_MIXED      4   /* traces and plane areas: a plane where the via has an antipad     */
+
+#define LSTUB_NAME_MAX 127         /* bytes of a layer's name                                          */
+#define LSTUB_LAYERS_MAX 1024
+
+typedef struct lstub_layer {
+    size_t      size;
+    const char *name;       /* 1 to LSTUB_NAME_MAX bytes, no other layer has it                        */
+    int32_t     kind;       /* LSTUB_LAYER_...                                                         */
+    int32_t     reserved;
+    double      thickness;  /* m, > 0, at most 0.1                                                     */
+    double      tol_plus;   /* m, >= 0, at most the thickness                                          */
+    double      tol_minus;  /* m, >= 0, less than the thickness                                        */
+    const lstub_dielectric *dielectric;  /* of a dielectric layer: needed. Of a copper layer: the resin
+                               between its copper; null: that of the dielectric above, at the top below */
+    const lstub_conductor  *conductor;   /* copper layers only; null: smooth, 5.8e7 S/m                */
+} lstub_layer;
+
+typedef struct lstub_stackup lstub_stackup;
+
+/*
+** A stackup from its layers, top first. At least one copper layer; copper layers are kept apart by
+** dielectrics; dielectrics may stand outside the outer copper (solder mask). Everything is checked.
+*/
+LSTUB_API int32_t lstub_stackup_create(const lstub_layer *layers, size_t count, size_t stride,
+                                       const lstub_allocator *allocator, lstub_stackup **out, lstub_error *err);
+LSTUB_API void    lstub_stackup_destroy(lstub_stackup *stackup);                 /* null is allowed     */
+
+LSTUB_API int32_t lstub_stackup_count(const lstub_stackup *stackup);             /* layers; 0 for null  */
+LSTUB_API int32_t lstub_stackup_copper_count(const lstub_stackup *stackup);
+/* Layer `index` as stored; its pointers live as long as the stackup. */
+LSTUB_API int32_t lstub_stackup_layer(const lstub_stackup *stackup, int32_t index, lstub_layer *out, lstub_error *err);
+/* Index of the layer with that name; LSTUB_E_NONE where there is none. */
+LSTUB_API int32_t lstub_stackup_find(const lstub_stackup *stackup, const char *name, int32_t *index, lstub_error *err);
+/* Index of copper layer number `number`, counted from 0 at the top. */
+LSTUB_API int32_t lstub_stackup_copper(const lstub_stackup *stackup, int32_t number, int32_t *index, lstub_error *err);
+/* Depths of the upper and the lower face of a layer, m; each may be null. */
+LSTUB_API int32_t lstub_stackup_depth(const lstub_stackup *stackup, int32_t index, double *top, double *bottom,
+                                      lstub_error *err);
+
+typedef struct lstub_interval {    /* what lies between two depths                                     */
+    size_t size;
+    double thickness;              /* m                                                                */
+    double tol_plus, tol_minus;    /* m, worst case: the layers' tolerances added, in proportion where
+                                      a layer is cut                                                   */
+    double tol_rss_plus, tol_rss_minus;  /* m, root of the sum of squares                               */
+    double dk_through_plane;       /* layers in series: h / sum(h_i/Dk_i); resin counted in copper     */
+    double dk_in_plane;            /* layers side by side: sum(h_i Dk_i r_i)/h                         */
+    double loss_tangent;           /* of the in-plane mean, at the layers' own f_ref                   */
+} lstub_interval;
+
+/* Between depth `top` and depth `bottom` > top, both within the stackup (mask included). */
+LSTUB_API int32_t lstub_stackup_interval(const lstub_stackup *stackup, double top, double bottom,
+                                         lstub_interval *out, lstub_error *err);
+
+/* ---- via ---------------------------------------------------------------------------------------- */
+
+#define LSTUB_SIDE_TOP    1
+#define LSTUB_SIDE_BOTTOM 2
+#define LSTUB_SIDE_BOTH   3
+
+#define LSTUB_RETURN_NONE 0        /* no return via near: the plate pairs carry the return, and radiate */
+#define LSTUB_RETURN_VIAS 1        /* return_count vias on a circle of radius return_distance          */
+#define LSTUB_RETURN_WALL 2        /* a closed wall at return_distance                                 */
+
+#define LSTUB_PAIR_NONE     0
+#define LSTUB_PAIR_SEPARATE 1      /* partner barrel at pair_pitch, an antipad each                    */
+#define LSTUB_PAIR_SHARED   2      /* one antipad around both: the union and the band between them     */
+
+#define LSTUB_PADS_REMOVED 0       /* non-functional pads: those on inner layers that do not connect   */
+#define LSTUB_PADS_KEPT    1
+
+typedef struct lstub_on_layer {    /* a value for one layer                                            */
+    int32_t layer;                 /* index in the stackup                                             */
+    int32_t reserved;
+    double  value;                 /* m                                                                */
+} lstub_on_layer;
+
+typedef struct lstub_backdrill {   /* a back-drill that has been made or is to be made                 */
+    int32_t side;                  /* LSTUB_SIDE_TOP or LSTUB_SIDE_BOTTOM                              */
+    int32_t reserved;
+    double  depth;                 /* m, from the outer face of that side's outer copper to the tip    */
+    double  diameter;              /* m, of the bit, at least the drill                                */
+} lstub_backdrill;
+
+typedef struct lstub_via {
+    size_t  size;
+    int32_t start_layer, end_layer;  /* copper layers the barrel runs from and to, start above end;
+                                        both 0: through, from the first copper to the last             */
+    double  drill;                 /* barrel diameter (drilled hole), m                 > 0, <= 0.01   */
+    double  pad_start, pad_inner, pad_end;  /* pad diameters, m; 0: none; else >= drill. pad_inner is on
+                                        the inner layers that connect, and on all if pads are kept     */
+    double  antipad;               /* on every plane crossed that does not connect, m; 0: mixed layers
+                                        are no plane here, and planes need an entry in `antipads`      */
+    const lstub_on_layer *pads;     size_t pad_count;      /* diameters that replace those above; 0: no pad */
+    const lstub_on_layer *antipads; size_t antipad_count;  /* the same; 0: no plane at the via on this layer */
+    const lstub_on_layer *clear;    size_t clear_count;    /* diameter free of other copper around the axis
+                                        (for the drill bit), where known; planes: the antipad at least */
+    int32_t nonfunctional_pads;    /* LSTUB_PADS_...                                                   */
+    int32_t return_kind;           /* LSTUB_RETURN_...                                                 */
+    const int32_t *connects;  size_t connect_count;  /* layers where the signal enters or leaves, in any
+                                        order: one or more copper layers within the span, none twice   */
+    double  return_distance;       /* m; of the wall or of the circle of return vias, from the axis    */
+    double  return_drill;          /* m; 0: as drill                                                   */
+    int32_t return_count;          /* 1 to 1000 with LSTUB_RETURN_VIAS                                 */
+    int32_t pair_kind;             /* LSTUB_PAIR_...                                                   */
+    double  pair_pitch;            /* m, axis to axis, > drill                                         */
+    const lstub_backdrill *backdrills; size_t backdrill_count;  /* at most one a side                  */
+    int32_t pin_side;              /* side a press-fit pin enters from; 0: no pin                      */
+    int32_t reserved;
+    double  pin_length;            /* least barrel to keep from that side's surface, m                 */
+} lstub_via;
+
+typedef struct lstub_stub {        /* a piece of barrel beyond the outermost layers that connect        */
+    size_t  size;
+    int32_t side;                  /* the side it lies on: LSTUB_SIDE_TOP or LSTUB_SIDE_BOTTOM         */
+    int32_t exit_layer;            /* connecting layer it hangs on                                     */
+    int32_t end_layer;             /* outer layer its barrel ends on, -1 where it was drilled          */
+    int32_t reserved;
+    double  top, bottom;           /* depths of its two ends, m: face of the exit layer, end of barrel */
+    double  length;                /* nominal, m                                                       */
+    double  length_min, length_max;          /* worst case over the stackup's tolerances               */
+    double  length_rss_min, length_rss_max;  /* root of the sum of squares                             */
+} lstub_stub;
+
+/* Checks a via against a stackup: LSTUB_OK, or what is wrong with it, by member, value and layer. */
+LSTUB_API int32_t lstub_via_check(const lstub_stackup *stackup, const lstub_via *via, lstub_error *err);
+/*
+** The stub pieces, top one first: none, one or two. A bottom stub runs from the lower face of the lowest
+** connecting copper to the outer face of the copper the barrel ends on, or to the tip of the back-drill; a
+** top stub likewise. Out  stubs[2], *count.
+*/
+LSTUB_API int32_t lstub_via_stubs(const lstub_stackup *stackup, const lstub_via *via, lstub_stub *stubs,
+                                  size_t stride, int32_t *count, lstub_error *err);
+
+/* ---- model: the electrical behaviour of one geometry, compiled once ------------------------------ */
+
+#define LSTUB_FIDELITY_DEFAULT 0   /* the most accurate one of this version: now LOADED                */
+#define LSTUB_FIDELITY_BULK    1   /* quarter wave in the laminate's through-plane Dk, coaxial impedance */
+#define LSTUB_FIDELITY_LOADED  2   /* uniform line: L' from the returns, C' from each cavity's via-plate
+                                      capacitance, planes and pads; capacitance at the open end        */
+#define LSTUB_ALL_STUBS      (-1)  /* in place of a stub's number: all of them in parallel, the path
+                                      between them neglected                                           */
+
+typedef struct lstub_model_options {
+    size_t  size;
+    int32_t fidelity;              /* LSTUB_FIDELITY_...                                               */
+    int32_t reserved;
+    double  z_ref;                 /* ohm, line that the stubs load; of a pair: of one of the two; 0: 50 */
+} lstub_model_options;
+
+typedef struct lstub_model lstub_model;
+
+/* Compiles the geometry. options null: defaults. A via without any stub compiles, and loads nothing. */
+LSTUB_API int32_t lstub_model_create(const lstub_stackup *stackup, const lstub_via *via,
+                                     const lstub_model_options *options, const lstub_allocator *allocator,
+                                     lstub_model **out, lstub_error *err);
+LSTUB_API void    lstub_model_destroy(lstub_model *model);                       /* null is allowed     */
+
+LSTUB_API int32_t lstub_model_stub_count(const lstub_model *model);              /* 0, 1 or 2           */
+LSTUB_API int32_t lstub_model_stub(const lstub_model *model, int32_t stub, lstub_stub *out, lstub_error *err);
+
+typedef struct lstub_stub_line {   /* a stub as a line, at 1 GHz                                       */
+    size_t  size;
+    int32_t fidelity;              /* the one that made these numbers                                  */
+    int32_t reserved;
+    double  dk_effective;          /* (c/(4 L f1))^2 of the first notch: end effects included          */
+    double  dk_line;               /* c^2 L' C' of the line without its end                            */
+    double  impedance;             /* sqrt(L'/C'), ohm                                                 */
+    double  inductance;            /* L', H/m                                                          */
+    double  capacitance;           /* C', F/m                                                          */
+    double  end_capacitance;       /* at the open end, F                                               */
+    double  stated_error;          /* largest error of the first notch found against full-wave data for
+                                      this fidelity, relative; see docs/theory.md                      */
+} lstub_stub_line;
+
+LSTUB_API int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub_stub_line *out, lstub_error *err);
+
+/*
+** Input impedance of a stub where it hangs on the signal path, ohm.
+** In   freq[n] Hz, 1e6 to 1e12; stub: number or LSTUB_ALL_STUBS.
+** Out  zin[2 n]; status[n] or null.
+** Ret  LSTUB_W_RANGE where the model is stretched: a plate spacing or antipad above a tenth of the
+**      wavelength in the laminate.
+** Source  Zin = Zs coth(gamma L) with the end load, Pozar; L' and C' as in docs/theory.md.
+*/
+LSTUB_API int32_t lstub_model_zin(const lstub_model *model, int32_t stub, const double *freq, size_t n,
+                                  double *zin, int32_t *status, lstub_error *err);
+/* Transmission past the stub on a line of z_ref matched at both ends: 2 Zin/(2 Zin + z_ref). s21[2 n]. */
+LSTUB_API int32_t lstub_model_s21(const lstub_model *model, int32_t stub, const double *freq, size_t n,
+                                  double *s21, int32_t *status, lstub_error *err);
+/* Loss that the stubs add, dB >= 0: -20 log10 |S21|. loss[n]. */
+LSTUB_API int32_t lstub_model_added_loss(const lstub_model *model, int32_t stub, const double *freq, size_t n,
+                                         double *loss, int32_t *status, lstub_error *err);
+
+typedef struct lstub_notch {
+    size_t  size;
+    int32_t stub;                  /* number of the stub that makes it                                 */
+    int32_t reserved;
+    double  f;                     /* Hz, minimum of |S21|: the notch as it is measured                */
+    double  f_series;              /* Hz, zero of Im Zin next to it; NaN where there is none           */
+    double  depth_db;              /* 20 log10 |S21| at f, negative; -inf never: -300 at least         */
+    double  q;                     /* f over the width of the notch 3 dB above its floor; NaN where the
+                                      notch is not that deep                                           */
+} lstub_notch;
+
+/*
+** All notches of one stub, or of all, from 1e6 Hz up to f_max (to 1e12), in rising order: the roots of the
+** reactance found by bracketing, not multiples of the first. More than `capacity`: LSTUB_W_CAPACITY, the
+** lowest are given, *count says how many there are. None: *count = 0, LSTUB_OK.
+*/
+LSTUB_API int32_t lstub_model_notches(const lstub_model *model, int32_t stub, double f_max, lstub_notch *notches,
+                                      size_t capacity, size_t stride, size_t *count, lstub_error *err);
+
+/*
+** First notch of many vias on one stackup. vias: count structs, stride bytes apart. Out, each count long,
+** each may be null: f1 (Hz, lowest over the via's stubs; NaN where it has none below 1e12), dk_effective of
+** that stub, length of that stub (m), status. The answer for an item does not depend on its neighbours.
+*/
+LSTUB_API int32_t lstub_first_notch_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t count,
+                                          size_t stride, const lstub_model_options *options, double *f1,
+                                          double *dk_effective, double *length, int32_t *status, lstub_error *err);
+
+/* ---- criteria: what a signal can bear ------------------------------------------------------------ */
+
+typedef struct lstub_signal {
+    size_t  size;
+    int32_t levels;                /* 2: NRZ, 4: PAM4 ...; 0: 2                         2 to 64        */
+    int32_t reserved;
+    double  symbol_rate;           /* Bd                                                1e6 to 1e12    */
+} lstub_signal;
+
+LSTUB_API int32_t lstub_signal_nyquist(const lstub_signal *signal, double *nyquist, lstub_error *err);   /* Hz  */
+LSTUB_API int32_t lstub_signal_bit_rate(const lstub_signal *signal, double *bit_rate, lstub_error *err); /* b/s */
+
+typedef struct lstub_criteria {    /* each asked for when > 0; at least one                            */
+    size_t size;
+    double notch_over_nyquist;     /* first notch at least this many times Nyquist                     */
+    double added_loss_db;          /* loss added at Nyquist at most this, dB                           */
+} lstub_criteria;
+
+#define LSTUB_LIMIT_NONE  0        /* no stub, or nothing below the band: nothing limits               */
+#define LSTUB_LIMIT_NOTCH 1
+#define LSTUB_LIMIT_LOSS  2
+
+typedef struct lstub_margin {
+    size_t  size;
+    int32_t pass;                  /* 1: every criterion asked for is met                              */
+    int32_t limited_by;            /* LSTUB_LIMIT_..., the criterion with the least margin             */
+    double  nyquist;               /* Hz                                                               */
+    double  f1;                    /* first notch, Hz; +inf without a stub or notch below 1e12 Hz      */
+    double  notch_over_nyquist;    /* f1 / nyquist                                                     */
+    double  notch_margin;          /* f1 - limit, Hz; NaN if not asked                                 */
+    double  added_loss_db;         /* at Nyquist                                                       */
+    double  loss_margin_db;        /* limit - loss; NaN if not asked                                   */
+    double  stub_length;           /* longest stub, m                                                  */
+    double  rule_length;           /* 0.3 inch Gb/s over the bit rate, m: for comparison only          */
+    double  rule_margin;           /* rule_length - stub_length, m                                     */
+} lstub_margin;
+
+LSTUB_API int32_t lstub_model_margin(const lstub_model *model, const lstub_signal *signal,
+                                     const lstub_criteria *criteria, lstub_margin *out, lstub_error *err);
+
+typedef struct lstub_stub_limit {
+    size_t  size;
+    int32_t limited_by;            /* LSTUB_LIMIT_NONE: even the whole barrel passes                   */
+    int32_t reserved;
+    double  length;                /* longest stub that passes, m; the whole stub if nothing limits; 0 if
+                                      none does                                                        */
+    double  stub_length;           /* of the via as it is, m                                           */
+    double  margin;                /* length - stub_length, m; where nothing limits: 0, a lower bound  */
+} lstub_stub_limit;
+
+/*
+** Longest tolerable stub: the barrel on `side`, drilled back as little as the criteria allow, the other side
+** as it is. Found by bracketing on drilled geometries, to 1 nm. A via without a stub there: LSTUB_E_NONE.
+** Valid as the model is; the criteria are taken to get no better as the stub grows.
+*/
+LSTUB_API int32_t lstub_longest_stub(const lstub_stackup *stackup, const lstub_via *via, int32_t side,
+                                     const lstub_model_options *options, const lstub_signal *signal,
+                                     const lstub_criteria *criteria, lstub_stub_limit *out, lstub_error *err);
+/* The same for many vias, sides, signals and criteria: count of each, strides in bytes, stride 0: the same
+** for all. out: array of structs. status may be null. */
+LSTUB_API int32_t lstub_longest_stub_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t via_stride,
+                                           const int32_t *sides, size_t side_stride,
+                                           const lstub_signal *signals, size_t signal_stride,
+                                           const lstub_criteria *criteria, size_t criteria_stride, size_t count,
+                                           const lstub_model_options *options, lstub_stub_limit *out,
+                                           size_t out_stride, int32_t *status, lstub_error *err);
+/* Highest symbol rate (Bd, up to 1e12) at which the via still meets the criteria; +inf if nothing limits. */
+LSTUB_API int32_t lstub_highest_symbol_rate(const lstub_model *model, const lstub_criteria *criteria,
+                                            double *symbol_rate, int32_t *limited_by, lstub_error *err);
+/* Margins of many vias: as above, one model each, compiled within. */
+LSTUB_API int32_t lstub_margin_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t via_stride,
+                                     const lstub_signal *signals, size_t signal_stride,
+                                     const lstub_criteria *criteria, size_t criteria_stride, size_t count,
+                                     const lstub_model_options *options, lstub_margin *out, size_t out_stride,
+                                     int32_t *status, lstub_error *err);
+
+/* ---- plan: what to do about it ------------------------------------------------------------------- */
+
+#define LSTUB_TOLERANCE_WORST 0    /* drill and stackup tolerances added                               */
+#define LSTUB_TOLERANCE_RSS   1    /* root of the sum of squares                                       */
+
+typedef struct lstub_capability {  /* of the fabricator. Zero is a value but where said                */
+    size_t  size;
+    int32_t sides;                 /* LSTUB_SIDE_...; 0: both                                          */
+    int32_t tolerance_method;      /* LSTUB_TOLERANCE_...                                              */
+    double  depth_tolerance;       /* drilled depth, plus or minus, m                                  */
+    double  cut_clearance;         /* least distance from the tip to the must-not-cut layer, m, with the
+                                      tolerances used up                                               */
+    double  residual_min;          /* least residual stub, nominal, m                                  */
+    double  residual_target;       /* residual stub aimed at where there is room, nominal, m           */
+    double  bit_oversize;          /* bit diameter less drill diameter, m                              */
+    double  wall_clearance;        /* least distance from the wall of the drilled hole to copper, m    */
+    double  aspect_ratio;          /* greatest drilled depth over bit diameter; 0: no limit            */
+    const double *depths; size_t depth_count;  /* the only depths that may be drilled, m; count 0: any */
+} lstub_capability;
+
+typedef struct lstub_job {         /* one via of a board. Pointers are read while the plan is made     */
+    size_t size;
+    const lstub_via      *via;
+    const lstub_signal   *signal;    /* null: carries no signal that matters; not judged               */
+    const lstub_criteria *criteria;  /* needed with a signal                                           */
+} lstub_job;
+
+#define LSTUB_ACTION_NOT_JUDGED   0  /* no signal                                                      */
+#define LSTUB_ACTION_KEEP         1
+#define LSTUB_ACTION_DRILL_TOP    2
+#define LSTUB_ACTION_DRILL_BOTTOM 3
+#define LSTUB_ACTION_DRILL_BOTH   4
+#define LSTUB_ACTION_CANNOT       5  /* fails, and cannot be drilled so that it passes                 */
+#define LSTUB_ACTION_REFUSED      6  /* the via itself is in error: see `status`                       */
+
+#define LSTUB_REASON_NO_SIGNAL       0
+#define LSTUB_REASON_NO_STUB         1
+#define LSTUB_REASON_PASSES          2   /* the stub is there, and within the criteria                 */
+#define LSTUB_REASON_FAILS           3   /* it does not pass as it is, and is drilled                  */
+#define LSTUB_REASON_LIMIT_TOO_SHORT 4   /* no residual the fabricator can hold is short enough        */
+#define LSTUB_REASON_NO_ROOM         5   /* the barrel is too short to be drilled with these tolerances */
+#define LSTUB_REASON_SIDE            6   /* that side may not be drilled                               */
+#define LSTUB_REASON_WALL            7   /* the bit comes too near to copper on reason_layer           */
+#define LSTUB_REASON_ASPECT          8   /* too deep for the bit                                       */
+#define LSTUB_REASON_DEPTHS          9   /* none of the allowed depths fits                            */
+#define LSTUB_REASON_PIN            10   /* the pin needs the barrel                                   */
+#define LSTUB_REASON_BURIED         11   /* the barrel does not reach the surface on that side         */
+#define LSTUB_REASON_DRILLED        12   /* that side has been drilled already                         */
+#define LSTUB_REASON_ERROR          13   /* the via is in error                                        */
+#define LSTUB_REASON_ONE_LAYER      14   /* connects on one layer only: no path, nothing to judge      */
+
+typedef struct lstub_drill_cut {   /* what is done on one side of a via                                */
+    int32_t drilled;               /* 1: a back-drill is planned on this side                          */
+    int32_t must_not_cut;          /* layer index                                                      */
+    int32_t group;                 /* row of the drill table                                           */
+    int32_t reserved;
+    double  depth;                 /* target, from that side's outer copper face, m                    */
+    double  depth_least, depth_most;        /* any target between these would do, m                    */
+    double  diameter;              /* of the bit, m                                                    */
+    double  residual;              /* stub left, nominal, m                                            */
+    double  residual_least, residual_most;  /* with the tolerances, m                                  */
+    double  limit;                 /* longest stub that the criteria allow here, m                     */
+} lstub_drill_cut;
+
+typedef struct lstub_decision {
+    size_t  size;
+    int32_t action;                /* LSTUB_ACTION_...                                                 */
+    int32_t reason;                /* LSTUB_REASON_...                                                 */
+    int32_t reason_side;           /* side the reason speaks of, or 0                                  */
+    int32_t reason_layer;          /* layer the reason speaks of, or -1                                */
+    int32_t status;                /* of the model: LSTUB_W_RANGE ...; < 0 with REFUSED                */
+    int32_t stub_count;
+    lstub_drill_cut top, bottom;
+    double  stub_top, stub_bottom;          /* nominal length before, m; 0: none                       */
+    double  reason_value, reason_limit;     /* the two numbers compared, in the reason's unit; else NaN */
+    lstub_margin before;           /* as it is                                                         */
+    lstub_margin after;            /* as planned, with the longest residual; as `before` if not drilled */
+} lstub_decision;
+
+typedef struct lstub_drill_group { /* a row of the drill table                                         */
+    size_t  size;
+    int32_t side;
+    int32_t from_layer;            /* outer copper layer the drill enters through                      */
+    int32_t must_not_cut;
+    int32_t hits;
+    double  diameter;              /* bit, m                                                           */
+    double  depth;                 /* target, m                                                        */
+    double  tolerance;             /* plus or minus, m                                                 */
+    double  residual_most;         /* longest stub left by this row, with the tolerances, m            */
+} lstub_drill_group;
+
+typedef struct lstub_plan_summary {
+    size_t  size;
+    int64_t vias;                  /* jobs                                                             */
+    int64_t not_judged, keep, drill_top, drill_bottom, drill_both, cannot, refused;
+    int64_t outside_range;         /* decided by a model outside its stated range                      */
+    int32_t depths_top, depths_bottom;  /* different drill depths: proved fewest for the vias drilled  */
+    int32_t groups;
+    int32_t reserved;
+    int64_t geometries;            /* different (via, signal, criteria) among the jobs: each computed once */
+    double  worst_notch_over_nyquist;  /* least over the judged vias after the plan; +inf: none        */
+    double  worst_added_loss_db;       /* greatest over the judged vias after the plan                 */
+} lstub_plan_summary;
+
+typedef struct lstub_plan lstub_plan;
+
+/*
+** Plans a board. Vias in error do not stop it: they come out as REFUSED, and the call returns LSTUB_OK; it
+** fails only for what concerns all of them. capability must not be null.
+**
+** A via that meets its criteria is kept. Otherwise the one drill that makes it pass is taken, the shorter cut
+** first; then both. The tip may lie anywhere between the deepest place that keeps cut_clearance (or
+** residual_min) clear of the must-not-cut layer and the shallowest that still passes, tolerances used up. Per
+** side the fewest depths that serve all vias are found by stabbing these intervals from the right, which is
+** optimal; each depth then moves as near to the residuals aimed at as its vias allow.
+*/
+LSTUB_API int32_t lstub_plan_create(const lstub_stackup *stackup, const lstub_job *jobs, size_t count,
+                                    size_t stride, const lstub_capability *capability,
+                                    const lstub_model_options *options, const lstub_allocator *allocator,
+                                    lstub_plan **out, lstub_error *err);
+LSTUB_API void    lstub_plan_destroy(lstub_plan *plan);                          /* null is allowed     */
+
+LSTUB_API size_t  lstub_plan_count(const lstub_plan *plan);                      /* jobs                */
+LSTUB_API int32_t lstub_plan_decision(const lstub_plan *plan, size_t index, lstub_decision *out, lstub_error *err);
+LSTUB_API int32_t lstub_plan_group_count(const lstub_plan *plan);                /* rows                */
+LSTUB_API int32_t lstub_plan_group(const lstub_plan *plan, int32_t index, lstub_drill_group *out, lstub_error *err);
+LSTUB_API int32_t lstub_plan_totals(const lstub_plan *plan, lstub_plan_summary *out, lstub_error *err);
+/*
+** One line of plain English that says why: "first notch 12.9 GHz is 0.97 x Nyquist, 2 wanted: drill from the
+** bottom to 1.702 mm". Needs a buffer of LSTUB_REASON_MAX bytes at most; ends with a zero byte.
+*/
+#define LSTUB_REASON_MAX 256
+LSTUB_API int32_t lstub_plan_reason(const lstub_plan *plan, size_t index, char *text, size_t bytes, lstub_error *err);
+/* Plain word for an action or a reason: "keep", "drill bottom"; never null. */
+LSTUB_API const char *lstub_action_name(int32_t action);
+LSTUB_API const char *lstub_reason_name(int32_t reason);
+
+#ifdef __cplusplus
+}
+#endif
+#endif

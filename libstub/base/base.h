@@ -1,0 +1,59 @@
+/* What every layer needs: messages, memory, structs of other sizes. */
+#ifndef LSTUB_BASE_H
+#define LSTUB_BASE_H
+
+#include "libstub.h"
+
+#define LSTUB_C0   299792458.0              /* m/s                                                     */
+#define LSTUB_PI   3.14159265358979323846
+#define LSTUB_MU0  (4.0e-7 * LSTUB_PI)      /* H/m; differs from the 2019 value by 5.5e-10             */
+#define LSTUB_EPS0 (1.0 / (LSTUB_MU0 * LSTUB_C0 * LSTUB_C0))
+#define LSTUB_ETA0 (LSTUB_MU0 * LSTUB_C0)
+
+#if defined(__GNUC__)
+#define LSTUB_PRINTF(fmt, args) __attribute__((format(printf, fmt, args)))
+#else
+#define LSTUB_PRINTF(fmt, args)
+#endif
+
+/* Fills err (null is fine) and returns status, so that `return lstub__fail(...)` is the usual line. */
+int32_t lstub__fail(lstub_error *err, int32_t status, const char *field, int64_t index,
+                    const char *format, ...) LSTUB_PRINTF(5, 6);
+
+/* Puts "item: " before a message that a callee has left in err, and its index in place. */
+void lstub__fail_where(lstub_error *err, int64_t index, const char *format, ...) LSTUB_PRINTF(3, 4);
+
+/* Limits of a value, both included unless `above` (then low itself is out). */
+typedef struct lstub__range {
+    double      low, high;
+    int         above;
+    const char *unit;          /* "m", "Hz", "" */
+} lstub__range;
+
+int32_t lstub__check(double value, const lstub__range *range, const char *field, lstub_error *err);
+
+/*
+** Copies a caller's struct of any size into ours of `size` bytes; what the caller does not have is zero. A longer
+** one must be zero beyond ours. `first` is the size of the struct in the first release.
+*/
+int32_t lstub__take(void *ours, size_t size, const void *theirs, size_t first, const char *name, lstub_error *err);
+/* Writes ours into the caller's struct of any size: as much as fits, its own size kept. */
+int32_t lstub__give(const void *ours, size_t size, void *theirs, size_t first, const char *name, lstub_error *err);
+/* Whether an array's stride can hold such structs. */
+int32_t lstub__stride(size_t stride, size_t first, const char *name, lstub_error *err);
+
+int32_t lstub__allocator(const lstub_allocator *given, lstub_allocator *out, lstub_error *err);
+/* Zeroed memory, or null with err filled. count * bytes is checked for overflow. */
+void *lstub__new(const lstub_allocator *allocator, size_t count, size_t bytes, lstub_error *err);
+void  lstub__free(const lstub_allocator *allocator, void *memory);
+
+/* The status of a batch from its items': all fine, a warning, one common failure, or LSTUB_E_MIXED; err keeps
+** the first item that failed. Start with {0}. */
+typedef struct lstub__batch {
+    int32_t result;
+    int32_t failed;
+} lstub__batch;
+
+void lstub__batch_add(lstub__batch *batch, int32_t status, int64_t index, const lstub_error *item, lstub_error *err);
+
+#endif

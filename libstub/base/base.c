@@ -63,7 +63,7 @@ int32_t lstub__fail(lstub_error *err, int32_t status, const char *field, int64_t
 
 void lstub__fail_where(lstub_error *err, int64_t index, const char *format, ...)
 {
-    char where[sizeof err->message], all[2 * sizeof err->message];
+    char where[sizeof err->message], all[2 * sizeof err->message + 2];
     va_list args;
     if (!error_usable(err))
         return;
@@ -194,7 +194,9 @@ void lstub__batch_add(lstub__batch *batch, int32_t status, int64_t index, const 
         batch->failed = 1;
         batch->result = status;
         if (error_usable(err)) {
-            memcpy(err, item, sizeof *item);
+            err->status = item->status;
+            memcpy(err->field, item->field, sizeof err->field);
+            memcpy(err->message, item->message, sizeof err->message);
             lstub__fail_where(err, index, "item %ld", (long)index);
         }
     } else if (batch->result != status) {

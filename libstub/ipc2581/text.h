@@ -1,0 +1,12 @@
+/* Numbers in text, read the same in every locale. */
+#ifndef LSTUB_IPC2581_TEXT_H
+#define LSTUB_IPC2581_TEXT_H
+
+/*
+** A decimal number: blanks, sign, digits with a point, exponent, blanks, and nothing else. 1 when it is one and
+** finite; 0 otherwise (empty, NaN, INF, hexadecimal, beyond double, rest of a word), *value untouched. Correctly
+** rounded up to 15 digits with exponents within 22, a unit or two in the last place beyond.
+*/
+int lstub__parse_double(const char *text, double *value);
+
+#endif

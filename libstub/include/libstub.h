@@ -370,6 +370,8 @@ typedef struct lstub_stub_line {   /* a stub as a line, at 1 GHz                
     double  end_capacitance;       /* at the open end, F                                               */
     double  stated_error;          /* largest error of the first notch found against full-wave data for
                                       this fidelity, relative; see docs/theory.md                      */
+    double  f_range;               /* Hz, top of the stated range: an antipad radius or a plate spacing is
+                                      a tenth of the wavelength in the laminate                        */
 } lstub_stub_line;
 
 LSTUB_API int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub_stub_line *out, lstub_error *err);
@@ -378,8 +380,8 @@ LSTUB_API int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub
 ** Input impedance of a stub where it hangs on the signal path, ohm.
 ** In   freq[n] Hz, 1e6 to 1e12; stub: number or LSTUB_ALL_STUBS.
 ** Out  zin[2 n]; status[n] or null.
-** Ret  LSTUB_W_RANGE where the model is stretched: a plate spacing or antipad above a tenth of the
-**      wavelength in the laminate.
+** Ret  LSTUB_W_RANGE above f_range of the line: an antipad radius or a plate spacing is more than a tenth
+**      of the wavelength in the laminate.
 ** Source  Zin = Zs coth(gamma L) with the end load, Pozar; L' and C' as in docs/theory.md.
 */
 LSTUB_API int32_t lstub_model_zin(const lstub_model *model, int32_t stub, const double *freq, size_t n,
@@ -434,7 +436,8 @@ LSTUB_API int32_t lstub_signal_bit_rate(const lstub_signal *signal, double *bit_
 typedef struct lstub_criteria {    /* each asked for when > 0; at least one                            */
     size_t size;
     double notch_over_nyquist;     /* first notch at least this many times Nyquist                     */
-    double added_loss_db;          /* loss added at Nyquist at most this, dB                           */
+    double added_loss_db;          /* loss added at Nyquist at most this, dB; a notch below Nyquist fails
+                                      it whatever the loss at Nyquist                                  */
 } lstub_criteria;
 
 #define LSTUB_LIMIT_NONE  0        /* no stub, or nothing below the band: nothing limits               */

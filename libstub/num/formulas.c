@@ -242,9 +242,10 @@ int32_t lstub_handbook_inductance(double length, double diameter, double *induct
     CHECK(length, LENGTH);
     CHECK(diameter, LENGTH);
     NEED(inductance);
-    *inductance = 5.08e-9 / 0.0254 * length * (log(4.0 * length / diameter) + 1.0);
-    if (*inductance <= 0.0)
+    double spread = log(4.0 * length / diameter) + 1.0;
+    if (spread <= 0.0)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "length", -1,
                            "length = %.9g m: too short for diameter = %.9g m, the form turns negative", length, diameter);
+    *inductance = 5.08e-9 / 0.0254 * length * spread;
     return LSTUB_OK;
 }

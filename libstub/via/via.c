@@ -1,0 +1,344 @@
+#include "via/via.h"
+
+#include <math.h>
+
+static const lstub__range DIAMETER = {0.0, 0.01, 1, "m"};
+static const lstub__range SIZE_OR_NONE = {0.0, 0.1, 0, "m"};
+static const lstub__range DISTANCE = {0.0, 1.0, 1, "m"};
+
+/* ---- what lies on a layer ---------------------------------------------------------------------- */
+
+static const lstub_on_layer *entry(const lstub_on_layer *list, size_t count, int32_t layer)
+{
+    for (size_t i = 0; i < count; i++)
+        if (list[i].layer == layer)
+            return &list[i];
+    return NULL;
+}
+
+int lstub__via_connects(const lstub__via *via, int32_t layer)
+{
+    for (size_t i = 0; i < via->in.connect_count; i++)
+        if (via->in.connects[i] == layer)
+            return 1;
+    return 0;
+}
+
+double lstub__via_pad(const lstub__via *via, int32_t layer)
+{
+    const lstub_on_layer *own = entry(via->in.pads, via->in.pad_count, layer);
+    if (own != NULL)
+        return own->value;
+    if (layer == via->in.start_layer)
+        return via->in.pad_start;
+    if (layer == via->in.end_layer)
+        return via->in.pad_end;
+    if (via->in.nonfunctional_pads == LSTUB_PADS_KEPT || lstub__via_connects(via, layer))
+        return via->in.pad_inner;
+    return 0.0;
+}
+
+double lstub__via_antipad(const lstub__via *via, int32_t layer)
+{
+    int32_t kind = via->stackup->layer[layer].kind;
+    if (kind == LSTUB_LAYER_SIGNAL || lstub__via_connects(via, layer))
+        return 0.0;
+    const lstub_on_layer *own = entry(via->in.antipads, via->in.antipad_count, layer);
+    return own != NULL ? own->value : via->in.antipad;
+}
+
+double lstub__via_clear(const lstub__via *via, int32_t layer)
+{
+    const lstub_on_layer *own = entry(via->in.clear, via->in.clear_count, layer);
+    double antipad = lstub__via_antipad(via, layer);
+    double clear = own != NULL ? own->value : -1.0;
+    if (antipad > 0.0 && (clear < 0.0 || antipad < clear))
+        clear = antipad;
+    return clear;
+}
+
+/* ---- checks ------------------------------------------------------------------------------------ */
+
+static int32_t check_list(const lstub__via *via, const lstub_on_layer *list, size_t count, const char *field, lstub_error *err)
+{
+    if (count > 0 && list == NULL)
+        return lstub__fail(err, LSTUB_E_NULL, field, -1, "%s = null: must point to %lu entries", field, (unsigned long)count);
+    for (size_t i = 0; i < count; i++) {
+        int32_t status = lstub__layer_index(via->stackup, list[i].layer, 1, field, err);
+        if (status == LSTUB_OK && list[i].reserved != 0)
+            status = lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)list[i].reserved);
+        if (status == LSTUB_OK)
+            status = lstub__check(list[i].value, &SIZE_OR_NONE, field, err);
+        if (status == LSTUB_OK && entry(list, i, list[i].layer) != NULL)
+            status = lstub__fail(err, LSTUB_E_ARGUMENT, field, -1, "%s: layer %ld is listed twice", field, (long)list[i].layer);
+        if (status < 0) {
+            lstub__fail_where(err, (int64_t)i, "%s[%lu]", field, (unsigned long)i);
+            return status;
+        }
+    }
+    return LSTUB_OK;
+}
+
+static int32_t take_span(lstub__via *via, lstub_error *err)
+{
+    lstub_via *in = &via->in;
+    int32_t status;
+    if (in->start_layer == 0 && in->end_layer == 0) {
+        in->start_layer = via->stackup->first_copper;
+        in->end_layer = via->stackup->last_copper;
+    }
+    if ((status = lstub__layer_index(via->stackup, in->start_layer, 1, "start_layer", err)) < 0
+        || (status = lstub__layer_index(via->stackup, in->end_layer, 1, "end_layer", err)) < 0)
+        return status;
+    if (in->start_layer >= in->end_layer)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "end_layer", -1, "end_layer = %ld: must be below start_layer = %ld",
+                           (long)in->end_layer, (long)in->start_layer);
+    return LSTUB_OK;
+}
+
+static int32_t take_connects(lstub__via *via, lstub_error *err)
+{
+    const lstub_via *in = &via->in;
+    if (in->connect_count < 1 || in->connects == NULL)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "connects", -1, "connects: %lu layers: must name one or more",
+                           in->connects == NULL ? 0ul : (unsigned long)in->connect_count);
+    via->first = LSTUB_LAYERS_MAX;
+    via->last = -1;
+    for (size_t i = 0; i < in->connect_count; i++) {
+        int32_t layer = in->connects[i], status = lstub__layer_index(via->stackup, layer, 1, "connects", err);
+        if (status < 0) {
+            lstub__fail_where(err, (int64_t)i, "connects[%lu]", (unsigned long)i);
+            return status;
+        }
+        if (layer < in->start_layer || layer > in->end_layer)
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "connects", (int64_t)i,
+                               "connects[%lu] = %ld '%s': outside the span, layers %ld to %ld", (unsigned long)i, (long)layer,
+                               via->stackup->layer[layer].name, (long)in->start_layer, (long)in->end_layer);
+        for (size_t j = 0; j < i; j++)
+            if (in->connects[j] == layer)
+                return lstub__fail(err, LSTUB_E_ARGUMENT, "connects", (int64_t)i, "connects[%lu] = %ld: listed twice",
+                                   (unsigned long)i, (long)layer);
+        if (layer < via->first)
+            via->first = layer;
+        if (layer > via->last)
+            via->last = layer;
+    }
+    return LSTUB_OK;
+}
+
+static int32_t check_pad_default(double pad, double drill, const char *field, lstub_error *err)
+{
+    int32_t status = lstub__check(pad, &SIZE_OR_NONE, field, err);
+    if (status == LSTUB_OK && pad > 0.0 && pad < drill)
+        status = lstub__fail(err, LSTUB_E_GEOMETRY, field, -1, "%s = %.9g m: must be 0 or >= drill = %.9g m", field, pad, drill);
+    return status;
+}
+
+static int32_t check_layer(const lstub__via *via, int32_t layer, lstub_error *err)
+{
+    double pad = lstub__via_pad(via, layer), antipad = lstub__via_antipad(via, layer), drill = via->in.drill;
+    const char *name = via->stackup->layer[layer].name;
+    if (pad > 0.0 && pad < drill)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "pads", layer, "layer %ld '%s': pad = %.9g m: must be 0 or >= drill = %.9g m",
+                           (long)layer, name, pad, drill);
+    if (via->stackup->layer[layer].kind == LSTUB_LAYER_PLANE && antipad == 0.0 && !lstub__via_connects(via, layer)
+        && entry(via->in.antipads, via->in.antipad_count, layer) == NULL)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "antipad", layer, "layer %ld '%s': antipad = 0 m: a plane that does not "
+                           "connect needs one (an entry of 0 in antipads says that there is no plane)", (long)layer, name);
+    if (antipad > 0.0 && antipad <= drill)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "antipad", layer, "layer %ld '%s': antipad = %.9g m: must be > drill = %.9g m",
+                           (long)layer, name, antipad, drill);
+    if (antipad > 0.0 && antipad <= pad)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "antipad", layer, "layer %ld '%s': antipad = %.9g m: must be > pad = %.9g m",
+                           (long)layer, name, antipad, pad);
+    if (via->in.return_kind == LSTUB_RETURN_WALL && 2.0 * via->in.return_distance < antipad)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "return_distance", layer, "layer %ld '%s': return_distance = %.9g m: the wall "
+                           "lies inside the antipad of %.9g m", (long)layer, name, via->in.return_distance, antipad);
+    if (via->in.pair_kind == LSTUB_PAIR_SEPARATE && antipad >= via->in.pair_pitch)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "pair_pitch", layer, "layer %ld '%s': pair_pitch = %.9g m: antipads of %.9g m "
+                           "overlap; LSTUB_PAIR_SHARED is for that", (long)layer, name, via->in.pair_pitch, antipad);
+    return LSTUB_OK;
+}
+
+static int32_t take_returns(lstub__via *via, lstub_error *err)
+{
+    lstub_via *in = &via->in;
+    int32_t status;
+    double unused;
+    if (in->return_kind < LSTUB_RETURN_NONE || in->return_kind > LSTUB_RETURN_WALL)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "return_kind", -1, "return_kind = %ld: must be one of LSTUB_RETURN_...",
+                           (long)in->return_kind);
+    if (in->return_drill == 0.0)
+        in->return_drill = in->drill;
+    if (in->return_kind != LSTUB_RETURN_NONE && (status = lstub__check(in->return_distance, &DISTANCE, "return_distance", err)) < 0)
+        return status;
+    if (in->return_kind == LSTUB_RETURN_WALL && in->return_distance <= 0.5 * in->drill)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "return_distance", -1, "return_distance = %.9g m: the wall lies inside the "
+                           "barrel of %.9g m", in->return_distance, in->drill);
+    if (in->return_kind != LSTUB_RETURN_VIAS)
+        return LSTUB_OK;
+    status = lstub_return_inductance(in->drill, in->return_count, in->return_distance, in->return_drill, &unused, err);
+    if (status < 0)
+        lstub__fail_where(err, -1, "returns");
+    return status;
+}
+
+static int32_t check_pair(const lstub_via *in, lstub_error *err)
+{
+    if (in->pair_kind < LSTUB_PAIR_NONE || in->pair_kind > LSTUB_PAIR_SHARED)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "pair_kind", -1, "pair_kind = %ld: must be one of LSTUB_PAIR_...", (long)in->pair_kind);
+    if (in->pair_kind == LSTUB_PAIR_NONE)
+        return LSTUB_OK;
+    int32_t status = lstub__check(in->pair_pitch, &DISTANCE, "pair_pitch", err);
+    if (status == LSTUB_OK && in->pair_pitch <= in->drill)
+        status = lstub__fail(err, LSTUB_E_GEOMETRY, "pair_pitch", -1, "pair_pitch = %.9g m: must be > drill = %.9g m",
+                             in->pair_pitch, in->drill);
+    return status;
+}
+
+static int32_t check_pin(const lstub_via *in, lstub_error *err)
+{
+    if (in->pin_side != 0 && in->pin_side != LSTUB_SIDE_TOP && in->pin_side != LSTUB_SIDE_BOTTOM)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "pin_side", -1, "pin_side = %ld: must be 0, LSTUB_SIDE_TOP or LSTUB_SIDE_BOTTOM",
+                           (long)in->pin_side);
+    return in->pin_side == 0 ? LSTUB_OK : lstub__check(in->pin_length, &SIZE_OR_NONE, "pin_length", err);
+}
+
+/* One back-drill: the barrel then ends at its tip, which must lie beyond the layers that connect. */
+static int32_t cut(lstub__via *via, const lstub_backdrill *drill, lstub_error *err)
+{
+    static const lstub__range DEPTH = {0.0, 0.1, 1, "m"};
+    const lstub_stackup *s = via->stackup;
+    int at_top = drill->side == LSTUB_SIDE_TOP;
+    int32_t status, outer = at_top ? s->first_copper : s->last_copper;
+    lstub__range bit = {via->in.drill, 0.01, 0, "m"};
+    if (!at_top && drill->side != LSTUB_SIDE_BOTTOM)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "side", -1, "side = %ld: must be LSTUB_SIDE_TOP or LSTUB_SIDE_BOTTOM", (long)drill->side);
+    if (drill->reserved != 0)
+        return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)drill->reserved);
+    if ((status = lstub__check(drill->depth, &DEPTH, "depth", err)) < 0 || (status = lstub__check(drill->diameter, &bit, "diameter", err)) < 0)
+        return status;
+    if (at_top ? via->top_drilled : via->bottom_drilled)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "side", -1, "side = %ld: drilled twice", (long)drill->side);
+    if ((at_top ? via->in.start_layer : via->in.end_layer) != outer)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "side", -1, "side = %ld: the barrel does not reach that surface", (long)drill->side);
+    double tip = at_top ? s->layer[outer].top + drill->depth : s->layer[outer].bottom - drill->depth;
+    double stop = at_top ? s->layer[via->first].top : s->layer[via->last].bottom;
+    if (at_top ? tip > stop : tip < stop)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "depth", -1, "depth = %.9g m: cuts layer %ld '%s', %.9g m deep from that side",
+                           drill->depth, (long)(at_top ? via->first : via->last), s->layer[at_top ? via->first : via->last].name,
+                           fabs(stop - (at_top ? s->layer[outer].top : s->layer[outer].bottom)));
+    if (at_top) {
+        via->top = tip;
+        via->top_drilled = 1;
+    } else {
+        via->bottom = tip;
+        via->bottom_drilled = 1;
+    }
+    return LSTUB_OK;
+}
+
+static int32_t take_backdrills(lstub__via *via, lstub_error *err)
+{
+    const lstub_via *in = &via->in;
+    via->top = via->stackup->layer[in->start_layer].top;
+    via->bottom = via->stackup->layer[in->end_layer].bottom;
+    via->top_drilled = via->bottom_drilled = 0;
+    if (in->backdrill_count > 0 && in->backdrills == NULL)
+        return lstub__fail(err, LSTUB_E_NULL, "backdrills", -1, "backdrills = null: must point to %lu entries",
+                           (unsigned long)in->backdrill_count);
+    for (size_t i = 0; i < in->backdrill_count; i++) {
+        int32_t status = cut(via, &in->backdrills[i], err);
+        if (status < 0) {
+            lstub__fail_where(err, (int64_t)i, "backdrills[%lu]", (unsigned long)i);
+            return status;
+        }
+    }
+    return LSTUB_OK;
+}
+
+int32_t lstub__via_take(lstub__via *via, const lstub_stackup *stackup, const lstub_via *theirs, lstub_error *err)
+{
+    lstub_via *in = &via->in;
+    int32_t status;
+    if (stackup == NULL)
+        return lstub__fail(err, LSTUB_E_NULL, "stackup", -1, "stackup = null: must not be null");
+    via->stackup = stackup;
+    if ((status = lstub__take(in, sizeof *in, theirs, sizeof *in, "via", err)) < 0)
+        return status;
+    if (in->reserved != 0)
+        return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)in->reserved);
+    if (in->nonfunctional_pads != LSTUB_PADS_REMOVED && in->nonfunctional_pads != LSTUB_PADS_KEPT)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "nonfunctional_pads", -1, "nonfunctional_pads = %ld: must be one of LSTUB_PADS_...",
+                           (long)in->nonfunctional_pads);
+    if ((status = lstub__check(in->drill, &DIAMETER, "drill", err)) < 0
+        || (status = check_pad_default(in->pad_start, in->drill, "pad_start", err)) < 0
+        || (status = check_pad_default(in->pad_inner, in->drill, "pad_inner", err)) < 0
+        || (status = check_pad_default(in->pad_end, in->drill, "pad_end", err)) < 0
+        || (status = lstub__check(in->antipad, &SIZE_OR_NONE, "antipad", err)) < 0
+        || (status = take_span(via, err)) < 0
+        || (status = take_connects(via, err)) < 0
+        || (status = check_list(via, in->pads, in->pad_count, "pads", err)) < 0
+        || (status = check_list(via, in->antipads, in->antipad_count, "antipads", err)) < 0
+        || (status = check_list(via, in->clear, in->clear_count, "clear", err)) < 0
+        || (status = take_returns(via, err)) < 0
+        || (status = check_pair(in, err)) < 0
+        || (status = check_pin(in, err)) < 0)
+        return status;
+    for (int32_t i = in->start_layer; i <= in->end_layer; i++)
+        if (lstub__is_copper(stackup->layer[i].kind) && (status = check_layer(via, i, err)) < 0)
+            return status;
+    return take_backdrills(via, err);
+}
+
+/* ---- stubs ------------------------------------------------------------------------------------- */
+
+int lstub__via_stub(const lstub__via *via, int32_t side, lstub_stub *stub)
+{
+    const lstub_stackup *s = via->stackup;
+    int at_top = side == LSTUB_SIDE_TOP;
+    lstub_interval interval;
+    LSTUB_INIT(*stub);
+    stub->side = side;
+    stub->exit_layer = at_top ? via->first : via->last;
+    stub->end_layer = at_top ? (via->top_drilled ? -1 : via->in.start_layer) : (via->bottom_drilled ? -1 : via->in.end_layer);
+    stub->top = at_top ? via->top : s->layer[stub->exit_layer].bottom;
+    stub->bottom = at_top ? s->layer[stub->exit_layer].top : via->bottom;
+    stub->length = stub->bottom - stub->top;
+    if (stub->exit_layer == stub->end_layer || stub->length <= 0.0)
+        return 0;
+    LSTUB_INIT(interval);
+    lstub_stackup_interval(s, stub->top, stub->bottom, &interval, NULL);
+    stub->length_min = stub->length - interval.tol_minus;
+    stub->length_max = stub->length + interval.tol_plus;
+    stub->length_rss_min = stub->length - interval.tol_rss_minus;
+    stub->length_rss_max = stub->length + interval.tol_rss_plus;
+    return 1;
+}
+
+int32_t lstub_via_check(const lstub_stackup *stackup, const lstub_via *via, lstub_error *err)
+{
+    lstub__via ours;
+    return lstub__via_take(&ours, stackup, via, err);
+}
+
+int32_t lstub_via_stubs(const lstub_stackup *stackup, const lstub_via *via, lstub_stub *stubs, size_t stride, int32_t *count,
+                        lstub_error *err)
+{
+    lstub__via ours;
+    lstub_stub found[2];
+    int32_t n = 0, status = lstub__via_take(&ours, stackup, via, err);
+    if (status < 0)
+        return status;
+    if (stubs == NULL || count == NULL)
+        return lstub__fail(err, LSTUB_E_NULL, "stubs", -1, "stubs or count = null: must not be null");
+    if ((status = lstub__stride(stride, sizeof *stubs, "stubs", err)) < 0)
+        return status;
+    n += lstub__via_stub(&ours, LSTUB_SIDE_TOP, &found[n]);
+    n += lstub__via_stub(&ours, LSTUB_SIDE_BOTTOM, &found[n]);
+    for (int32_t i = 0; i < n; i++)
+        if ((status = lstub__give(&found[i], sizeof found[i], (char *)stubs + (size_t)i * stride, sizeof found[i], "stubs", err)) < 0)
+            return status;
+    *count = n;
+    return LSTUB_OK;
+}

@@ -127,12 +127,11 @@ static inline double test_random(uint64_t seed, uint64_t n)
 static inline int test_main(Suite *suite)
 {
     SRunner *runner = srunner_create(suite);
-    int      failed;
+    int      fine;
     srunner_run_all(runner, CK_ENV);
-    failed = srunner_ntests_failed(runner);
-    ck_assert_int_gt(srunner_ntests_run(runner), 0);
+    fine = srunner_ntests_run(runner) > 0 && srunner_ntests_failed(runner) == 0;
     srunner_free(runner);
-    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+    return fine ? EXIT_SUCCESS : EXIT_FAILURE;
 }
 
 #endif

@@ -199,7 +199,7 @@ LSTUB_API int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectr
 #define LSTUB_LAYER_MIXED      4   /* traces and plane areas: a plane where the via has an antipad     */
 
 #define LSTUB_NAME_MAX 127         /* bytes of a layer's name                                          */
-#define LSTUB_LAYERS_MAX 1024
+#define LSTUB_LAYERS_MAX 256
 
 typedef struct lstub_layer {
     size_t      size;
@@ -317,7 +317,9 @@ typedef struct lstub_stub {        /* a piece of barrel beyond the outermost lay
     int32_t reserved;
     double  top, bottom;           /* depths of its two ends, m: face of the exit layer, end of barrel */
     double  length;                /* nominal, m                                                       */
-    double  length_min, length_max;          /* worst case over the stackup's tolerances               */
+    double  length_min, length_max;          /* worst case over the stackup's tolerances; of a drilled end
+                                                over all layers to the surface it was drilled from, and
+                                                without the drill's own: <= 0 where it may be cut off  */
     double  length_rss_min, length_rss_max;  /* root of the sum of squares                             */
 } lstub_stub;
 
@@ -401,7 +403,7 @@ typedef struct lstub_notch {
     double  f_series;              /* Hz, zero of Im Zin next to it; NaN where there is none           */
     double  depth_db;              /* 20 log10 |S21| at f, negative; -inf never: -300 at least         */
     double  q;                     /* f over the width of the notch 3 dB above its floor; NaN where the
-                                      notch is not that deep                                           */
+                                      notch is not that deep, +inf without loss                        */
 } lstub_notch;
 
 /*

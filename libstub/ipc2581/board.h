@@ -9,7 +9,8 @@ typedef struct board_hole {
     double      x, y;                    /* m                                                          */
     int64_t     line;                    /* of its Hole element                                        */
     int64_t     ordinal;                 /* number of its Hole element among all Hole elements of the file,
-                                            plated or not, from 0: the writer finds it by this         */
+                                            plated or not, from 0: the writer finds it by this. -1: the file
+                                            has no such element (the hole comes from a pad stack)      */
     int32_t     kind, signal, partner, status;
     lstub_via   via;                     /* arrays point into the board's arena                        */
 } board_hole;
@@ -21,6 +22,7 @@ struct lstub_board {
     int64_t         source_bytes;        /* unpacked                                                   */
     const char     *step;
     lstub_stackup  *stackup;
+    lstub_rules    *rules;               /* a copy of those it was read with; null: none               */
     board_hole     *holes;
     size_t          hole_count;
     lstub_notice   *notices;

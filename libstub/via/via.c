@@ -307,8 +307,10 @@ int lstub__via_stub(const lstub__via *via, int32_t side, lstub_stub *stub)
     stub->length = stub->bottom - stub->top;
     if (stub->exit_layer == stub->end_layer || stub->length <= 0.0)
         return 0;
+    /* A drilled end is placed from the surface: whatever the layers up to there do moves it. */
+    double outer = at_top ? s->layer[via->in.start_layer].top : s->layer[via->in.end_layer].bottom;
     LSTUB_INIT(interval);
-    lstub_stackup_interval(s, stub->top, stub->bottom, &interval, NULL);
+    lstub_stackup_interval(s, at_top ? outer : stub->top, at_top ? stub->bottom : outer, &interval, NULL);
     stub->length_min = stub->length - interval.tol_minus;
     stub->length_max = stub->length + interval.tol_plus;
     stub->length_rss_min = stub->length - interval.tol_rss_minus;

@@ -1,0 +1,108 @@
+#include "model/line.h"
+
+#include "num/root.h"
+
+#include <math.h>
+
+#define EULER_GAMMA 0.57721566490153286
+
+/*
+** No return near: the radial wave of the plate pair carries the return current. Per metre of barrel, from
+** Z = j (eta h/(2 pi a)) H0(ka)/H1(ka) for small ka: jwL' = (w mu0/4) [1 - j (2/pi) (ln(ka/2) + gamma)]. The real part
+** is what it radiates. Source: radial transmission line, Marcuvitz.
+*/
+cplx lstub__line_inductance(const lstub__line *line, double f)
+{
+    if (line->radial_dk == 0.0)
+        return cplx_of(line->inductance, 0.0);
+    double ka = 2.0 * LSTUB_PI * f * sqrt(line->radial_dk) / LSTUB_C0 * line->radius;
+    return cplx_scale(cplx_of(-log(0.5 * ka) - EULER_GAMMA, -0.5 * LSTUB_PI), LSTUB_MU0 / (2.0 * LSTUB_PI));
+}
+
+cplx lstub__line_capacitance(const lstub__line *line, double f)
+{
+    cplx lambda = lstub__wideband_lambda(f);
+    return cplx_of(line->c_constant + line->c_slope * lambda.re, line->c_slope * lambda.im);
+}
+
+/* Y = Ys (Yl + Ys T)/(Ys + Yl T) with Yl = jw Ce, T = tanh(gamma L). */
+cplx lstub__line_admittance(const lstub__line *line, double f)
+{
+    double w = 2.0 * LSTUB_PI * f;
+    cplx c = lstub__line_capacitance(line, f);
+    cplx root = cplx_sqrt(cplx_mul(lstub__line_inductance(line, f), c));   /* gamma = jw root, Ys = c/root */
+    cplx ys = cplx_div(c, root);
+    cplx t = cplx_tanh(cplx_scale(cplx_of(-root.im, root.re), w * line->length));
+    cplx yl = cplx_of(0.0, w * line->c_end);
+    return cplx_mul(ys, cplx_div(cplx_add(yl, cplx_mul(ys, t)), cplx_add(ys, cplx_mul(yl, t))));
+}
+
+/* S21 = 2/(2 + Z0 Y). */
+double lstub__lines_power(const lstub__line *lines, int count, double z_ref, double f)
+{
+    cplx y = cplx_of(0.0, 0.0);
+    for (int i = 0; i < count; i++)
+        y = cplx_add(y, lstub__line_admittance(&lines[i], f));
+    return 4.0 / cplx_norm(cplx_of(2.0 + z_ref * y.re, z_ref * y.im));
+}
+
+double lstub__lines_loss_db(const lstub__line *lines, int count, double z_ref, double f)
+{
+    double loss = -10.0 * log10(lstub__lines_power(lines, count, z_ref, f));
+    return loss > 0.0 ? loss : 0.0;    /* rounding of a stub that does nothing */
+}
+
+/* ---- notches ----------------------------------------------------------------------------------- */
+
+/* As in lstub_loaded_stub_frequency: root number n lies between (n-1) pi and (n-1/2) pi. */
+static double reactance(double theta, const void *q)
+{
+    return cos(theta) - *(const double *)q * theta * sin(theta);
+}
+
+static double electrical_length(double q, int n)
+{
+    double high = (n - 0.5) * LSTUB_PI;
+    return q > 0.0 ? lstub__root(reactance, &q, (n - 1) * LSTUB_PI, high, 1e-13) : high;
+}
+
+/* C' and L' change slowly with f: a fixed point, a digit or more a turn. */
+double lstub__line_seed(const lstub__line *line, int n)
+{
+    double f = 1e10;
+    for (int turn = 0; turn < 60; turn++) {
+        double c = lstub__line_capacitance(line, f).re, l = lstub__line_inductance(line, f).re;
+        double theta = electrical_length(line->c_end / (c * line->length), n);
+        double next = theta / (2.0 * LSTUB_PI * line->length * sqrt(l * c));
+        if (!(next <= LSTUB__F_MAX))     /* NaN, too: the radial wave is no inductance any more */
+            return NAN;
+        if (fabs(next - f) <= 1e-13 * f)
+            return next;
+        f = next;
+    }
+    return f;
+}
+
+typedef struct seeing {
+    const lstub__line *line;
+    double z_ref;
+} seeing;
+
+static double power_at(double f, const void *context)
+{
+    const seeing *s = context;
+    return lstub__lines_power(s->line, 1, s->z_ref, f);
+}
+
+double lstub__line_notch(const lstub__line *line, double z_ref, int n)
+{
+    double f = lstub__line_seed(line, n);
+    if (isnan(f) || line->lossless)
+        return f;
+    /* The minimum lies at the seed but for losses: close by in a laminate, 10 to 30 % lower where the barrel radiates. */
+    seeing s = {line, z_ref};
+    double spread = line->radial_dk > 0.0 ? 0.5 : 0.05, low = f * (1.0 - spread / n), high = f * (1.0 + 0.5 * spread / n);
+    double found = lstub__minimum(power_at, &s, low, high, 1e-10 * f);
+    double edge = 1e-6 * f;
+    return found - low < edge || high - found < edge ? NAN : found;
+}

@@ -1,0 +1,170 @@
+/* The inverse questions: how long a stub, how fast a signal. */
+#include "criteria/criteria.h"
+#include "num/root.h"
+
+#include <math.h>
+
+#define LENGTH_STEP 1e-9    /* m, to which a limit is found: far below any drill */
+
+int32_t lstub__cut_lines(const lstub__site *site, double top, double bottom, lstub__line *lines)
+{
+    int32_t count = 0;
+    if (top > 0.0)
+        lstub__site_line(site, 0, top, &lines[count++]);
+    if (bottom > 0.0)
+        lstub__site_line(site, 1, bottom, &lines[count++]);
+    return count;
+}
+
+static int passes(const lstub__site *site, int arm, double length, double other, const lstub__demand *demand)
+{
+    lstub__line lines[2];
+    int32_t count = lstub__cut_lines(site, arm == 0 ? length : other, arm == 0 ? other : length, lines);
+    return lstub__passes(lines, count, site->z_ref, demand);
+}
+
+/*
+** Bisection between a length that passes and one that fails. Pads make small steps in the curve, so the answer is a
+** length that passes with a failing one a step above it.
+*/
+double lstub__longest(const lstub__site *site, int arm, double other, const lstub__demand *demand, int32_t *limited_by)
+{
+    double good = 0.0, bad = site->arm[arm].full;
+    lstub_margin margin;
+    lstub__line lines[2];
+    *limited_by = LSTUB_LIMIT_NONE;
+    if (passes(site, arm, bad, other, demand))
+        return bad;
+    while (bad - good > LENGTH_STEP) {
+        double middle = 0.5 * (good + bad);
+        if (passes(site, arm, middle, other, demand))
+            good = middle;
+        else
+            bad = middle;
+    }
+    int32_t count = lstub__cut_lines(site, arm == 0 ? bad : other, arm == 0 ? other : bad, lines);
+    lstub__judge(lines, count, site->z_ref, demand, &margin);
+    *limited_by = margin.limited_by;
+    return good;
+}
+
+static int32_t longest(const lstub_stackup *stackup, const lstub_via *via, int32_t side, const lstub_model_options *options,
+                       const lstub_signal *signal, const lstub_criteria *criteria, lstub_stub_limit *out, lstub_error *err)
+{
+    lstub__demand demand;
+    lstub__site site;
+    int32_t status;
+    LSTUB_INIT(*out);
+    if ((status = lstub__demand_make(&demand, signal, criteria, err)) < 0
+        || (status = lstub__site_make(&site, stackup, via, options, err)) < 0)
+        return status;
+    if (side != LSTUB_SIDE_TOP && side != LSTUB_SIDE_BOTTOM)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "side", -1, "side = %ld: must be LSTUB_SIDE_TOP or LSTUB_SIDE_BOTTOM", (long)side);
+    int arm = lstub__arm_of(side);
+    if (site.arm[arm].count == 0)
+        return lstub__fail(err, LSTUB_E_NONE, "side", -1, "side = %ld: the via has no stub there", (long)side);
+    out->length = lstub__longest(&site, arm, site.arm[1 - arm].length, &demand, &out->limited_by);
+    out->stub_length = site.arm[arm].length;
+    out->margin = out->limited_by == LSTUB_LIMIT_NONE ? 0.0 : out->length - out->stub_length;
+    lstub__line line;
+    lstub__site_line(&site, arm, out->length > 0.0 ? out->length : site.arm[arm].full, &line);
+    if (fmax(demand.nyquist, demand.least_f1) > line.f_range)
+        return lstub__fail(err, LSTUB_W_RANGE, "signal", -1, "limit found beyond the stated range of this model, which ends at %.6g Hz",
+                           line.f_range);
+    return LSTUB_OK;
+}
+
+int32_t lstub_longest_stub(const lstub_stackup *stackup, const lstub_via *via, int32_t side, const lstub_model_options *options,
+                           const lstub_signal *signal, const lstub_criteria *criteria, lstub_stub_limit *out, lstub_error *err)
+{
+    lstub_stub_limit ours;
+    int32_t given, status = longest(stackup, via, side, options, signal, criteria, &ours, err);
+    if (status < 0)
+        return status;
+    given = lstub__give(&ours, sizeof ours, out, sizeof ours, "out", err);
+    return given < 0 ? given : status;
+}
+
+int32_t lstub_longest_stub_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t via_stride, const int32_t *sides,
+                                 size_t side_stride, const lstub_signal *signals, size_t signal_stride, const lstub_criteria *criteria,
+                                 size_t criteria_stride, size_t count, const lstub_model_options *options, lstub_stub_limit *out,
+                                 size_t out_stride, int32_t *status, lstub_error *err)
+{
+    lstub__batch batch = {0, 0};
+    int32_t result;
+    if (count > 0 && (vias == NULL || sides == NULL || signals == NULL || criteria == NULL || out == NULL))
+        return lstub__fail(err, LSTUB_E_NULL, "vias", -1, "vias, sides, signals, criteria or out = null: must not be null");
+    if (count > 0 && (result = lstub__stride(out_stride, sizeof *out, "out", err)) < 0)
+        return result;
+    for (size_t i = 0; i < count; i++) {
+        lstub_stub_limit *put = (lstub_stub_limit *)(void *)((char *)out + i * out_stride), ours;
+        lstub_error item;
+        LSTUB_INIT(item);
+        int32_t one = longest(stackup, (const lstub_via *)(const void *)((const char *)vias + i * via_stride),
+                              *(const int32_t *)(const void *)((const char *)sides + i * side_stride), options,
+                              (const lstub_signal *)(const void *)((const char *)signals + i * signal_stride),
+                              (const lstub_criteria *)(const void *)((const char *)criteria + i * criteria_stride), &ours, &item);
+        if (one < 0)
+            ours.length = ours.stub_length = ours.margin = NAN;
+        result = lstub__give(&ours, sizeof ours, put, sizeof ours, "out", &item);
+        if (result < 0)
+            one = result;
+        if (status != NULL)
+            status[i] = one;
+        lstub__batch_add(&batch, one, (int64_t)i, &item, err);
+    }
+    return batch.result;
+}
+
+typedef struct loss_limit {
+    const lstub_model *model;
+    double db;
+} loss_limit;
+
+static double over_loss(double f, const void *context)
+{
+    const loss_limit *limit = context;
+    return lstub__lines_loss_db(limit->model->line, limit->model->count, limit->model->z_ref, f) - limit->db;
+}
+
+int32_t lstub_highest_symbol_rate(const lstub_model *model, const lstub_criteria *criteria, double *symbol_rate,
+                                  int32_t *limited_by, lstub_error *err)
+{
+    lstub_criteria c;
+    int32_t which, status, limit = LSTUB_LIMIT_NONE;
+    if (model == NULL || symbol_rate == NULL)
+        return lstub__fail(err, LSTUB_E_NULL, "model", -1, "model or symbol_rate = null: must not be null");
+    if ((status = lstub__criteria_take(&c, criteria, err)) < 0)
+        return status;
+    double rate = HUGE_VAL, f1 = lstub__lines_first_notch(model->line, model->count, model->z_ref, &which);
+    if (c.notch_over_nyquist > 0.0 && f1 < HUGE_VAL) {
+        rate = 2.0 * f1 / c.notch_over_nyquist;
+        limit = LSTUB_LIMIT_NOTCH;
+    }
+    if (c.added_loss_db > 0.0 && model->count > 0) {
+        loss_limit context = {model, c.added_loss_db};
+        double high = fmin(f1, LSTUB__F_MAX), f = high;
+        if (over_loss(high, &context) > 0.0)    /* the loss rises up to the first notch */
+            f = lstub__root(over_loss, &context, LSTUB__F_MIN, high, 1e-9 * high);
+        if (f1 < HUGE_VAL || f < high)
+            if (2.0 * f < rate) {
+                rate = 2.0 * f;
+                limit = LSTUB_LIMIT_LOSS;
+            }
+    }
+    if (isnan(rate))
+        return lstub__fail(err, LSTUB_E_NONE, "criteria", -1, "added_loss_db = %.6g dB: exceeded at the lowest frequency already",
+                           c.added_loss_db);
+    if (rate > 1e12) {
+        rate = HUGE_VAL;
+        limit = LSTUB_LIMIT_NONE;
+    }
+    *symbol_rate = rate;
+    if (limited_by != NULL)
+        *limited_by = limit;
+    for (int32_t i = 0; i < model->count; i++)
+        if (rate < HUGE_VAL && 0.5 * rate > model->line[i].f_range)
+            return lstub__fail(err, LSTUB_W_RANGE, "criteria", -1, "found beyond the stated range of this model, which ends at %.6g Hz",
+                               model->line[i].f_range);
+    return LSTUB_OK;
+}

@@ -1,5 +1,6 @@
 #include "base/base.h"
 
+#include <locale.h>
 #include <math.h>
 #include <stdarg.h>
 #include <stdio.h>
@@ -47,6 +48,36 @@ static int error_usable(const lstub_error *err)
     return err != NULL && err->size >= sizeof *err && err->size <= STRUCT_MAX;
 }
 
+/* vsnprintf writes the decimal point of the host program's locale: put back a full stop between digits. */
+static void plain_points(char *text)
+{
+    const char *point = localeconv()->decimal_point;
+    size_t bytes = strlen(point);
+    if (bytes == 0 || strcmp(point, ".") == 0)
+        return;
+    for (char *at = text; (at = strstr(at, point)) != NULL; at++) {
+        int between = at > text && at[-1] >= '0' && at[-1] <= '9' && at[bytes] >= '0' && at[bytes] <= '9';
+        if (between) {
+            *at = '.';
+            memmove(at + 1, at + bytes, strlen(at + bytes) + 1);
+        }
+    }
+}
+
+void lstub__vformat(char *text, size_t bytes, const char *format, va_list args)
+{
+    vsnprintf(text, bytes, format, args);
+    plain_points(text);
+}
+
+void lstub__format(char *text, size_t bytes, const char *format, ...)
+{
+    va_list args;
+    va_start(args, format);
+    lstub__vformat(text, bytes, format, args);
+    va_end(args);
+}
+
 int32_t lstub__fail(lstub_error *err, int32_t status, const char *field, int64_t index, const char *format, ...)
 {
     va_list args;
@@ -56,7 +87,7 @@ int32_t lstub__fail(lstub_error *err, int32_t status, const char *field, int64_t
     err->index = index;
     snprintf(err->field, sizeof err->field, "%s", field);
     va_start(args, format);
-    vsnprintf(err->message, sizeof err->message, format, args);
+    lstub__vformat(err->message, sizeof err->message, format, args);
     va_end(args);
     return status;
 }
@@ -68,7 +99,7 @@ void lstub__fail_where(lstub_error *err, int64_t index, const char *format, ...)
     if (!error_usable(err))
         return;
     va_start(args, format);
-    vsnprintf(where, sizeof where, format, args);
+    lstub__vformat(where, sizeof where, format, args);
     va_end(args);
     snprintf(all, sizeof all, "%s: %s", where, err->message);
     all[sizeof err->message - 1] = '\0';

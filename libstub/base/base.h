@@ -4,6 +4,8 @@
 
 #include "libstub.h"
 
+#include <stdarg.h>
+
 #define LSTUB_C0   299792458.0              /* m/s                                                     */
 #define LSTUB_PI   3.14159265358979323846
 #define LSTUB_MU0  (4.0e-7 * LSTUB_PI)      /* H/m; differs from the 2019 value by 5.5e-10             */
@@ -15,6 +17,10 @@
 #else
 #define LSTUB_PRINTF(fmt, args)
 #endif
+
+/* snprintf with a full stop for a decimal point whatever the host program's locale. bytes >= 1. */
+void lstub__vformat(char *text, size_t bytes, const char *format, va_list args) LSTUB_PRINTF(3, 0);
+void lstub__format(char *text, size_t bytes, const char *format, ...) LSTUB_PRINTF(3, 4);
 
 /* Fills err (null is fine) and returns status, so that `return lstub__fail(...)` is the usual line. */
 int32_t lstub__fail(lstub_error *err, int32_t status, const char *field, int64_t index,

@@ -146,15 +146,14 @@ int32_t lstub_highest_symbol_rate(const lstub_model *model, const lstub_criteria
         double high = fmin(f1, LSTUB__F_MAX), f = high;
         if (over_loss(high, &context) > 0.0)    /* the loss rises up to the first notch */
             f = lstub__root(over_loss, &context, LSTUB__F_MIN, high, 1e-9 * high);
-        if (f1 < HUGE_VAL || f < high)
-            if (2.0 * f < rate) {
-                rate = 2.0 * f;
-                limit = LSTUB_LIMIT_LOSS;
-            }
+        if (isnan(f))
+            return lstub__fail(err, LSTUB_E_NONE, "criteria", -1, "added_loss_db = %.6g dB: exceeded at the lowest frequency already",
+                               c.added_loss_db);
+        if (2.0 * f < rate && (f1 < HUGE_VAL || f < high)) {
+            rate = 2.0 * f;
+            limit = LSTUB_LIMIT_LOSS;
+        }
     }
-    if (isnan(rate))
-        return lstub__fail(err, LSTUB_E_NONE, "criteria", -1, "added_loss_db = %.6g dB: exceeded at the lowest frequency already",
-                           c.added_loss_db);
     if (rate > 1e12) {
         rate = HUGE_VAL;
         limit = LSTUB_LIMIT_NONE;

@@ -1,0 +1,61 @@
+#!/bin/sh
+# The main job: from a board file to a back-drill plan.
+#
+#     sh examples/run.sh [BOARD.xml[.gz] [OUTDIR]]
+#
+# Without a board: the invented one in examples/data. Results go to OUTDIR, else to out/ beside this checkout's README.
+# The rules (which net carries which signal, what the fabricator can do) are those named by LSTUB_RULES, else those that
+# examples/data has for the board, else examples/data/generic_rules.txt.
+# Installs what is missing to build (Debian), builds in build/examples, plans. Exit 0: done, 1: an error, named.
+set -eu
+
+usage() {
+    echo "usage: sh run.sh [BOARD.xml[.gz] [OUTDIR]]     (environment: LSTUB_RULES=RULES.txt)"
+}
+fail() {
+    echo "run.sh: $*" >&2
+    exit 1
+}
+case "${1-}" in
+    -h | --help) usage; exit 0 ;;
+    -*) usage >&2; exit 1 ;;
+esac
+if [ $# -gt 2 ]; then
+    usage >&2
+    exit 1
+fi
+
+# The caller's folder stays the current one, so that relative paths mean what the caller means.
+here=$(CDPATH='' cd -- "$(dirname -- "$0")" && pwd)
+root=$(dirname -- "$here")
+board=${1-$here/data/demo_board.xml.gz}
+out=${2-$root/out}
+name=$(basename -- "$board")
+case $name in
+    demo_board.xml*) rules=$here/data/demo_rules.txt ;;
+    testcase10.xml*) rules=$here/data/testcase10_rules.txt ;;
+    *) rules=$here/data/generic_rules.txt ;;
+esac
+rules=${LSTUB_RULES:-$rules}
+[ -n "$out" ] || fail "OUTDIR is empty"
+[ -f "$board" ] || fail "no such board file: '$board'"
+[ -f "$rules" ] || fail "no such rules file: '$rules'"
+mkdir -p -- "$out" || fail "cannot make the folder '$out'"
+
+sh "$here/install_packages.sh" gcc libc6-dev make cmake libexpat1-dev zlib1g-dev
+
+build=$root/build/examples
+log=$build.log
+mkdir -p "$root/build" || fail "cannot make the folder '$root/build'"
+configure() {
+    cmake -S "$root" -B "$build" -DCMAKE_BUILD_TYPE=Release -DLSTUB_IPC2581=ON -DLSTUB_BUILD_EXAMPLES=ON \
+        -DLSTUB_BUILD_TESTS=OFF >"$log" 2>&1
+}
+echo "building in $build" >&2
+if ! configure; then           # a cache from another place or another compiler: once more from nothing
+    rm -rf "$build"
+    configure || { cat "$log" >&2; fail "cmake cannot configure the build"; }
+fi
+cmake --build "$build" --parallel --target board_plan >"$log" 2>&1 || { cat "$log" >&2; fail "the build failed"; }
+
+"$build/examples/board_plan" "$board" "$rules" "$out"

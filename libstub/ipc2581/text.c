@@ -2,6 +2,7 @@
 
 #include <math.h>
 #include <stdint.h>
+#include <string.h>
 
 static int is_blank(char c) { return c == ' ' || c == '\t' || c == '\n' || c == '\r'; }
 static int is_digit(char c) { return c >= '0' && c <= '9'; }
@@ -79,4 +80,16 @@ int lstub__parse_double(const char *text, double *value)
         return 0;
     *value = negative ? -number : number;
     return 1;
+}
+
+double lstub__length_unit(const char *text)
+{
+    static const struct {
+        const char *name;
+        double metres;
+    } units[] = {{"INCH", 25.4e-3}, {"MILLIMETER", 1e-3}, {"MM", 1e-3}, {"MICRON", 1e-6}};
+    for (size_t i = 0; i < sizeof units / sizeof units[0]; i++)
+        if (strcmp(text, units[i].name) == 0)
+            return units[i].metres;
+    return 0.0;
 }

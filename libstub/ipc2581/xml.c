@@ -62,7 +62,7 @@ void lstub__xml_fail(lstub__xml *xml, int32_t status, const char *field, const c
     if (xml->status < 0)
         return;
     va_start(args, format);
-    vsnprintf(message, sizeof message, format, args);
+    lstub__vformat(message, sizeof message, format, args);
     va_end(args);
     lstub__fail(xml->err, status, field, line, "line %ld: %s", line, message);
     lstub__xml_stop(xml, status);

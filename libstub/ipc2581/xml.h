@@ -2,16 +2,15 @@
 #ifndef LSTUB_IPC2581_XML_H
 #define LSTUB_IPC2581_XML_H
 
+#include "base/base.h"
 #include "libstub_ipc2581.h"
-
-#include <stdint.h>
 
 /* The elements the reader knows, in the order of strcmp: constant, then the name in the file. */
 #define LSTUB__ELEMENTS(E) \
-    E(ARC, "Arc") E(BACKDRILL, "Backdrill") E(BUTTERFLY, "Butterfly") E(CAD_HEADER, "CadHeader") E(CIRCLE, "Circle") \
+    E(ARC, "Arc") E(BACKDRILL, "Backdrill") E(BUTTERFLY, "Butterfly") E(CAD_DATA, "CadData") E(CAD_HEADER, "CadHeader") E(CIRCLE, "Circle") \
     E(COMPONENT, "Component") E(CONDUCTOR, "Conductor") E(CONTENT, "Content") E(CONTOUR, "Contour") E(CUTOUT, "Cutout") \
     E(DIAMOND, "Diamond") E(DICT_FILL, "DictionaryFillDesc") E(DICT_LINE, "DictionaryLineDesc") \
-    E(DICT_STANDARD, "DictionaryStandard") E(DICT_USER, "DictionaryUser") E(DIELECTRIC, "Dielectric") E(DONUT, "Donut") \
+    E(DICT_STANDARD, "DictionaryStandard") E(DICT_USER, "DictionaryUser") E(DIELECTRIC, "Dielectric") E(DONUT, "Donut") E(ECAD, "Ecad") \
     E(ELLIPSE, "Ellipse") E(ENTRY_FILL, "EntryFillDesc") E(ENTRY_LINE, "EntryLineDesc") E(ENTRY_STANDARD, "EntryStandard") \
     E(ENTRY_USER, "EntryUser") E(FEATURES, "Features") E(FILL_DESC, "FillDesc") E(FILL_REF, "FillDescRef") \
     E(HEXAGON, "Hexagon") E(HOLE, "Hole") E(IPC_2581, "IPC-2581") E(LAYER, "Layer") E(LAYER_FEATURE, "LayerFeature") \
@@ -70,7 +69,8 @@ int64_t lstub__xml_line(const lstub__xml *xml);
 /* Element `up` levels above the current one (0: itself), EL_OTHER beyond the root. */
 int     lstub__xml_above(const lstub__xml *xml, int up);
 /* Gives up: the message gets "line N: " before it. */
-void    lstub__xml_fail(lstub__xml *xml, int32_t status, const char *field, const char *format, ...);
+void    lstub__xml_fail(lstub__xml *xml, int32_t status, const char *field, const char *format, ...)
+    LSTUB_PRINTF(4, 5);
 /* An error that err holds already, of an allocation for instance. */
 void    lstub__xml_stop(lstub__xml *xml, int32_t status);
 

@@ -16,8 +16,8 @@ int32_t lstub__demand_make(lstub__demand *demand, const lstub_signal *signal, co
 
 /* Judges lines; never fails. Returns LSTUB_OK, or LSTUB_W_RANGE when the answer leans on the model beyond its range. */
 int32_t lstub__judge(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand, lstub_margin *margin);
-/* Only whether they pass, sooner. */
-int lstub__passes(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand);
+/* What is left of the tightest criterion, as a part of its limit: >= 0 when they pass; falls as a stub grows. */
+double lstub__left_over(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand);
 
 /*
 ** Longest length of the stub on one arm that passes, the other arm cut to `other` (0: none there): m, 0 if none

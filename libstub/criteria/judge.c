@@ -49,12 +49,13 @@ int32_t lstub__demand_make(lstub__demand *demand, const lstub_signal *signal, co
     return LSTUB_OK;
 }
 
-int lstub__passes(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand)
+double lstub__left_over(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand)
 {
     int32_t which;
-    if (lstub__lines_first_notch(lines, count, z_ref, &which) < demand->least_f1)
-        return 0;
-    return demand->loss_db == 0.0 || lstub__lines_loss_db(lines, count, z_ref, demand->nyquist) <= demand->loss_db;
+    double f1 = lstub__lines_first_notch(lines, count, z_ref, &which), left = f1 / demand->least_f1 - 1.0;
+    if (demand->loss_db > 0.0 && f1 > demand->nyquist)
+        left = fmin(left, 1.0 - lstub__lines_loss_db(lines, count, z_ref, demand->nyquist) / demand->loss_db);
+    return left;
 }
 
 /* The criterion that fails by most, or passes with least, each counted as a part of its limit. */

@@ -16,34 +16,39 @@ int32_t lstub__cut_lines(const lstub__site *site, double top, double bottom, lst
     return count;
 }
 
-static int passes(const lstub__site *site, int arm, double length, double other, const lstub__demand *demand)
+typedef struct cutting {
+    const lstub__site *site;
+    const lstub__demand *demand;
+    int    arm;
+    double other;
+} cutting;
+
+static int32_t lines_at(const cutting *c, double length, lstub__line *lines)
 {
-    lstub__line lines[2];
-    int32_t count = lstub__cut_lines(site, arm == 0 ? length : other, arm == 0 ? other : length, lines);
-    return lstub__passes(lines, count, site->z_ref, demand);
+    return lstub__cut_lines(c->site, c->arm == 0 ? length : c->other, c->arm == 0 ? c->other : length, lines);
 }
 
-/*
-** Bisection between a length that passes and one that fails. Pads make small steps in the curve, so the answer is a
-** length that passes with a failing one a step above it.
-*/
+/* What is left of the tightest criterion, as a part of its limit: >= 0 passes. */
+static double left_over(double length, const void *context)
+{
+    const cutting *c = context;
+    lstub__line lines[2];
+    return lstub__left_over(lines, lines_at(c, length, lines), c->site->z_ref, c->demand);
+}
+
+/* The answer passes, and a length LENGTH_STEP above it fails; pads make small jumps in the curve. */
 double lstub__longest(const lstub__site *site, int arm, double other, const lstub__demand *demand, int32_t *limited_by)
 {
-    double good = 0.0, bad = site->arm[arm].full;
+    cutting c = {site, demand, arm, other};
+    double good = LENGTH_STEP, bad = site->arm[arm].full;
     lstub_margin margin;
     lstub__line lines[2];
     *limited_by = LSTUB_LIMIT_NONE;
-    if (passes(site, arm, bad, other, demand))
+    if (left_over(bad, &c) >= 0.0)
         return bad;
-    while (bad - good > LENGTH_STEP) {
-        double middle = 0.5 * (good + bad);
-        if (passes(site, arm, middle, other, demand))
-            good = middle;
-        else
-            bad = middle;
-    }
-    int32_t count = lstub__cut_lines(site, arm == 0 ? bad : other, arm == 0 ? other : bad, lines);
-    lstub__judge(lines, count, site->z_ref, demand, &margin);
+    if (!lstub__bracket(left_over, &c, &good, &bad, LENGTH_STEP))
+        good = 0.0;
+    lstub__judge(lines, lines_at(&c, bad, lines), site->z_ref, demand, &margin);
     *limited_by = margin.limited_by;
     return good;
 }

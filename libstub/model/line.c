@@ -54,25 +54,13 @@ double lstub__lines_loss_db(const lstub__line *lines, int count, double z_ref, d
 
 /* ---- notches ----------------------------------------------------------------------------------- */
 
-/* As in lstub_loaded_stub_frequency: root number n lies between (n-1) pi and (n-1/2) pi. */
-static double reactance(double theta, const void *q)
-{
-    return cos(theta) - *(const double *)q * theta * sin(theta);
-}
-
-static double electrical_length(double q, int n)
-{
-    double high = (n - 0.5) * LSTUB_PI;
-    return q > 0.0 ? lstub__root(reactance, &q, (n - 1) * LSTUB_PI, high, 1e-13) : high;
-}
-
 /* C' and L' change slowly with f: a fixed point, a digit or more a turn. */
 double lstub__line_seed(const lstub__line *line, int n)
 {
     double f = 1e10;
     for (int turn = 0; turn < 60; turn++) {
         double c = lstub__line_capacitance(line, f).re, l = lstub__line_inductance(line, f).re;
-        double theta = electrical_length(line->c_end / (c * line->length), n);
+        double theta = lstub__open_stub_angle(line->c_end / (c * line->length), n);
         double next = theta / (2.0 * LSTUB_PI * line->length * sqrt(l * c));
         if (!(next <= LSTUB__F_MAX))     /* NaN, too: the radial wave is no inductance any more */
             return NAN;

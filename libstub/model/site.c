@@ -1,6 +1,7 @@
 #include "model/site.h"
 
 #include <math.h>
+#include <stddef.h>
 #include <string.h>
 
 /* Errors of the first notch found on the 24 full-wave cells, rounded up: tests/reference, docs/theory.md. */
@@ -69,23 +70,42 @@ static double seen_antipad(const lstub__via *via, double antipad, double height)
     return slot > 1.02 * via->in.drill ? slot : 1.02 * via->in.drill;
 }
 
-/* Barrel to one plane of a region; 0 for an antipad of 0. Never fails: the via has been checked. */
-static double to_plane(const lstub__via *via, double antipad, double height, const mix *m)
+typedef struct region {         /* what the capacitance between a barrel and the planes around it hangs on */
+    double above, below, height, through_plane, in_plane;   /* antipads, 0: no plane                          */
+    double per_metre;                                       /* F/m                                            */
+} region;
+
+#define REGIONS 4               /* kept: boards repeat a few cavities */
+
+typedef struct region_memory {
+    region kept[REGIONS];
+    int    next;
+} region_memory;
+
+/* Barrel to one plane; 0 for an antipad of 0. Never fails: the via has been checked. */
+static double to_plane(const lstub__via *via, double antipad, double height, const region *r)
 {
     double c = 0.0;
     if (antipad > 0.0)
-        lstub_plate_capacitance(via->in.drill, seen_antipad(via, antipad, height), height, m->through_plane, m->in_plane, &c, NULL);
+        lstub_plate_capacitance(via->in.drill, seen_antipad(via, antipad, height), height, r->through_plane, r->in_plane, &c, NULL);
     return c;
 }
 
-/* Capacitance per metre of the region between the planes above and below (antipads; 0: open, mirrored). */
-static double region_capacitance(const lstub__via *via, double above, double below, const mix *m)
+/* Capacitance per metre of barrel between the planes above and below; open on one side: mirrored there. */
+static double region_capacitance(const lstub__via *via, double above, double below, const mix *m, region_memory *memory)
 {
+    region r = {above, below, m->height, m->through_plane, m->in_plane, 0.0};
+    for (int i = 0; i < REGIONS; i++)
+        if (memcmp(&memory->kept[i], &r, offsetof(region, per_metre)) == 0)
+            return memory->kept[i].per_metre;
     if (above > 0.0 && below > 0.0) {
-        double upper = to_plane(via, above, m->height, m);
-        return (upper + (above == below ? upper : to_plane(via, below, m->height, m))) / m->height;
+        double upper = to_plane(via, above, r.height, &r);
+        r.per_metre = (upper + (above == below ? upper : to_plane(via, below, r.height, &r))) / r.height;
+    } else {
+        r.per_metre = to_plane(via, above > 0.0 ? above : below, 2.0 * r.height, &r) / r.height;
     }
-    return to_plane(via, above > 0.0 ? above : below, 2.0 * m->height, m) / m->height;
+    memory->kept[memory->next++ % REGIONS] = r;
+    return r.per_metre;
 }
 
 /* What a pad adds to a bare barrel over `height`, in an antipad. */
@@ -114,7 +134,7 @@ typedef struct walk {          /* the region that a layer lies in, kept while wa
     double  antipad;           /* the smaller of the two, 0: none */
 } walk;
 
-static void enter_region(walk *w, const lstub__via *via, int32_t layer, int32_t step, double lambda)
+static void enter_region(walk *w, const lstub__via *via, int32_t layer, int32_t step, double lambda, region_memory *memory)
 {
     const lstub_stackup *s = via->stackup;
     w->inner = next_plane(via, layer, -step);
@@ -126,7 +146,7 @@ static void enter_region(walk *w, const lstub__via *via, int32_t layer, int32_t 
         mix_add(&w->fill, &s->layer[i], lambda);
     mix_done(&w->fill);
     double a = antipad_at(via, w->inner), b = antipad_at(via, w->outer);
-    w->per_metre = region_capacitance(via, a, b, &w->fill);
+    w->per_metre = region_capacitance(via, a, b, &w->fill, memory);
     w->antipad = a > 0.0 && (b == 0.0 || a < b) ? a : b;
 }
 
@@ -188,7 +208,7 @@ static double end_capacitance(const lstub__via *via, int32_t end)
     return c;
 }
 
-static void make_arm(lstub__arm *arm, const lstub__via *via, int index, double lambda)
+static void make_arm(lstub__arm *arm, const lstub__via *via, int index, double lambda, region_memory *memory)
 {
     const lstub_stackup *s = via->stackup;
     int32_t step = index == 0 ? -1 : 1, exit = index == 0 ? via->first : via->last;
@@ -216,7 +236,7 @@ static void make_arm(lstub__arm *arm, const lstub__via *via, int index, double l
             continue;
         }
         if (!inside) {
-            enter_region(&w, via, i, step, lambda);
+            enter_region(&w, via, i, step, lambda, memory);
             add_range(arm, w.fill.height, w.fill.in_plane);
             inside = 1;
         }
@@ -277,10 +297,12 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
         return lstub__fail(err, LSTUB_E_UNSUPPORTED, "antipad", -1, "antipad: the barrel passes no plane; fidelities bulk and loaded "
                            "need one to know its capacitance");
     double lambda = lstub__wideband_lambda(1e9).re;
+    region_memory memory;
+    memset(&memory, 0, sizeof memory);
     find_inductance(site, lambda);
     for (int i = 0; i < 2; i++) {
         lstub__arm *arm = &site->arm[i];
-        make_arm(arm, &site->via, i, lambda);
+        make_arm(arm, &site->via, i, lambda, &memory);
         arm->length = arm->full;
         if (i == 0 ? site->via.top_drilled : site->via.bottom_drilled)
             arm->length -= i == 0 ? site->via.top - stackup->layer[site->via.in.start_layer].top

@@ -9,9 +9,9 @@
 */
 double lstub__k0_scaled(double x)
 {
-    double h = x > 9.0 ? 0.6 / sqrt(x) : 0.2;
+    double h = x > 6.0 ? 0.6 / sqrt(x) : 0.24;
     double sum = 0.5, term = 1.0;
-    for (int i = 1; term > 1e-18; i++) {
+    for (int i = 1; term > 1e-17; i++) {
         double s = sinh(0.5 * h * i);
         term = exp(-2.0 * x * s * s);
         sum += term;

@@ -79,12 +79,6 @@ int32_t lstub_delay_dk(double delay, double *dk, lstub_error *err)
     return LSTUB_OK;
 }
 
-/* cos t - q t sin t, whose root number n lies between (n-1) pi and (n-1/2) pi; q t = 2 pi f Ce Zs. */
-static double loaded_stub(double theta, const void *q)
-{
-    return cos(theta) - *(const double *)q * theta * sin(theta);
-}
-
 int32_t lstub_loaded_stub_frequency(double length, double dk, double zs, double end_capacitance, int32_t n,
                                     double *f, lstub_error *err)
 {
@@ -97,9 +91,7 @@ int32_t lstub_loaded_stub_frequency(double length, double dk, double zs, double 
         return lstub__fail(err, LSTUB_E_ARGUMENT, "n", -1, "n = %ld: must be >= 1 and <= 100000", (long)n);
     NEED(f);
     double delay = length * sqrt(dk) / LSTUB_C0;
-    double q = end_capacitance * zs / delay;
-    double low = (n - 1) * LSTUB_PI, high = (n - 0.5) * LSTUB_PI;
-    double theta = end_capacitance > 0.0 ? lstub__root(loaded_stub, &q, low, high, 1e-15 * high) : high;
+    double theta = lstub__open_stub_angle(end_capacitance * zs / delay, n);
     *f = theta / (2.0 * LSTUB_PI * delay);
     return LSTUB_OK;
 }

@@ -4,11 +4,21 @@
 
 typedef double lstub__function(double x, const void *context);
 
-/* Root in [a, b], where f changes sign (a zero at an end counts): regula falsi in the Illinois form, falling back on
-** bisection. Stops when the bracket is narrower than tol. Without a change of sign: NaN. */
+/*
+** Narrows [*a, *b], where f changes sign, until it is no wider than tol: regula falsi in the Illinois form, with
+** bisection where that is slow. A jump through zero counts as a root. 0 and nothing touched without a change of sign.
+*/
+int lstub__bracket(lstub__function *f, const void *context, double *a, double *b, double tol);
+
+/* Middle of the narrowed bracket, or the end where f is exactly 0; NaN without a change of sign. */
 double lstub__root(lstub__function *f, const void *context, double a, double b, double tol);
 
-/* Place of the least value in [a, b] by golden sections, to tol. For f with one minimum there. */
+/* Place of the least value in [a, b], to tol, by parabolas through three points and golden sections (Brent 1973). For
+** f with one minimum there. */
 double lstub__minimum(lstub__function *f, const void *context, double a, double b, double tol);
+
+/* Electrical length of an open stub with an end load at its zero of reactance number n = 1, 2 ...: the root of
+** cot t = q t between (n-1) pi and (n-1/2) pi, q >= 0. */
+double lstub__open_stub_angle(double q, int n);
 
 #endif

@@ -79,6 +79,19 @@ static int32_t check_list(const lstub__via *via, const lstub_on_layer *list, siz
     return LSTUB_OK;
 }
 
+int32_t lstub__via_counts(const lstub_via *in, lstub_error *err)
+{
+    const struct { size_t count, most; const char *field; } list[] = {
+        {in->pad_count, LSTUB_LAYERS_MAX, "pad_count"},         {in->antipad_count, LSTUB_LAYERS_MAX, "antipad_count"},
+        {in->clear_count, LSTUB_LAYERS_MAX, "clear_count"},     {in->connect_count, LSTUB_LAYERS_MAX, "connect_count"},
+        {in->backdrill_count, 2, "backdrill_count"}};
+    for (size_t i = 0; i < sizeof list / sizeof list[0]; i++)
+        if (list[i].count > list[i].most)
+            return lstub__fail(err, LSTUB_E_ARGUMENT, list[i].field, -1, "%s = %lu: must be <= %lu", list[i].field,
+                               (unsigned long)list[i].count, (unsigned long)list[i].most);
+    return LSTUB_OK;
+}
+
 static int32_t take_span(lstub__via *via, lstub_error *err)
 {
     lstub_via *in = &via->in;
@@ -271,7 +284,8 @@ int32_t lstub__via_take(lstub__via *via, const lstub_stackup *stackup, const lst
     if (in->nonfunctional_pads != LSTUB_PADS_REMOVED && in->nonfunctional_pads != LSTUB_PADS_KEPT)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "nonfunctional_pads", -1, "nonfunctional_pads = %ld: must be one of LSTUB_PADS_...",
                            (long)in->nonfunctional_pads);
-    if ((status = lstub__check(in->drill, &DIAMETER, "drill", err)) < 0
+    if ((status = lstub__via_counts(in, err)) < 0
+        || (status = lstub__check(in->drill, &DIAMETER, "drill", err)) < 0
         || (status = check_pad_default(in->pad_start, in->drill, "pad_start", err)) < 0
         || (status = check_pad_default(in->pad_inner, in->drill, "pad_inner", err)) < 0
         || (status = check_pad_default(in->pad_end, in->drill, "pad_end", err)) < 0

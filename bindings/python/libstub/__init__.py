@@ -1,0 +1,78 @@
+"""Via-stub analysis for multilayer boards, in process.
+
+On a multilayer board a fast signal changes layers through a plated barrel. Whatever is left of the barrel beyond the
+layers where the signal enters and leaves is an open stub. This package says how long the stubs of a via are, where they
+notch the channel, what they cost at a given symbol rate, whether to drill them back, from which side and how deep, and
+does so for one via or a whole board.
+
+    import libstub as ls
+
+    board = ls.Stackup.load("board.xml")                    # or built layer by layer
+    via = ls.Via(board, drill=ls.mil(10), pad=ls.mil(20), antipad=ls.mil(30),
+                 connects=("TOP", "INT3"), returns=ls.Ring(4, ls.mil(40)))
+    link = ls.Signal(baud=ls.gbd(53.125), levels=4)
+    criteria = ls.Criteria(notch_over_nyquist=2.0, added_loss_db=0.3)
+
+    via.stubs                                               # [Stub(bottom, 1.41 mm below INT3)]
+    m = via.model()                                         # compiled once, then microseconds a question
+    m.dk_effective, m.notches(up_to=ls.ghz(67))
+    m.margin(link, criteria)
+    ls.longest_stub(via, link, criteria)                    # inverse question
+    m.s21(np.linspace(1e9, 67e9, 2000))                     # NumPy in, NumPy out
+
+Units are SI throughout (metre, hertz, ohm, henry, farad, second; Dk is relative); `units` converts. Diameters, not
+radii. Depths are measured downwards from the outer face of the top copper layer. Layers are given by name or by index
+and come back by name. Objects are frozen: make another one instead of changing one. They pickle by being made again.
+Objects may be used by any number of threads at once; long calls release the GIL.
+
+Arrays go in as anything NumPy reads, C-contiguous float64 without a copy, and come out as NumPy arrays. Without NumPy
+they go in as sequences or one-dimensional buffers and come out as array.array and ComplexArray.
+
+What fails raises a `LibstubError` with the library's message; a result outside the stated range of the model comes with
+one `RangeWarning` per call. Results are estimates from a model: confirm drill depths, tolerances and clearances with
+the fabricator; verify critical links by measurement or full-wave simulation; safety-related equipment follows its own
+codes and licensed practice.
+"""
+
+from __future__ import annotations
+
+from . import _core, units
+from ._batch import (
+    FirstNotches, Margins, StubLimits, first_notch_batch, longest_stub, longest_stub_batch, margin_batch,
+)
+from ._board import Board, Hole, Notice, Rules, RulesSignal
+from ._core import ComplexArray
+from ._criteria import Criteria, Limit, Margin, Signal, StubLimit, SymbolRateLimit
+from ._errors import (
+    ArgumentError, BatchError, FormatError, GeometryError, LibstubError, NoSuchError, RangeWarning, ReadError,
+    UnsupportedError, WriteError,
+)
+from ._formulas import (
+    Coax, TwinRod, coax, delay_dk, handbook_capacitance, handbook_inductance, loaded_stub_frequency, notch_floor,
+    plate_capacitance, quarter_wave_dk, quarter_wave_frequency, quarter_wave_length, return_inductance,
+    rule_of_thumb_length, stub_skirt, twin_rod,
+)
+from ._frozen import Status
+from ._material import Conductor, Dielectric, Permittivity
+from ._model import ALL_STUBS, Model, Notch, StubLine
+from ._plan import Action, Capability, Decision, DrillCut, DrillGroup, Job, Plan, PlanSummary, Reason, plan
+from ._stackup import Depth, Interval, Layer, Stackup
+from ._via import BackDrill, Pair, Pin, Ring, Stub, Via, Wall
+from .units import ff, gbd, gbps, ghz, inch, mbd, mhz, mil, mm, nh, ns, pf, ph, ps, um
+
+__version__: str = _core.version
+model_revision: int = _core.model_revision
+
+__all__ = [
+    "ALL_STUBS", "Action", "ArgumentError", "BackDrill", "BatchError", "Board", "Capability", "Coax", "ComplexArray",
+    "Conductor", "Criteria", "Decision", "Depth", "Dielectric", "DrillCut", "DrillGroup", "FirstNotches", "FormatError",
+    "GeometryError", "Hole", "Interval", "Job", "Layer", "LibstubError", "Limit", "Margin", "Margins", "Model",
+    "NoSuchError", "Notch", "Notice", "Pair", "Permittivity", "Pin", "Plan", "PlanSummary", "RangeWarning", "ReadError",
+    "Reason", "Ring", "Rules", "RulesSignal", "Signal", "Stackup", "Status", "Stub", "StubLimit", "StubLimits",
+    "StubLine", "SymbolRateLimit", "TwinRod", "UnsupportedError", "Via", "Wall", "WriteError", "coax", "delay_dk", "ff",
+    "first_notch_batch", "gbd", "gbps", "ghz", "handbook_capacitance", "handbook_inductance", "inch",
+    "loaded_stub_frequency", "longest_stub", "longest_stub_batch", "margin_batch", "mbd", "mhz", "mil", "mm",
+    "model_revision", "nh", "notch_floor", "ns", "pf", "ph", "plan", "plate_capacitance", "ps", "quarter_wave_dk",
+    "quarter_wave_frequency", "quarter_wave_length", "return_inductance", "rule_of_thumb_length", "stub_skirt",
+    "twin_rod", "um", "units",
+]

@@ -1,0 +1,405 @@
+"""Vias: the geometry of one barrel, and its stub pieces."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any, Iterable, Literal, Mapping, Sequence
+
+from . import _core
+from ._errors import GeometryError
+from ._frozen import SIDE, Frozen, fill, instance, nonzero, number, show
+from ._stackup import LayerRef, Stackup, named_layers
+
+if TYPE_CHECKING:
+    from ._model import Model
+
+Side = Literal["top", "bottom"]
+
+
+@dataclass(frozen=True, repr=False)
+class Ring(Frozen):
+    """Return vias on a circle around the barrel.
+
+    Parameters
+    ----------
+    count : 1 to 1000
+    distance : radius of the circle, m, > 0
+    drill : diameter of the return vias, m; None: that of the via
+
+    >>> Ring(4, 40 * 25.4e-6)
+    Ring(count=4, distance=40 mil)
+    """
+
+    count: int
+    distance: float
+    drill: float | None = None
+
+    def __post_init__(self) -> None:
+        fill(self, count=_core.integer("count", self.count), distance=number("distance", self.distance))
+        if self.drill is not None:
+            fill(self, drill=nonzero("drill", self.drill))
+
+
+@dataclass(frozen=True, repr=False)
+class Wall(Frozen):
+    """A closed return wall at a distance from the axis (m, > 0)."""
+
+    distance: float
+
+    def __post_init__(self) -> None:
+        fill(self, distance=number("distance", self.distance))
+
+
+@dataclass(frozen=True, repr=False)
+class Pair(Frozen):
+    """The partner barrel of a differential pair.
+
+    Parameters
+    ----------
+    pitch : axis to axis, m, > drill
+    shared : one antipad around both (the union and the band between them) instead of one each
+    """
+
+    pitch: float
+    shared: bool = False
+
+    def __post_init__(self) -> None:
+        instance("shared", self.shared, bool, "True or False")
+        fill(self, pitch=number("pitch", self.pitch))
+
+
+@dataclass(frozen=True, repr=False)
+class BackDrill(Frozen):
+    """A back-drill that has been made or is to be made.
+
+    Parameters
+    ----------
+    side : "top" or "bottom"
+    depth : from the outer face of that side's outer copper to the tip, m
+    diameter : of the bit, m, at least the drill
+    """
+
+    side: Side
+    depth: float
+    diameter: float
+
+    def __post_init__(self) -> None:
+        SIDE.code("side", self.side)
+        fill(self, depth=number("depth", self.depth), diameter=number("diameter", self.diameter))
+
+
+@dataclass(frozen=True, repr=False)
+class Pin(Frozen):
+    """A press-fit pin, and the barrel that it needs.
+
+    Parameters
+    ----------
+    side : "top" or "bottom", where it enters
+    length : least barrel to keep from that side's surface, m
+    """
+
+    side: Side
+    length: float
+
+    def __post_init__(self) -> None:
+        SIDE.code("side", self.side)
+        fill(self, length=number("length", self.length))
+
+
+@dataclass(frozen=True, repr=False)
+class Stub(Frozen):
+    """A piece of barrel beyond the outermost layers that connect. Lengths and depths in m.
+
+    side, exit_layer (the connecting layer it hangs on), end_layer (the outer layer its barrel ends on; None where it
+    was drilled), top and bottom (depths of its ends), length (nominal), length_min and length_max (worst case over the
+    stackup's tolerances), length_rss_min and length_rss_max (root of the sum of squares).
+    """
+
+    side: Side
+    exit_layer: str
+    end_layer: str | None
+    top: float
+    bottom: float
+    length: float
+    length_min: float
+    length_max: float
+    length_rss_min: float
+    length_rss_max: float
+
+    def __repr__(self) -> str:
+        where = "below" if self.side == "bottom" else "above"
+        return f"Stub({self.side}, {show(self.length, 'm')} {where} {self.exit_layer})"
+
+
+def stubs_of(stackup: Stackup, values: Iterable[tuple[Any, ...]]) -> list[Stub]:
+    return [
+        Stub(SIDE.word(side), stackup.layers[exit_layer].name, stackup._name(end_layer), *rest)  # type: ignore[arg-type]
+        for side, exit_layer, end_layer, *rest in values
+    ]
+
+
+def _values_on_layers(stackup: Stackup, name: str, values: Any) -> tuple[tuple[str, float], ...]:
+    if values is None:
+        return ()
+    if not isinstance(values, Mapping):
+        raise TypeError(f"{name}: must be a dict of layers and diameters, not {type(values).__name__}")
+    names = named_layers(stackup, name, values.keys())
+    return tuple((layer, number(f"{name}[{layer!r}]", value)) for layer, value in zip(names, values.values()))
+
+
+def _diameter(name: str, value: Any, default: float) -> float:
+    return default if value is None else number(name, value)
+
+
+class Via:
+    """A via on a stackup. Immutable; checked when it is made. Lengths in m, diameters not radii.
+
+    Layers are given by name or by index from the top.
+
+    Parameters
+    ----------
+    stackup : `Stackup` it is drilled into
+    drill : barrel diameter (drilled hole), > 0
+    connects : layers where the signal enters or leaves, in any order: one or more copper layers within the span
+    pad : pad diameter at the start, on inner layers and at the end; None: none; else >= drill
+    pad_start, pad_inner, pad_end : the same one by one, in place of pad. pad_inner is on the inner layers that connect,
+        and on all of them with nonfunctional_pads
+    antipad : on every plane crossed that does not connect; None: mixed layers are no plane here, and planes need an
+        entry in antipads
+    span : (start, end), copper layers the barrel runs from and to; None: through, from the first copper to the last
+    returns : `Ring` of return vias, `Wall`, or None: no return near, the plate pairs carry it and radiate
+    pair : `Pair`, or None
+    backdrills : sequence of `BackDrill`, at most one a side
+    pin : `Pin`, or None
+    pads : {layer: diameter} that replace the pads above; 0: no pad
+    antipads : {layer: diameter} that replace the antipad; 0: no plane at the via on this layer
+    clear : {layer: diameter} free of other copper around the axis (for the drill bit), where known
+    nonfunctional_pads : pads on inner layers that do not connect are kept
+
+    Raises `ArgumentError`, `GeometryError` or `NoSuchError` with the member, value and layer.
+
+    >>> core = Dielectric(3.6, 0.004)
+    >>> board = Stackup([Layer("TOP", "signal", 35e-6), Layer("D1", "dielectric", 2e-4, dielectric=core),
+    ...                  Layer("GND", "plane", 35e-6), Layer("D2", "dielectric", 2e-4, dielectric=core),
+    ...                  Layer("INT", "signal", 35e-6), Layer("D3", "dielectric", 1e-3, dielectric=core),
+    ...                  Layer("BOTTOM", "signal", 35e-6)])
+    >>> via = Via(board, drill=2.5e-4, pad=5e-4, antipad=7.5e-4, connects=("TOP", "INT"), returns=Ring(4, 1e-3))
+    >>> via
+    Via(TOP to BOTTOM, drill=0.25 mm, connects=('TOP', 'INT'), pad=0.5 mm, antipad=0.75 mm, returns=Ring(count=4, distance=1 mm))
+    >>> via.stubs
+    [Stub(bottom, 1.035 mm below INT)]
+    """
+
+    __slots__ = (
+        "stackup", "drill", "connects", "pad_start", "pad_inner", "pad_end", "antipad", "span", "returns", "pair",
+        "backdrills", "pin", "_pads", "_antipads", "_clear", "nonfunctional_pads", "_record", "__weakref__",
+    )
+    stackup: Stackup
+    drill: float
+    connects: tuple[str, ...]
+    pad_start: float
+    pad_inner: float
+    pad_end: float
+    antipad: float
+    span: tuple[str, str] | None
+    returns: Ring | Wall | None
+    pair: Pair | None
+    backdrills: tuple[BackDrill, ...]
+    pin: Pin | None
+    nonfunctional_pads: bool
+    _pads: tuple[tuple[str, float], ...]
+    _antipads: tuple[tuple[str, float], ...]
+    _clear: tuple[tuple[str, float], ...]
+    _record: Any
+
+    def __init__(
+        self,
+        stackup: Stackup,
+        *,
+        drill: float,
+        connects: Sequence[LayerRef],
+        pad: float | None = None,
+        pad_start: float | None = None,
+        pad_inner: float | None = None,
+        pad_end: float | None = None,
+        antipad: float | None = None,
+        span: tuple[LayerRef, LayerRef] | None = None,
+        returns: Ring | Wall | None = None,
+        pair: Pair | None = None,
+        backdrills: Sequence[BackDrill] = (),
+        pin: Pin | None = None,
+        pads: Mapping[Any, float] | None = None,
+        antipads: Mapping[Any, float] | None = None,
+        clear: Mapping[Any, float] | None = None,
+        nonfunctional_pads: bool = False,
+    ):
+        instance("stackup", stackup, Stackup, "a Stackup")
+        instance("returns", returns, (Ring, Wall, type(None)), "a Ring, a Wall or None")
+        instance("pair", pair, (Pair, type(None)), "a Pair or None")
+        instance("pin", pin, (Pin, type(None)), "a Pin or None")
+        instance("nonfunctional_pads", nonfunctional_pads, bool, "True or False")
+        instance("backdrills", backdrills, (list, tuple), "a sequence of BackDrill")
+        for item in backdrills:
+            instance("backdrills", item, BackDrill, "a sequence of BackDrill")
+        common = _diameter("pad", pad, 0.0)
+        fill(
+            self,
+            stackup=stackup,
+            drill=number("drill", drill),
+            connects=named_layers(stackup, "connects", connects),
+            pad_start=_diameter("pad_start", pad_start, common),
+            pad_inner=_diameter("pad_inner", pad_inner, common),
+            pad_end=_diameter("pad_end", pad_end, common),
+            antipad=_diameter("antipad", antipad, 0.0),
+            span=_span(stackup, span),
+            returns=returns,
+            pair=pair,
+            backdrills=tuple(backdrills),
+            pin=pin,
+            _pads=_values_on_layers(stackup, "pads", pads),
+            _antipads=_values_on_layers(stackup, "antipads", antipads),
+            _clear=_values_on_layers(stackup, "clear", clear),
+            nonfunctional_pads=nonfunctional_pads,
+        )
+        record = _core.record("via", self._values())
+        _core.via_check(stackup._handle, record)
+        fill(self, _record=record)
+
+    def _values(self) -> tuple[Any, ...]:
+        """The members of the header's struct, in its order."""
+        index = self.stackup.index
+        start, end = (0, 0) if self.span is None else (index(self.span[0]), index(self.span[1]))
+        ring = self.returns if isinstance(self.returns, Ring) else None
+        pair = _core.PAIR_NONE
+        if self.pair is not None:
+            pair = _core.PAIR_SHARED if self.pair.shared else _core.PAIR_SEPARATE
+        kind = _core.RETURN_NONE
+        if self.returns is not None:
+            kind = _core.RETURN_VIAS if ring else _core.RETURN_WALL
+        return (
+            start,
+            end,
+            self.drill,
+            self.pad_start,
+            self.pad_inner,
+            self.pad_end,
+            self.antipad,
+            tuple((index(layer), value) for layer, value in self._pads),
+            tuple((index(layer), value) for layer, value in self._antipads),
+            tuple((index(layer), value) for layer, value in self._clear),
+            _core.PADS_KEPT if self.nonfunctional_pads else _core.PADS_REMOVED,
+            kind,
+            tuple(index(layer) for layer in self.connects),
+            self.returns.distance if self.returns is not None else 0.0,
+            ring.drill if ring is not None and ring.drill is not None else 0.0,
+            ring.count if ring is not None else 0,
+            pair,
+            self.pair.pitch if self.pair is not None else 0.0,
+            tuple((SIDE.code("side", b.side), b.depth, b.diameter) for b in self.backdrills),
+            SIDE.code("side", self.pin.side) if self.pin is not None else 0,
+            self.pin.length if self.pin is not None else 0.0,
+        )
+
+    def __setattr__(self, name: str, value: Any) -> None:
+        raise AttributeError("a Via cannot be changed; make another one with replace()")
+
+    __delattr__ = __setattr__  # type: ignore[assignment]
+
+    @property
+    def pads(self) -> dict[str, float]:
+        """Diameters that replace the pads on some layers, m."""
+        return dict(self._pads)
+
+    @property
+    def antipads(self) -> dict[str, float]:
+        """Diameters that replace the antipad on some layers, m."""
+        return dict(self._antipads)
+
+    @property
+    def clear(self) -> dict[str, float]:
+        """Diameters free of other copper on some layers, m."""
+        return dict(self._clear)
+
+    @property
+    def stubs(self) -> list[Stub]:
+        """The stub pieces, top one first: none, one or two `Stub`."""
+        return stubs_of(self.stackup, _core.via_stubs(self.stackup._handle, self._record))
+
+    def model(self, *, fidelity: Literal["default", "bulk", "loaded"] = "default", z_ref: float = 50.0) -> Model:
+        """The electrical model of this via, compiled: see `Model`."""
+        from ._model import Model
+
+        return Model(self, fidelity=fidelity, z_ref=z_ref)
+
+    def replace(self, **changes: Any) -> Via:
+        """The same via but for some arguments, also on another stackup (layers are carried over by name).
+
+        A new ``pad`` replaces all three pads.
+        """
+        arguments = self._arguments()
+        if "pad" in changes:
+            for name in ("pad_start", "pad_inner", "pad_end"):
+                del arguments[name]
+        return Via(**{**arguments, **changes})
+
+    def _arguments(self) -> dict[str, Any]:
+        return {
+            "stackup": self.stackup, "drill": self.drill, "connects": self.connects, "pad_start": self.pad_start,
+            "pad_inner": self.pad_inner, "pad_end": self.pad_end, "antipad": self.antipad, "span": self.span,
+            "returns": self.returns, "pair": self.pair, "backdrills": self.backdrills, "pin": self.pin,
+            "pads": self.pads, "antipads": self.antipads, "clear": self.clear,
+            "nonfunctional_pads": self.nonfunctional_pads,
+        }
+
+    def _key(self) -> tuple[Any, ...]:
+        return (
+            self.stackup, self.drill, self.connects, self.pad_start, self.pad_inner, self.pad_end, self.antipad,
+            self.span, self.returns, self.pair, self.backdrills, self.pin, self._pads, self._antipads, self._clear,
+            self.nonfunctional_pads,
+        )
+
+    def __eq__(self, other: object) -> bool:
+        if not isinstance(other, Via):
+            return NotImplemented
+        return self._key() == other._key()
+
+    def __hash__(self) -> int:
+        return hash(self._key())
+
+    def __reduce__(self) -> Any:
+        return _rebuild_via, (self._arguments(),)
+
+    def __repr__(self) -> str:
+        copper = self.stackup.copper
+        start, end = self.span or (copper[0], copper[-1])
+        parts = [f"{start} to {end}", f"drill={show(self.drill, 'm')}", f"connects={self.connects!r}"]
+        if self.pad_start == self.pad_inner == self.pad_end:
+            sizes = {"pad": self.pad_start}
+        else:
+            sizes = {"pad_start": self.pad_start, "pad_inner": self.pad_inner, "pad_end": self.pad_end}
+        sizes["antipad"] = self.antipad
+        parts += [f"{name}={show(size, 'm')}" for name, size in sizes.items() if size]
+        for name in ("pads", "antipads", "clear"):
+            values = getattr(self, name)
+            if values:
+                parts.append(f"{name}={{{', '.join(f'{k!r}: ' + show(v, 'm') for k, v in values.items())}}}")
+        for name in ("returns", "pair", "backdrills", "pin", "nonfunctional_pads"):
+            if getattr(self, name):
+                parts.append(f"{name}={getattr(self, name)!r}")
+        return f"Via({', '.join(parts)})"
+
+
+def _rebuild_via(arguments: dict[str, Any]) -> Via:
+    return Via(**arguments)
+
+
+def _span(stackup: Stackup, span: Any) -> tuple[str, str] | None:
+    if span is None:
+        return None
+    names = named_layers(stackup, "span", span)
+    if len(names) != 2:
+        raise TypeError(f"span: must be two layers, start and end, not {len(names)}")
+    if names[0] == names[1]:
+        # 0 and 0 would mean "through" to the C library
+        raise GeometryError(f"span: start and end are the same layer '{names[0]}'", _core.E_GEOMETRY, "span")
+    return names[0], names[1]

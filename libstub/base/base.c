@@ -107,6 +107,11 @@ void lstub__fail_where(lstub_error *err, int64_t index, const char *format, ...)
     err->index = index;
 }
 
+int32_t lstub__need(const void *pointer, const char *field, lstub_error *err)
+{
+    return pointer != NULL ? LSTUB_OK : lstub__fail(err, LSTUB_E_NULL, field, -1, "%s = null: must not be null", field);
+}
+
 int32_t lstub__check(double value, const lstub__range *range, const char *field, lstub_error *err)
 {
     const char *space = range->unit[0] ? " " : "";
@@ -155,6 +160,12 @@ int32_t lstub__give(const void *ours, size_t size, void *theirs, size_t first, c
     memcpy((char *)theirs + sizeof size, (const char *)ours + sizeof size,
            (their_size < size ? their_size : size) - sizeof size);
     return LSTUB_OK;
+}
+
+int32_t lstub__fits(const void *theirs, size_t first, const char *name, lstub_error *err)
+{
+    size_t unused;
+    return size_of(theirs, first, name, &unused, err);
 }
 
 int32_t lstub__stride(size_t stride, size_t first, const char *name, lstub_error *err)

@@ -29,6 +29,9 @@ int32_t lstub__fail(lstub_error *err, int32_t status, const char *field, int64_t
 /* Puts "item: " before a message that a callee has left in err, and its index in place. */
 void lstub__fail_where(lstub_error *err, int64_t index, const char *format, ...) LSTUB_PRINTF(3, 4);
 
+/* LSTUB_E_NULL and its message where a pointer is null. */
+int32_t lstub__need(const void *pointer, const char *field, lstub_error *err);
+
 /* Limits of a value, both included unless `above` (then low itself is out). */
 typedef struct lstub__range {
     double      low, high;
@@ -45,6 +48,8 @@ int32_t lstub__check(double value, const lstub__range *range, const char *field,
 int32_t lstub__take(void *ours, size_t size, const void *theirs, size_t first, const char *name, lstub_error *err);
 /* Writes ours into the caller's struct of any size: as much as fits, its own size kept. */
 int32_t lstub__give(const void *ours, size_t size, void *theirs, size_t first, const char *name, lstub_error *err);
+/* Whether lstub__give would do: to check all outputs before writing the first. */
+int32_t lstub__fits(const void *theirs, size_t first, const char *name, lstub_error *err);
 /* Whether an array's stride can hold such structs. */
 int32_t lstub__stride(size_t stride, size_t first, const char *name, lstub_error *err);
 

@@ -100,8 +100,8 @@ int32_t lstub_signal_nyquist(const lstub_signal *signal, double *nyquist, lstub_
     int32_t status = lstub__signal_take(&s, signal, err);
     if (status < 0)
         return status;
-    if (nyquist == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "nyquist", -1, "nyquist = null: must point to a double");
+    if (lstub__need(nyquist, "nyquist", err) < 0)
+        return LSTUB_E_NULL;
     *nyquist = 0.5 * s.symbol_rate;
     return LSTUB_OK;
 }
@@ -112,8 +112,8 @@ int32_t lstub_signal_bit_rate(const lstub_signal *signal, double *bit_rate, lstu
     int32_t status = lstub__signal_take(&s, signal, err);
     if (status < 0)
         return status;
-    if (bit_rate == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "bit_rate", -1, "bit_rate = null: must point to a double");
+    if (lstub__need(bit_rate, "bit_rate", err) < 0)
+        return LSTUB_E_NULL;
     *bit_rate = bits_per_second(&s);
     return LSTUB_OK;
 }
@@ -131,8 +131,8 @@ int32_t lstub_model_margin(const lstub_model *model, const lstub_signal *signal,
     lstub__demand demand;
     lstub_margin ours;
     int32_t status, given;
-    if (model == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "model", -1, "model = null: must not be null");
+    if (lstub__need(model, "model", err) < 0)
+        return LSTUB_E_NULL;
     if ((status = lstub__demand_make(&demand, signal, criteria, err)) < 0)
         return status;
     status = lstub__judge(model->line, model->count, model->z_ref, &demand, &ours);
@@ -146,8 +146,9 @@ int32_t lstub_margin_batch(const lstub_stackup *stackup, const lstub_via *vias, 
 {
     lstub__batch batch = {0, 0};
     int32_t result;
-    if (count > 0 && (vias == NULL || signals == NULL || criteria == NULL || out == NULL))
-        return lstub__fail(err, LSTUB_E_NULL, "vias", -1, "vias, signals, criteria or out = null: must not be null");
+    if (count > 0 && (lstub__need(vias, "vias", err) < 0 || lstub__need(signals, "signals", err) < 0
+                      || lstub__need(criteria, "criteria", err) < 0 || lstub__need(out, "out", err) < 0))
+        return LSTUB_E_NULL;
     if (count > 0 && (result = lstub__stride(out_stride, sizeof *out, "out", err)) < 0)
         return result;
     for (size_t i = 0; i < count; i++) {

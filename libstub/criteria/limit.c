@@ -97,8 +97,10 @@ int32_t lstub_longest_stub_batch(const lstub_stackup *stackup, const lstub_via *
 {
     lstub__batch batch = {0, 0};
     int32_t result;
-    if (count > 0 && (vias == NULL || sides == NULL || signals == NULL || criteria == NULL || out == NULL))
-        return lstub__fail(err, LSTUB_E_NULL, "vias", -1, "vias, sides, signals, criteria or out = null: must not be null");
+    if (count > 0 && (lstub__need(vias, "vias", err) < 0 || lstub__need(sides, "sides", err) < 0
+                      || lstub__need(signals, "signals", err) < 0 || lstub__need(criteria, "criteria", err) < 0
+                      || lstub__need(out, "out", err) < 0))
+        return LSTUB_E_NULL;
     if (count > 0 && (result = lstub__stride(out_stride, sizeof *out, "out", err)) < 0)
         return result;
     for (size_t i = 0; i < count; i++) {
@@ -137,8 +139,8 @@ int32_t lstub_highest_symbol_rate(const lstub_model *model, const lstub_criteria
 {
     lstub_criteria c;
     int32_t which, status, limit = LSTUB_LIMIT_NONE;
-    if (model == NULL || symbol_rate == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "model", -1, "model or symbol_rate = null: must not be null");
+    if (lstub__need(model, "model", err) < 0 || lstub__need(symbol_rate, "symbol_rate", err) < 0)
+        return LSTUB_E_NULL;
     if ((status = lstub__criteria_take(&c, criteria, err)) < 0)
         return status;
     double rate = HUGE_VAL, f1 = lstub__lines_first_notch(model->line, model->count, model->z_ref, &which);

@@ -115,7 +115,8 @@ LSTUB_API void lstub_init(void *data, size_t size);
 /* ---- formulas: published closed forms, one line each ---------------------------------------------
 **
 ** For checks, teaching and first estimates. Each writes one or a few doubles and returns LSTUB_OK,
-** LSTUB_E_ARGUMENT or LSTUB_E_NULL. Lengths > 0, Dk >= 1, frequencies > 0, all finite. */
+** LSTUB_E_ARGUMENT, LSTUB_E_NULL, or LSTUB_E_GEOMETRY where lengths contradict each other. Lengths > 0 and up
+** to 10 m, Dk 1 to 1000, frequencies > 0 and up to 1e15 Hz, impedances > 0 and up to 1e5 ohm, all finite. */
 
 /* Null n (1, 3, 5 ... odd, >= 1) of an ideal open stub: f = n c / (4 L sqrt(Dk)), in Hz.
 ** Source: any transmission-line text, e.g. Pozar, Microwave Engineering. Valid for a thin barrel with an

@@ -66,8 +66,8 @@ int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectric, const 
     int32_t status = lstub__dielectric_take(&ours, dielectric, err);
     if (status < 0)
         return status;
-    if (n > 0 && freq == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "freq", -1, "freq = null: must point to %lu frequencies", (unsigned long)n);
+    if (n > 0 && lstub__need(freq, "freq", err) < 0)
+        return LSTUB_E_NULL;
     for (size_t i = 0; i < n; i++)
         if ((status = lstub__check(freq[i], &FREQUENCY, "freq", err)) < 0) {
             lstub__fail_where(err, (int64_t)i, "item %lu", (unsigned long)i);

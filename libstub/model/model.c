@@ -33,8 +33,8 @@ int32_t lstub_model_create(const lstub_stackup *stackup, const lstub_via *via, c
     lstub_allocator alloc;
     lstub__site site;
     int32_t status;
-    if (out == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "out", -1, "out = null: must not be null");
+    if (lstub__need(out, "out", err) < 0)
+        return LSTUB_E_NULL;
     if ((status = lstub__allocator(allocator, &alloc, err)) < 0 || (status = lstub__site_make(&site, stackup, via, options, err)) < 0)
         return status;
     lstub_model *m = lstub__new(&alloc, 1, sizeof *m, err);
@@ -64,8 +64,8 @@ void lstub_model_destroy(lstub_model *model)
 /* The lines that `stub` names: where they start in the model, and how many. */
 static int32_t chosen(const lstub_model *model, int32_t stub, int all, const lstub__line **lines, int32_t *count, lstub_error *err)
 {
-    if (model == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "model", -1, "model = null: must not be null");
+    if (lstub__need(model, "model", err) < 0)
+        return LSTUB_E_NULL;
     if (all && stub == LSTUB_ALL_STUBS) {
         *lines = model->line;
         *count = model->count;
@@ -165,9 +165,8 @@ static int32_t at_frequencies(const lstub_model *model, int32_t stub, const doub
         return result;
     if (needs_stub && count == 0)
         return lstub__fail(err, LSTUB_E_NONE, "stub", -1, "stub: this via has no stub, its impedance is infinite");
-    if (n > 0 && (freq == NULL || out == NULL))
-        return lstub__fail(err, LSTUB_E_NULL, freq == NULL ? "freq" : "out", -1, "%s = null: must point to %lu items",
-                           freq == NULL ? "freq" : "out", (unsigned long)n);
+    if (n > 0 && (lstub__need(freq, "freq", err) < 0 || lstub__need(out, "out", err) < 0))
+        return LSTUB_E_NULL;
     lstub__batch batch = {0, 0};
     double top = range_of(lines, count);
     for (size_t i = 0; i < n; i++) {

@@ -71,14 +71,18 @@ int32_t lstub_model_notches(const lstub_model *model, int32_t stub, double f_max
 {
     static const lstub__range BAND = {LSTUB__F_MIN, LSTUB__F_MAX, 0, "Hz"};
     int32_t status;
-    if (model == NULL || count == NULL || (capacity > 0 && notches == NULL))
-        return lstub__fail(err, LSTUB_E_NULL, "model", -1, "model, count or notches = null: must not be null");
+    if (lstub__need(model, "model", err) < 0 || lstub__need(count, "count", err) < 0
+        || (capacity > 0 && lstub__need(notches, "notches", err) < 0))
+        return LSTUB_E_NULL;
     if (stub != LSTUB_ALL_STUBS && (stub < 0 || stub >= model->count))
         return lstub__fail(err, LSTUB_E_ARGUMENT, "stub", -1, "stub = %ld: must be >= 0 and < %ld, or LSTUB_ALL_STUBS", (long)stub,
                            (long)model->count);
     if ((status = lstub__check(f_max, &BAND, "f_max", err)) < 0
         || (capacity > 0 && (status = lstub__stride(stride, sizeof *notches, "notches", err)) < 0))
         return status;
+    for (size_t i = 0; i < capacity; i++)
+        if ((status = lstub__fits((char *)notches + i * stride, sizeof *notches, "notches", err)) < 0)
+            return status;
     search s = {{NULL, NULL}, {0, 0}, {0, 0}, {0.0, 0.0}, 0};
     for (int32_t i = 0; i < model->count; i++)
         if (stub == LSTUB_ALL_STUBS || stub == i) {
@@ -96,8 +100,7 @@ int32_t lstub_model_notches(const lstub_model *model, int32_t stub, double f_max
             lstub_notch one;
             describe(s.line[i], model->z_ref, s.n[i], s.next[i], &one);
             one.stub = s.number[i];
-            if ((status = lstub__give(&one, sizeof one, (char *)notches + found * stride, sizeof one, "notches", err)) < 0)
-                return status;
+            lstub__give(&one, sizeof one, (char *)notches + found * stride, sizeof one, "notches", NULL);
         }
         found++;
         last = s.next[i];
@@ -140,8 +143,8 @@ int32_t lstub_first_notch_batch(const lstub_stackup *stackup, const lstub_via *v
 {
     lstub__batch batch = {0, 0};
     int32_t result;
-    if (stackup == NULL || (count > 0 && vias == NULL))
-        return lstub__fail(err, LSTUB_E_NULL, "vias", -1, "stackup or vias = null: must not be null");
+    if (lstub__need(stackup, "stackup", err) < 0 || (count > 0 && lstub__need(vias, "vias", err) < 0))
+        return LSTUB_E_NULL;
     lstub_model_options checked;
     if ((result = lstub__options_take(&checked, options, err)) < 0 || (count > 0 && (result = lstub__stride(stride, sizeof *vias, "vias", err)) < 0))
         return result;

@@ -307,7 +307,7 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
         if (i == 0 ? site->via.top_drilled : site->via.bottom_drilled)
             arm->length -= i == 0 ? site->via.top - stackup->layer[site->via.in.start_layer].top
                                   : stackup->layer[site->via.in.end_layer].bottom - site->via.bottom;
-        if (arm->count == 0 || arm->length <= 0.0)
+        if (arm->count == 0 || arm->length <= LSTUB__SLACK)
             arm->length = 0.0;
     }
     return LSTUB_OK;

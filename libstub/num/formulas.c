@@ -9,7 +9,6 @@ static const lstub__range LENGTH = {0.0, 10.0, 1, "m"};
 static const lstub__range FREQUENCY = {0.0, 1e15, 1, "Hz"};
 static const lstub__range DK = {1.0, 1000.0, 0, ""};
 static const lstub__range IMPEDANCE = {0.0, 1e5, 1, "ohm"};
-static const lstub__range LOSS = {0.0, 0.5, 0, ""};
 
 /* Checks one argument and leaves the function that has `err`. */
 #define CHECK(value, range)                                              \
@@ -19,10 +18,10 @@ static const lstub__range LOSS = {0.0, 0.5, 0, ""};
             return check_;                                               \
     } while (0)
 
-#define NEED(pointer)                                                                                        \
-    do {                                                                                                     \
-        if ((pointer) == NULL)                                                                               \
-            return lstub__fail(err, LSTUB_E_NULL, #pointer, -1, "%s = null: must point to a double", #pointer); \
+#define NEED(pointer)                                       \
+    do {                                                    \
+        if (lstub__need(pointer, #pointer, err) < 0)        \
+            return LSTUB_E_NULL;                            \
     } while (0)
 
 static int32_t check_odd(int32_t n, lstub_error *err)

@@ -408,8 +408,8 @@ int32_t lstub_plan_create(const lstub_stackup *stackup, const lstub_job *jobs, s
     work w;
     int32_t status;
     memset(&w, 0, sizeof w);
-    if (stackup == NULL || out == NULL || (count > 0 && jobs == NULL))
-        return lstub__fail(err, LSTUB_E_NULL, "stackup", -1, "stackup, jobs or out = null: must not be null");
+    if (lstub__need(stackup, "stackup", err) < 0 || lstub__need(out, "out", err) < 0 || (count > 0 && lstub__need(jobs, "jobs", err) < 0))
+        return LSTUB_E_NULL;
     if (count > INT32_MAX)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "count", -1, "count = %lu jobs: must be <= %ld", (unsigned long)count, (long)INT32_MAX);
     if ((count > 0 && (status = lstub__stride(stride, sizeof *jobs, "jobs", err)) < 0)

@@ -4,16 +4,14 @@
 #include <math.h>
 #include <string.h>
 
-static int32_t no_plan(lstub_error *err) { return lstub__fail(err, LSTUB_E_NULL, "plan", -1, "plan = null: must not be null"); }
-
 size_t lstub_plan_count(const lstub_plan *plan) { return plan == NULL ? 0 : plan->job_count; }
 
 int32_t lstub_plan_group_count(const lstub_plan *plan) { return plan == NULL ? 0 : plan->summary.groups; }
 
 static int32_t case_at(const lstub_plan *plan, size_t index, const lstub__case **out, lstub_error *err)
 {
-    if (plan == NULL)
-        return no_plan(err);
+    if (lstub__need(plan, "plan", err) < 0)
+        return LSTUB_E_NULL;
     if (index >= plan->job_count)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "index", -1, "index = %lu: must be >= 0 and < %lu jobs", (unsigned long)index,
                            (unsigned long)plan->job_count);
@@ -30,8 +28,8 @@ int32_t lstub_plan_decision(const lstub_plan *plan, size_t index, lstub_decision
 
 int32_t lstub_plan_group(const lstub_plan *plan, int32_t index, lstub_drill_group *out, lstub_error *err)
 {
-    if (plan == NULL)
-        return no_plan(err);
+    if (lstub__need(plan, "plan", err) < 0)
+        return LSTUB_E_NULL;
     if (index < 0 || index >= plan->summary.groups)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "index", -1, "index = %ld: must be >= 0 and < %ld rows", (long)index,
                            (long)plan->summary.groups);
@@ -40,8 +38,8 @@ int32_t lstub_plan_group(const lstub_plan *plan, int32_t index, lstub_drill_grou
 
 int32_t lstub_plan_totals(const lstub_plan *plan, lstub_plan_summary *out, lstub_error *err)
 {
-    if (plan == NULL)
-        return no_plan(err);
+    if (lstub__need(plan, "plan", err) < 0)
+        return LSTUB_E_NULL;
     return lstub__give(&plan->summary, sizeof plan->summary, out, sizeof plan->summary, "out", err);
 }
 
@@ -138,8 +136,8 @@ int32_t lstub_plan_reason(const lstub_plan *plan, size_t index, char *text, size
     int32_t status = case_at(plan, index, &c, err);
     if (status < 0)
         return status;
-    if (text == NULL || bytes == 0)
-        return lstub__fail(err, LSTUB_E_NULL, "text", -1, "text = null or bytes = 0: must be a buffer");
+    if (lstub__need(bytes > 0 ? text : NULL, "text", err) < 0)
+        return LSTUB_E_NULL;
     const lstub_decision *d = &c->decision;
     char line[2 * LSTUB_REASON_MAX + 2 * LSTUB_NAME_MAX];
     sentence s = {line, sizeof line, 0};

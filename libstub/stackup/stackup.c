@@ -184,9 +184,8 @@ int32_t lstub_stackup_create(const lstub_layer *layers, size_t count, size_t str
     lstub_allocator alloc;
     size_t name_bytes;
     int32_t status;
-    if (out == NULL || layers == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, out == NULL ? "out" : "layers", -1, "%s = null: must not be null",
-                           out == NULL ? "out" : "layers");
+    if (lstub__need(layers, "layers", err) < 0 || lstub__need(out, "out", err) < 0)
+        return LSTUB_E_NULL;
     if (count < 1 || count > LSTUB_LAYERS_MAX)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "count", -1, "count = %lu layers: must be >= 1 and <= %d",
                            (unsigned long)count, LSTUB_LAYERS_MAX);
@@ -231,8 +230,8 @@ lstub__label lstub__layer_label(const lstub_stackup *stackup, int32_t index)
 
 int32_t lstub__layer_index(const lstub_stackup *stackup, int32_t index, int copper, const char *field, lstub_error *err)
 {
-    if (stackup == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "stackup", -1, "stackup = null: must not be null");
+    if (lstub__need(stackup, "stackup", err) < 0)
+        return LSTUB_E_NULL;
     if (index < 0 || index >= stackup->count)
         return lstub__fail(err, LSTUB_E_ARGUMENT, field, -1, "%s = %ld: must be >= 0 and < %ld layers", field, (long)index,
                            (long)stackup->count);
@@ -266,8 +265,8 @@ int32_t lstub_stackup_layer(const lstub_stackup *stackup, int32_t index, lstub_l
 
 int32_t lstub_stackup_find(const lstub_stackup *stackup, const char *name, int32_t *index, lstub_error *err)
 {
-    if (stackup == NULL || name == NULL || index == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "stackup", -1, "stackup, name or index = null: must not be null");
+    if (lstub__need(stackup, "stackup", err) < 0 || lstub__need(name, "name", err) < 0 || lstub__need(index, "index", err) < 0)
+        return LSTUB_E_NULL;
     for (int32_t i = 0; i < stackup->count; i++)
         if (strcmp(stackup->layer[i].name, name) == 0) {
             *index = i;
@@ -278,8 +277,8 @@ int32_t lstub_stackup_find(const lstub_stackup *stackup, const char *name, int32
 
 int32_t lstub_stackup_copper(const lstub_stackup *stackup, int32_t number, int32_t *index, lstub_error *err)
 {
-    if (stackup == NULL || index == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "stackup", -1, "stackup or index = null: must not be null");
+    if (lstub__need(stackup, "stackup", err) < 0 || lstub__need(index, "index", err) < 0)
+        return LSTUB_E_NULL;
     for (int32_t i = 0, n = 0; i < stackup->count; i++)
         if (lstub__is_copper(stackup->layer[i].kind) && n++ == number) {
             *index = i;
@@ -304,10 +303,9 @@ int32_t lstub_stackup_depth(const lstub_stackup *stackup, int32_t index, double 
 int32_t lstub_stackup_interval(const lstub_stackup *stackup, double top, double bottom, lstub_interval *out, lstub_error *err)
 {
     int32_t status;
-    if (stackup == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "stackup", -1, "stackup = null: must not be null");
-    double slack = 1e-12;    /* m: depths that were added up in another order */
-    lstub__range depth = {stackup->layer[0].top - slack, stackup->layer[stackup->count - 1].bottom + slack, 0, "m"};
+    if (lstub__need(stackup, "stackup", err) < 0)
+        return LSTUB_E_NULL;
+    lstub__range depth = {stackup->layer[0].top - LSTUB__SLACK, stackup->layer[stackup->count - 1].bottom + LSTUB__SLACK, 0, "m"};
     if ((status = lstub__check(top, &depth, "top", err)) < 0 || (status = lstub__check(bottom, &depth, "bottom", err)) < 0)
         return status;
     if (bottom <= top)
@@ -330,6 +328,9 @@ int32_t lstub_stackup_interval(const lstub_stackup *stackup, double top, double 
         sum.dk_in_plane += h * in_plane;
         loss += h * in_plane * layer->dielectric.loss_tangent;
     }
+    if (sum.thickness <= 0.0)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "top", -1, "top = %.9g m, bottom = %.9g m: nothing of the stackup between them", top,
+                           bottom);
     sum.tol_rss_plus = sqrt(square_plus);
     sum.tol_rss_minus = sqrt(square_minus);
     sum.dk_through_plane = sum.thickness / series;

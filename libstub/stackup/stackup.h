@@ -22,6 +22,8 @@ struct lstub_stackup {
     char           *names;
 };
 
+#define LSTUB__SLACK 1e-12             /* m: depths that were added up in another order are equal */
+
 static inline int lstub__is_copper(int32_t kind) { return kind != LSTUB_LAYER_DIELECTRIC; }
 
 /* "layer 3 'L2'" for messages. */

@@ -164,9 +164,13 @@ static int32_t check_layer(const lstub__via *via, int32_t layer, lstub_error *er
     if (antipad > 0.0 && antipad <= pad)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "antipad", layer, "layer %ld '%s': antipad = %.9g m: must be > pad = %.9g m",
                            (long)layer, name, antipad, pad);
-    if (via->in.return_kind == LSTUB_RETURN_WALL && 2.0 * via->in.return_distance < antipad)
+    if (via->in.return_kind == LSTUB_RETURN_WALL && (2.0 * via->in.return_distance < antipad || 2.0 * via->in.return_distance <= pad))
         return lstub__fail(err, LSTUB_E_GEOMETRY, "return_distance", layer, "layer %ld '%s': return_distance = %.9g m: the wall "
-                           "lies inside the antipad of %.9g m", (long)layer, name, via->in.return_distance, antipad);
+                           "lies inside the %s of %.9g m", (long)layer, name, via->in.return_distance, antipad > pad ? "antipad" : "pad",
+                           fmax(antipad, pad));
+    if (via->in.pair_kind != LSTUB_PAIR_NONE && pad >= via->in.pair_pitch)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "pair_pitch", layer, "layer %ld '%s': pair_pitch = %.9g m: the pads of %.9g m "
+                           "touch", (long)layer, name, via->in.pair_pitch, pad);
     if (via->in.pair_kind == LSTUB_PAIR_SEPARATE && antipad >= via->in.pair_pitch)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "pair_pitch", layer, "layer %ld '%s': pair_pitch = %.9g m: antipads of %.9g m "
                            "overlap; LSTUB_PAIR_SHARED is for that", (long)layer, name, via->in.pair_pitch, antipad);
@@ -237,7 +241,7 @@ static int32_t cut(lstub__via *via, const lstub_backdrill *drill, lstub_error *e
         return lstub__fail(err, LSTUB_E_GEOMETRY, "side", -1, "side = %ld: the barrel does not reach that surface", (long)drill->side);
     double tip = at_top ? s->layer[outer].top + drill->depth : s->layer[outer].bottom - drill->depth;
     double stop = at_top ? s->layer[via->first].top : s->layer[via->last].bottom;
-    if (at_top ? tip > stop : tip < stop)
+    if (at_top ? tip > stop + LSTUB__SLACK : tip < stop - LSTUB__SLACK)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "depth", -1, "depth = %.9g m: cuts layer %ld '%s', %.9g m deep from that side",
                            drill->depth, (long)(at_top ? via->first : via->last), s->layer[at_top ? via->first : via->last].name,
                            fabs(stop - (at_top ? s->layer[outer].top : s->layer[outer].bottom)));
@@ -274,8 +278,8 @@ int32_t lstub__via_take(lstub__via *via, const lstub_stackup *stackup, const lst
 {
     lstub_via *in = &via->in;
     int32_t status;
-    if (stackup == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "stackup", -1, "stackup = null: must not be null");
+    if (lstub__need(stackup, "stackup", err) < 0)
+        return LSTUB_E_NULL;
     via->stackup = stackup;
     if ((status = lstub__take(in, sizeof *in, theirs, sizeof *in, "via", err)) < 0)
         return status;
@@ -319,7 +323,7 @@ int lstub__via_stub(const lstub__via *via, int32_t side, lstub_stub *stub)
     stub->top = at_top ? via->top : s->layer[stub->exit_layer].bottom;
     stub->bottom = at_top ? s->layer[stub->exit_layer].top : via->bottom;
     stub->length = stub->bottom - stub->top;
-    if (stub->exit_layer == stub->end_layer || stub->length <= 0.0)
+    if (stub->exit_layer == stub->end_layer || stub->length <= LSTUB__SLACK)
         return 0;
     /* A drilled end is placed from the surface: whatever the layers up to there do moves it. */
     double outer = at_top ? s->layer[via->in.start_layer].top : s->layer[via->in.end_layer].bottom;
@@ -346,15 +350,17 @@ int32_t lstub_via_stubs(const lstub_stackup *stackup, const lstub_via *via, lstu
     int32_t n = 0, status = lstub__via_take(&ours, stackup, via, err);
     if (status < 0)
         return status;
-    if (stubs == NULL || count == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "stubs", -1, "stubs or count = null: must not be null");
+    if (lstub__need(stubs, "stubs", err) < 0 || lstub__need(count, "count", err) < 0)
+        return LSTUB_E_NULL;
     if ((status = lstub__stride(stride, sizeof *stubs, "stubs", err)) < 0)
         return status;
     n += lstub__via_stub(&ours, LSTUB_SIDE_TOP, &found[n]);
     n += lstub__via_stub(&ours, LSTUB_SIDE_BOTTOM, &found[n]);
     for (int32_t i = 0; i < n; i++)
-        if ((status = lstub__give(&found[i], sizeof found[i], (char *)stubs + (size_t)i * stride, sizeof found[i], "stubs", err)) < 0)
+        if ((status = lstub__fits((char *)stubs + (size_t)i * stride, sizeof found[i], "stubs", err)) < 0)
             return status;
+    for (int32_t i = 0; i < n; i++)
+        lstub__give(&found[i], sizeof found[i], (char *)stubs + (size_t)i * stride, sizeof found[i], "stubs", NULL);
     *count = n;
     return LSTUB_OK;
 }

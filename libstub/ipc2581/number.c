@@ -1,28 +1,16 @@
 #include "ipc2581/number.h"
 
+#include "base/base.h"
 #include "ipc2581/text.h"
 
 #include <math.h>
-#include <stdio.h>
 #include <string.h>
 
 #define PATH_SHOWN 120
 
-/* A locale's decimal point, whatever its bytes, becomes a point; a zero loses its sign. */
-static void plain(char *text)
+/* A zero loses its sign. */
+static void unsign_zero(char *text)
 {
-    char *to = text;
-    const char *from = text;
-    while (*from != '\0') {
-        if (strchr("0123456789+-e", *from) != NULL) {
-            *to++ = *from++;
-            continue;
-        }
-        *to++ = '.';
-        while (*from != '\0' && strchr("0123456789+-e", *from) == NULL)
-            from++;
-    }
-    *to = '\0';
     if (text[0] == '-' && strspn(text + 1, "0.") == strlen(text + 1))
         memmove(text, text + 1, strlen(text));
 }
@@ -31,8 +19,8 @@ const char *lstub__significant(char text[LSTUB__NUMBER_MAX], double value, int d
 {
     text[0] = '\0';
     if (isfinite(value)) {
-        snprintf(text, LSTUB__NUMBER_MAX, "%.*g", digits, value);
-        plain(text);
+        lstub__format(text, LSTUB__NUMBER_MAX, "%.*g", digits, value);
+        unsign_zero(text);
     }
     return text;
 }
@@ -41,8 +29,8 @@ const char *lstub__fixed(char text[LSTUB__NUMBER_MAX], double value, int decimal
 {
     if (!(fabs(value) < 1e15))
         return lstub__significant(text, value, 6);
-    snprintf(text, LSTUB__NUMBER_MAX, "%.*f", decimals, value);
-    plain(text);
+    lstub__format(text, LSTUB__NUMBER_MAX, "%.*f", decimals, value);
+    unsign_zero(text);
     return text;
 }
 

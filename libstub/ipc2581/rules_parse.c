@@ -164,7 +164,7 @@ static const key signal_keys[] = {
     {"symbol_rate", rate_units, {1e6, 1e12, 0, "Bd"}, 0, offsetof(signal_numbers, symbol_rate)},
     {"levels", NULL, {2, 64, 0, ""}, 1, offsetof(signal_numbers, levels)},
     {"notch_over_nyquist", NULL, {0, 1e3, 1, ""}, 0, offsetof(signal_numbers, notch_over_nyquist)},
-    {"added_loss", loss_units, {0, 1e3, 1, "dB"}, 0, offsetof(signal_numbers, added_loss)},
+    {"added_loss", loss_units, {0, 100, 1, "dB"}, 0, offsetof(signal_numbers, added_loss)},
 };
 
 static const signal_rule *find_signal(const lstub_rules *rules, const char *name)

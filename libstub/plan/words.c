@@ -21,7 +21,7 @@ static int32_t case_at(const lstub_plan *plan, size_t index, const lstub__case *
 
 int32_t lstub_plan_decision(const lstub_plan *plan, size_t index, lstub_decision *out, lstub_error *err)
 {
-    const lstub__case *c;
+    const lstub__case *c = NULL;
     int32_t status = case_at(plan, index, &c, err);
     return status < 0 ? status : lstub__give(&c->decision, sizeof c->decision, out, sizeof c->decision, "out", err);
 }
@@ -132,7 +132,7 @@ static void say_cannot(sentence *s, const lstub_plan *plan, const lstub_decision
 
 int32_t lstub_plan_reason(const lstub_plan *plan, size_t index, char *text, size_t bytes, lstub_error *err)
 {
-    const lstub__case *c;
+    const lstub__case *c = NULL;
     int32_t status = case_at(plan, index, &c, err);
     if (status < 0)
         return status;

@@ -117,7 +117,7 @@ def plan(antipad, exit_layer, rate, tolerance=50e-6, clearance=50e-6, ratio=2.0,
         middle = (good + bad) / 2
         ok = passes(middle)
         good, bad = np.where(ok, middle, good), np.where(ok, bad, middle)
-    grow = tolerance + 6e-6 / H * (full - T * np.round((full - H) / (H + T)))
+    grow = tolerance + 6e-6 * np.round(full / (H + T))
     low, high = clearance + grow, np.minimum(good, full) - grow
     drilled = fails & (low <= high)
     least, most = np.where(drilled, full - high, np.nan), np.where(drilled, full - low, np.nan)

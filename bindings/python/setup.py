@@ -9,6 +9,7 @@ import os
 import re
 import shutil
 import subprocess
+import sys
 import sysconfig
 import tempfile
 
@@ -20,6 +21,7 @@ HERE = os.path.dirname(os.path.abspath(__file__))
 LIBRARY = os.path.normpath(os.path.join(HERE, "..", "..", "libstub"))
 PARTS = "base num material stackup via model criteria plan ipc2581".split()
 FLAGS = ["-std=c99", "-O2", "-fvisibility=hidden", "-ffp-contract=off"]
+LINK = ["-Wl,--version-script=" + os.path.join(HERE, "src", "exports.map")] if sys.platform == "linux" else []
 
 
 def version():
@@ -75,6 +77,7 @@ setup(
             include_dirs=[os.path.join(LIBRARY, "include"), LIBRARY],
             libraries=["expat", "z", "m"],
             extra_compile_args=FLAGS,
+            extra_link_args=LINK,
             py_limited_api=True,
         )
     ],

@@ -36,7 +36,7 @@ def doubles(name: str, values: Any) -> tuple[Any, tuple[int, ...] | None]:
     found = np.asarray(values)
     if found.size and found.dtype.kind not in "fiu":
         raise TypeError(f"{name}: must be numbers, not {found.dtype}")
-    result = np.ascontiguousarray(found, dtype=np.float64)
+    result = np.require(found, np.float64, ["C_CONTIGUOUS", "ALIGNED"])
     return result, result.shape
 
 

@@ -9,7 +9,7 @@ from typing import Any, Callable, Literal, NamedTuple, Union
 from . import _core
 from ._criteria import Criteria, Signal
 from ._errors import NoSuchError
-from ._frozen import HOLE, SEVERITY, SIDE, Frozen, Status, fill, instance
+from ._frozen import HOLE, SEVERITY, SIDE, Frozen, Immutable, Status, fill, instance
 from ._model import Fidelity, options
 from ._plan import Capability, Plan
 from ._stackup import Stackup, _layer
@@ -36,7 +36,7 @@ class RulesSignal(NamedTuple):
     criteria: Criteria
 
 
-class Rules:
+class Rules(Immutable):
     """Which net carries what, and what the fabricator can do. Made by `Rules.parse` or `Rules.load`; immutable.
 
     Text, one rule a line, ``#`` starts a comment. Lengths need a unit (m mm um mil in), symbol rates Bd MBd GBd;
@@ -81,11 +81,6 @@ class Rules:
         """Rules from text; `FormatError` with the line."""
         instance("text", text, str, "text")
         return cls._of(_core.rules_parse(text.encode()), ("parse", text))
-
-    def __setattr__(self, name: str, value: Any) -> None:
-        raise AttributeError("Rules cannot be changed")
-
-    __delattr__ = __setattr__  # type: ignore[assignment]
 
     @property
     def signals(self) -> tuple[RulesSignal, ...]:
@@ -152,7 +147,7 @@ class Notice(Frozen):
         return f"{self.severity}: line {self.line}: {self.message}{times}"
 
 
-class Board:
+class Board(Immutable):
     """A board file in IPC-2581: a stackup and a via per plated hole. Made by `Board.load`; immutable.
 
     ``len(board)`` counts the holes. Pickled as its path, rules and stackup name: the file is read again.
@@ -208,11 +203,6 @@ class Board:
             _holes=None,
         )
         return self
-
-    def __setattr__(self, name: str, value: Any) -> None:
-        raise AttributeError("a Board cannot be changed")
-
-    __delattr__ = __setattr__  # type: ignore[assignment]
 
     @property
     def path(self) -> str:

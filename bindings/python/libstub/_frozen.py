@@ -103,7 +103,7 @@ def _shortest(value: float, units: Sequence[tuple[str, float]]) -> str:
     """In the unit that says it shortest; in the first one, with four digits, where none says it exactly."""
     texts = []
     for unit, size in units:
-        text = f"{value / size:.6g}"
+        text = f"{value / size:.8g}"
         if "e" not in text and math.isclose(float(text) * size, value, rel_tol=1e-9):
             texts.append(f"{text} {unit}")
     return min(texts, key=len) if texts else f"{value / units[0][1]:.4g} {units[0][0]}"
@@ -139,7 +139,7 @@ def show(value: Any, unit: str) -> str:
         mm, mil, um = ("mm", 1e-3), ("mil", 25.4e-6), ("um", 1e-6)
         return _shortest(value, (um, mm, mil) if abs(value) < 1e-4 else (mm, mil))
     if unit in ("Hz", "Bd"):
-        return _shortest(value, ((f"G{unit}", 1e9), (f"M{unit}", 1e6)))
+        return _shortest(value, ((f"G{unit}", 1e9) if abs(value) >= 1e8 else (f"M{unit}", 1e6),))
     if unit in ("F", "H", "F/m", "H/m"):
         scale, prefix = (1e-15, "f") if unit == "F" else (1e-9, "n") if unit[0] == "H" else (1e-12, "p")
         return f"{value / scale:.4g} {prefix}{unit}"
@@ -148,6 +148,18 @@ def show(value: Any, unit: str) -> str:
 
 def _rebuild(cls: type, values: dict[str, Any]) -> Any:
     return cls(**values)
+
+
+class Immutable:
+    """Base of the objects around a handle: what fill() has set stays."""
+
+    __slots__ = ()
+
+    def __setattr__(self, name: str, value: Any) -> None:
+        raise AttributeError(f"a {type(self).__name__} cannot be changed")
+
+    def __delattr__(self, name: str) -> None:
+        raise AttributeError(f"a {type(self).__name__} cannot be changed")
 
 
 class Frozen:

@@ -8,7 +8,7 @@ from typing import Any, Literal
 
 from . import _arrays, _core
 from ._criteria import Criteria, Margin, Signal, SymbolRateLimit, margin_of
-from ._frozen import FIDELITY, Frozen, fill, instance, nonzero
+from ._frozen import FIDELITY, Frozen, Immutable, fill, instance, nonzero
 from ._via import Stub, Via, stubs_of
 
 ALL_STUBS: int = _core.ALL_STUBS
@@ -65,7 +65,7 @@ class Notch(Frozen):
         return f"Notch({self.f / 1e9:.4g} GHz, {self.depth_db:.1f} dB, stub={self.stub}, q={self.q:.3g})"
 
 
-class Model:
+class Model(Immutable):
     """The electrical model of a via, compiled. Immutable; may be used by any number of threads.
 
     Parameters
@@ -90,11 +90,6 @@ class Model:
         instance("via", via, Via, "a Via")
         handle = _core.model_create(via.stackup._handle, via._record, options(fidelity, z_ref))
         fill(self, _handle=handle, _via=via, _fidelity=fidelity, _z_ref=float(z_ref))
-
-    def __setattr__(self, name: str, value: Any) -> None:
-        raise AttributeError("a Model cannot be changed")
-
-    __delattr__ = __setattr__  # type: ignore[assignment]
 
     @property
     def via(self) -> Via:

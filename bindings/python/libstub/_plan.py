@@ -10,7 +10,7 @@ from typing import Any, Callable, Iterable, Iterator, Literal, Sequence, overloa
 from . import _core
 from ._criteria import Criteria, Margin, Signal
 from ._errors import GeometryError
-from ._frozen import SIDES, TOLERANCE, Frozen, Status, fill, instance, number, show
+from ._frozen import SIDES, TOLERANCE, Frozen, Immutable, Status, fill, instance, number, show
 from ._model import Fidelity, options
 from ._stackup import Stackup
 from ._via import Side, Via
@@ -284,7 +284,7 @@ class PlanSummary(Frozen):
     worst_added_loss_db: float
 
 
-class Plan(SequenceABC):  # type: ignore[type-arg]
+class Plan(Immutable, SequenceABC):  # type: ignore[type-arg]
     """A plan: a `Decision` per job, in their order. Made by `plan` or `Board.plan`; immutable.
 
     ``len(plan)``, ``plan[i]``, slices and iteration give decisions.
@@ -303,11 +303,6 @@ class Plan(SequenceABC):  # type: ignore[type-arg]
         self = object.__new__(cls)
         fill(self, _handle=handle, _stackup=stackup, _again=again)
         return self
-
-    def __setattr__(self, name: str, value: Any) -> None:
-        raise AttributeError("a Plan cannot be changed")
-
-    __delattr__ = __setattr__  # type: ignore[assignment]
 
     @property
     def stackup(self) -> Stackup:

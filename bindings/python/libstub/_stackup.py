@@ -8,7 +8,7 @@ from typing import Any, Iterable, Literal, NamedTuple, Union
 
 from . import _core
 from ._errors import ArgumentError, NoSuchError
-from ._frozen import KIND, Frozen, fill, instance, number, show
+from ._frozen import KIND, Frozen, Immutable, fill, instance, number, show
 from ._material import Conductor, Dielectric
 
 LayerRef = Union[str, int]  # a layer by its name or by its index from the top
@@ -109,7 +109,7 @@ class Depth(NamedTuple):
     bottom: float
 
 
-class Stackup:
+class Stackup(Immutable):
     """A stackup from its layers, top first. Immutable; may be used by any number of threads.
 
     Parameters
@@ -157,11 +157,6 @@ class Stackup:
         from ._board import Board
 
         return Board.load(path, stackup=stackup).stackup
-
-    def __setattr__(self, name: str, value: Any) -> None:
-        raise AttributeError("a Stackup cannot be changed")
-
-    __delattr__ = __setattr__  # type: ignore[assignment]
 
     @property
     def layers(self) -> tuple[Layer, ...]:

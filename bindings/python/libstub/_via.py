@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any, Iterable, Literal, Mapping, Sequence
 
 from . import _core
 from ._errors import GeometryError
-from ._frozen import SIDE, Frozen, fill, instance, nonzero, number, show
+from ._frozen import SIDE, Frozen, Immutable, fill, instance, nonzero, number, show
 from ._stackup import LayerRef, Stackup, named_layers
 
 if TYPE_CHECKING:
@@ -151,7 +151,7 @@ def _diameter(name: str, value: Any, default: float) -> float:
     return default if value is None else number(name, value)
 
 
-class Via:
+class Via(Immutable):
     """A via on a stackup. Immutable; checked when it is made. Lengths in m, diameters not radii.
 
     Layers are given by name or by index from the top.
@@ -299,11 +299,6 @@ class Via:
             SIDE.code("side", self.pin.side) if self.pin is not None else 0,
             self.pin.length if self.pin is not None else 0.0,
         )
-
-    def __setattr__(self, name: str, value: Any) -> None:
-        raise AttributeError("a Via cannot be changed; make another one with replace()")
-
-    __delattr__ = __setattr__  # type: ignore[assignment]
 
     @property
     def pads(self) -> dict[str, float]:

@@ -28,7 +28,7 @@ static double half_width(const seeing *s, double f, double sign, double reach)
 {
     for (double width = 1e-9 * f; width < reach; width *= 2.0)
         if (over_level(f + sign * width, s) > 0.0)
-            return fabs(lstub__root(over_level, s, f, f + sign * width, 1e-9 * width) - f);
+            return fabs(lstub__root(over_level, s, fmin(f, f + sign * width), fmax(f, f + sign * width), 1e-9 * width) - f);
     return NAN;
 }
 

@@ -78,16 +78,19 @@ typedef struct region {         /* what the capacitance between a barrel and the
 #define REGIONS 4               /* kept: boards repeat a few cavities */
 
 typedef struct region_memory {
-    region kept[REGIONS];
-    int    next;
+    region  kept[REGIONS];
+    int     next;
+    int32_t status;             /* of the first capacitance that could not be computed */
+    lstub_error *err;
 } region_memory;
 
-/* Barrel to one plane; 0 for an antipad of 0. Never fails: the via has been checked. */
-static double to_plane(const lstub__via *via, double antipad, double height, const region *r)
+/* Barrel to one plane; 0 for an antipad of 0. */
+static double to_plane(const lstub__via *via, double antipad, double height, const region *r, region_memory *memory)
 {
     double c = 0.0;
-    if (antipad > 0.0)
-        lstub_plate_capacitance(via->in.drill, seen_antipad(via, antipad, height), height, r->through_plane, r->in_plane, &c, NULL);
+    if (antipad > 0.0 && memory->status == LSTUB_OK)
+        memory->status = lstub_plate_capacitance(via->in.drill, seen_antipad(via, antipad, height), height, r->through_plane,
+                                                 r->in_plane, &c, memory->err);
     return c;
 }
 
@@ -99,14 +102,16 @@ static double region_capacitance(const lstub__via *via, double above, double bel
         if (memcmp(&memory->kept[i], &r, offsetof(region, per_metre)) == 0)
             return memory->kept[i].per_metre;
     if (above > 0.0 && below > 0.0) {
-        double upper = to_plane(via, above, r.height, &r);
-        r.per_metre = (upper + (above == below ? upper : to_plane(via, below, r.height, &r))) / r.height;
+        double upper = to_plane(via, above, r.height, &r, memory);
+        r.per_metre = (upper + (above == below ? upper : to_plane(via, below, r.height, &r, memory))) / r.height;
     } else {
-        r.per_metre = to_plane(via, above > 0.0 ? above : below, 2.0 * r.height, &r) / r.height;
+        r.per_metre = to_plane(via, above > 0.0 ? above : below, 2.0 * r.height, &r, memory) / r.height;
     }
     memory->kept[memory->next++ % REGIONS] = r;
     return r.per_metre;
 }
+
+#define WIDEST_PAD 1.02        /* antipad over pad, at least, in the next: a pad beyond it faces the plane instead */
 
 /* What a pad adds to a bare barrel over `height`, in an antipad. */
 static double wider_barrel(const lstub__via *via, double pad, double antipad, double height, double dk)
@@ -172,7 +177,7 @@ static void plane_part(lstub__part *part, const lstub__via *via, int32_t index, 
     part->c_constant = c * own.constant / own.in_plane;
     part->c_slope = c * own.slope / own.in_plane;
     if (pad > via->in.drill) {
-        c = wider_barrel(via, pad, fmax(antipad, 1.02 * pad), layer->thickness + 2.0 * pad_fringe(pad, part->plane), own.in_plane);
+        c = wider_barrel(via, pad, fmax(antipad, WIDEST_PAD * pad), layer->thickness + 2.0 * pad_fringe(pad, part->plane), own.in_plane);
         part->pad_constant = c * own.constant / own.in_plane;
         part->pad_slope = c * own.slope / own.in_plane;
     }
@@ -186,8 +191,8 @@ static void region_part(lstub__part *part, const lstub__via *via, int32_t index,
     if (!lstub__is_copper(layer->kind) || w->antipad == 0.0)
         return;
     double pad = lstub__via_pad(via, index);
-    if (pad > via->in.drill && pad < w->antipad) {
-        double c = wider_barrel(via, pad, w->antipad, layer->thickness, w->fill.in_plane);
+    if (pad > via->in.drill) {
+        double c = wider_barrel(via, pad, fmax(w->antipad, WIDEST_PAD * pad), layer->thickness, w->fill.in_plane);
         part->pad_constant = c * w->fill.constant / w->fill.in_plane;
         part->pad_slope = c * w->fill.slope / w->fill.in_plane;
     }
@@ -299,6 +304,7 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
     double lambda = lstub__wideband_lambda(1e9).re;
     region_memory memory;
     memset(&memory, 0, sizeof memory);
+    memory.err = err;
     find_inductance(site, lambda);
     for (int i = 0; i < 2; i++) {
         lstub__arm *arm = &site->arm[i];
@@ -310,7 +316,7 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
         if (arm->count == 0 || arm->length <= LSTUB__SLACK)
             arm->length = 0.0;
     }
-    return LSTUB_OK;
+    return memory.status;
 }
 
 static void loaded_line(const lstub__site *site, const lstub__arm *arm, double length, lstub__line *line)

@@ -200,15 +200,15 @@ int32_t lstub_plate_capacitance(double drill, double antipad, double spacing, do
     NEED(capacitance);
     if (antipad <= drill)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "antipad", -1, "antipad = %.9g m: must be > drill = %.9g m", antipad, drill);
-    double a = 0.5 * drill, b = 0.5 * antipad;
+    double a = 0.5 * drill, b = 0.5 * antipad, most = 8000.0 * sqrt(dk_through_plane / dk_in_plane) * (antipad - drill);
+    if (spacing > most)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "spacing", -1, "spacing = %.9g m: must be <= %.9g m, some 8000 times "
+                           "antipad - drill", spacing, most);
     double step = sqrt(dk_through_plane / dk_in_plane) * LSTUB_PI / spacing;
     double sum = spacing * spacing * dk_in_plane / (8.0 * dk_through_plane);
     for (int m = 1; m * step * (b - a) < 36.0; m += 2) {
         double kappa = m * step;
         sum -= lstub__k0_scaled(kappa * b) / lstub__k0_scaled(kappa * a) * exp(-kappa * (b - a)) / (kappa * kappa);
-        if (m > 200000)
-            return lstub__fail(err, LSTUB_E_ARGUMENT, "spacing", -1,
-                               "spacing = %.9g m: must be < 2e6 times antipad - drill = %.9g m", spacing, antipad - drill);
     }
     *capacitance = 8.0 * LSTUB_PI * LSTUB_EPS0 * dk_through_plane / (spacing * log(b / a)) * sum;
     return LSTUB_OK;

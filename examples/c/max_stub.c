@@ -1,7 +1,7 @@
 /* The longest stub that a link can bear: six links, three stackups, by notch, by loss and by the rule of thumb. */
 #include "invented.h"
 
-/* Longest stub, in mm as text; > before it: even the whole barrel passes. */
+/* Longest stub, in mm as text; > before it: even the whole barrel passes, ~: beyond the model. */
 static void longest(const lstub_stackup *board, const lstub_signal *signal, double notch, double loss, char text[32])
 {
     const int32_t connects[2] = {0, 4};           /* enters on L1, leaves on L3: all below L3 is stub */
@@ -14,8 +14,10 @@ static void longest(const lstub_stackup *board, const lstub_signal *signal, doub
     LSTUB_INIT(criteria);
     criteria.notch_over_nyquist = notch;          /* 0: not asked */
     criteria.added_loss_db = loss;
-    must(lstub_longest_stub(board, &via, LSTUB_SIDE_BOTTOM, NULL, signal, &criteria, &limit, &err), &err);
-    snprintf(text, 32, "%s%.3f", limit.limited_by == LSTUB_LIMIT_NONE ? ">" : "", limit.length * 1e3);
+    const int32_t status = lstub_longest_stub(board, &via, LSTUB_SIDE_BOTTOM, NULL, signal, &criteria, &limit, &err);
+    must(status, &err);
+    snprintf(text, 32, "%s%s%.3f", status == LSTUB_W_RANGE ? "~" : "",
+             limit.limited_by == LSTUB_LIMIT_NONE ? ">" : "", limit.length * 1e3);
 }
 
 int main(void)
@@ -50,7 +52,8 @@ int main(void)
         }
         printf("\n");
     }
-    printf("\nEstimates from a model: confirm with the fabricator, verify critical links by measurement.\n");
+    printf("\n~: outside the stated range of the model. Estimates: confirm with the fabricator, verify critical links\n"
+           "by measurement.\n");
     for (int s = 0; s < STACKUPS; s++)
         lstub_stackup_destroy(boards[s]);
     return 0;

@@ -8,6 +8,7 @@ static void sweep(int which, const lstub_criteria *criteria)
     lstub_stackup *board = make_stackup(which);
     lstub_via vias[LAYERS_MAX];
     lstub_margin margins[LINKS][LAYERS_MAX];
+    int32_t status[LINKS][LAYERS_MAX];
     int32_t connects[LAYERS_MAX][2], number[LAYERS_MAX], count = 0;
     const int32_t copper = stackups[which].copper;
     LSTUB_INIT(err);
@@ -25,8 +26,8 @@ static void sweep(int which, const lstub_criteria *criteria)
         for (int32_t i = 0; i < count; i++)
             LSTUB_INIT(margins[k][i]);
         must(lstub_margin_batch(board, vias, sizeof vias[0], &signal, 0, criteria, 0, (size_t)count, NULL,
-                                margins[k], sizeof margins[k][0], NULL, &err), &err);
-        printf("%18s", links[k].name);
+                                margins[k], sizeof margins[k][0], status[k], &err), &err);
+        printf("%19s", links[k].name);
     }
     printf("\n");
     for (int32_t i = 0; i < count; i++) {
@@ -35,8 +36,9 @@ static void sweep(int which, const lstub_criteria *criteria)
             const lstub_margin *m = &margins[k][i];
             char text[64] = "no stub";
             if (m->stub_length > 0.0)
-                snprintf(text, sizeof text, "%s%.1fx %.1fdB", m->pass ? "" : "DRILL ", m->notch_over_nyquist, m->added_loss_db);
-            printf("%18s", text);
+                snprintf(text, sizeof text, "%s%s%.1fx %.1fdB", status[k][i] == LSTUB_W_RANGE ? "~" : "",
+                         m->pass ? "" : "DRILL ", m->notch_over_nyquist, m->added_loss_db);
+            printf("%19s", text);
         }
         printf("\n");
     }
@@ -49,8 +51,9 @@ int main(void)
     LSTUB_INIT(criteria);
     criteria.notch_over_nyquist = 2.0;
     criteria.added_loss_db = 0.5;
-    printf("Through vias from L1 to each routing layer: first notch over Nyquist, and loss added at Nyquist. DRILL: below 2 x\n"
-           "or above 0.5 dB, so the stub has to go. Stackups and links are invented; estimates from a model.\n");
+    printf("Through vias from L1 to each routing layer: first notch over Nyquist, and loss added at Nyquist.\n"
+           "DRILL: below 2 x or above 0.5 dB, so the stub has to go. ~: outside the stated range of the model.\n"
+           "Stackups and links are invented.\n");
     for (int s = 0; s < STACKUPS; s++)
         sweep(s, &criteria);
     return 0;

@@ -90,7 +90,9 @@ class Hole:
 
 class Board:
     def __init__(self):
-        self.holes, self.traces, self.lands = [], [], []   # traces: layer, net, points; lands: layer, net, x, y, pin
+        self.holes = []
+        self.traces = []                            # layer, net, points
+        self.lands = []                             # layer, net, x, y, pin
 
     def hole(self, x, y, net, stack, joins=(), pin=None):
         self.holes.append(Hole(x, y, net, stack, joins, pin))
@@ -421,7 +423,8 @@ def specs_and_stackup(w):
     total, tol = sum(layer[2] for layer in STACKUP), sum(layer[3] for layer in STACKUP)
     w.open('Stackup name="HERON_20" overallThickness="%s" tolPlus="%s" tolMinus="%s" whereMeasured="MASK"'
            % (num(total), num(tol), num(tol)))
-    w.open('StackupGroup name="HERON_20_ALL" thickness="%s" tolPlus="%s" tolMinus="%s"' % (num(total), num(tol), num(tol)))
+    w.open('StackupGroup name="HERON_20_ALL" thickness="%s" tolPlus="%s" tolMinus="%s"'
+           % (num(total), num(tol), num(tol)))
     for i, (name, _, thickness, tolerance, _) in enumerate(STACKUP, 1):
         w.open('StackupLayer layerOrGroupRef="%s" thickness="%s" tolPlus="%s" tolMinus="%s" sequence="%d"'
                % (name, num(thickness), num(tolerance), num(tolerance), i))
@@ -522,6 +525,11 @@ def layer_features(w, board, layer):
     w.close("LayerFeature")
 
 
+def hole(w, name, diameter, plating, x, y):
+    w.line('<Hole name="%s" diameter="%s" platingStatus="%s" plusTol="0.05" minusTol="0.05" x="%s" y="%s"/>'
+           % (name, num(diameter), plating, num(x), num(y)))
+
+
 def drill_features(w, board, span):
     w.open('LayerFeature layerRef="DRILL_%s"' % span)
     number = 0
@@ -535,8 +543,7 @@ def drill_features(w, board, span):
         w.open('Set net="%s" geometry="%s"' % key[:2])
         for h in holes:
             number += 1
-            w.line('<Hole name="%s%d" diameter="%s" platingStatus="%s" plusTol="0.05" minusTol="0.05" x="%s" y="%s"/>'
-                   % (span[0] + span[-1], number, num(STACKS[h.stack][0]), "PLATED" if h.pin else "VIA", num(h.x), num(h.y)))
+            hole(w, "%s%d" % (span[0] + span[-1], number), STACKS[h.stack][0], "PLATED" if h.pin else "VIA", h.x, h.y)
         w.close("Set")
     w.close("LayerFeature")
 
@@ -545,15 +552,14 @@ def tooling(w):
     w.open('LayerFeature layerRef="TOOLING"')
     w.open('Set geometry="TOOLING_32"')
     for i, (x, y) in enumerate(rectangle(4, 4, SIZE[0] - 4, SIZE[1] - 4)):
-        w.line('<Hole name="M%d" diameter="3.2" platingStatus="NONPLATED" plusTol="0.05" minusTol="0.05" x="%s" y="%s"/>'
-               % (i + 1, num(x), num(y)))
+        hole(w, "M%d" % (i + 1), 3.2, "NONPLATED", x, y)
     w.close("Set", "LayerFeature")
 
 
 def write(board):
     w = Xml()
     w.line('<?xml version="1.0" encoding="UTF-8"?>')
-    w.line("<!-- The Heron line card: a board of our own invention. No firm, product, person or part in it is real. -->")
+    w.line("<!-- The Heron line card: a board of our own invention. No firm, person or part in it is real. -->")
     w.open('IPC-2581 revision="C" xmlns="http://webstds.ipc.org/2581"')
     header(w, {d for s in STACKS.values() for d in s[1:3]} | {0.5})
     w.open('Ecad name="Design"')

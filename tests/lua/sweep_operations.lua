@@ -1,0 +1,60 @@
+-- What memsweep does with failing memory: each operation once per allocation in it.
+package.path = (arg[0]:match("^.*/") or "./") .. "?.lua;" .. package.path
+local ls = require "libstub"
+local fixture = require "fixture"
+
+local function via() return fixture.via(fixture.stackup()) end
+local function model() return via():model() end
+local rich = { pads = { SIG1 = 0.4e-3 }, antipads = { GND2 = 0.9e-3 }, clear = { SIG2 = 1e-3 }, pair = { pitch = 1.2e-3 },
+  pin = { side = "top", length = 0.1e-3 }, backdrills = { { side = "bottom", depth = 0.5e-3, diameter = 0.5e-3 } } }
+local freq = { 1e9, 2e9, 3e9 }
+
+local operations = {
+  { name = "load", setup = function() package.loaded.libstub = nil end, run = function() return require "libstub" end },
+  { name = "array", run = function() return #ls.array { 1, 2, 3 } == 3 and #ls.linspace(1, 2, 10) == 10 end },
+  { name = "formula", run = function()
+    return ls.coax { inner_diameter = 1e-3, outer_diameter = 2e-3, dk = 4 } and not ls.coax(2e-3, 1e-3, 4)
+  end },
+  { name = "permittivity", run = function() return ls.dielectric_permittivity({ dk = 4, loss_tangent = 0.01 }, freq) end },
+  { name = "stackup", setup = fixture.layers, run = function(layers)
+    local s <close> = ls.stackup(layers)
+    return #s == 15 and not ls.stackup { { name = "A", kind = "plane", thickness = -1 } }
+  end },
+  { name = "stackup:layers", setup = fixture.stackup, run = function(s) return #s:layers() == 15 and s:interval(0, 1e-3) end },
+  { name = "via", setup = fixture.stackup, run = function(s)
+    local o = ls.via(s, fixture.options(rich)):options()
+    return o.pads.SIG1 and not ls.via(s, fixture.options { drill = -1 })
+  end },
+  { name = "via:stubs", setup = via, run = function(v) return #v:stubs() == 1 and tostring(v) end },
+  { name = "via:model", setup = via, run = function(v)
+    local m <close> = v:model { fidelity = "loaded", z_ref = 50 }
+    return m:stub_count() == 1
+  end },
+  { name = "model:zin", setup = model, run = function(m)
+    return #m:zin(freq) == 3 and m:s21(1e9) and #m:added_loss({ 1e9, 1e11 }, { stub = 1 }) == 2
+  end },
+  { name = "model:notches", setup = model, run = function(m) return #m:notches(1e12) > 3 and m:line(1) and m:stub(1) end },
+  { name = "margin", setup = model, run = function(m)
+    return m:margin(fixture.signal, fixture.criteria).f1 and m:highest_symbol_rate(fixture.criteria)
+  end },
+  { name = "longest_stub", setup = via, run = function(v)
+    local list = ls.longest_stub_batch(v:stackup(), { v, v }, "bottom", fixture.signal, fixture.criteria)
+    return ls.longest_stub(v, fixture.signal, fixture.criteria).length == list[2].length
+  end },
+  { name = "margin_batch", setup = via, run = function(v)
+    return ls.margin_batch(v:stackup(), { v, v }, { fixture.signal, fixture.signal }, fixture.criteria)[2].f1
+      and ls.first_notch_batch(v:stackup(), { v }).f1[1]
+  end },
+  { name = "plan", setup = via, run = function(v)
+    local plan <close> = ls.plan(v:stackup(), {
+      { via = v, signal = { symbol_rate = 25e9 }, criteria = fixture.criteria }, { via = v },
+      { via = v, signal = { symbol_rate = 0 }, criteria = fixture.criteria } }, fixture.capability)
+    return plan:decision(1).action == "drill_bottom" and #plan:groups() == 1 and plan:totals() and plan:reason(3)
+  end },
+  { name = "rules", run = function()
+    local rules <close> = ls.rules_parse("signal A symbol_rate 10 GBd notch_over_nyquist 2\nnet X* A\nfab depths 1 mm 2 mm\n")
+    return rules:signal(1) == "A" and rules:match("X1") == 1 and rules:capability() and not ls.rules_parse("nonsense\n")
+  end },
+}
+
+return operations

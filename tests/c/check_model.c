@@ -447,7 +447,8 @@ static void compare_with_scan(const lstub_model *model, double f_max)
         double step = f_max / 40000;
         if (n == m + 1 && notches[n - 1].f > f_max - 2 * step)
             n = m;                               /* at the very end of the band: the scan cannot see it */
-        ck_assert_msg(n == m, "%zu notches, %zu minima of |S21|; first %g, %g", n, m, n ? notches[0].f : 0, m ? minima[0].f : 0);
+        ck_assert_msg(n == m, "stub of %g m: %zu notches, %zu minima of |S21|; first at %g, %g Hz, %g dB", length_of(model, stub), n, m,
+                      n ? notches[0].f : 0, m ? minima[0].f : 0, m ? minima[0].db : 0);
         for (size_t i = 0; i < n; i++) {
             assert_close(notches[i].f, minima[i].f, 0, 2 * step, "a scan of |S21| in 40000 steps");
             ck_assert(notches[i].depth_db <= minima[i].db + 1e-6);

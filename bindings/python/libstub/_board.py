@@ -24,6 +24,10 @@ def _path(path: Any) -> bytes:
     return os.fsencode(path)
 
 
+def _signal(symbol_rate: float, levels: int) -> Signal:
+    return Signal(symbol_rate, levels or 2)  # 0 in the header's struct
+
+
 def _criteria(notch_over_nyquist: float, added_loss_db: float) -> Criteria:
     return Criteria(notch_over_nyquist or None, added_loss_db or None)
 
@@ -65,7 +69,7 @@ class Rules(Immutable):
     def _of(cls, handle: Any, again: tuple[str, str]) -> Rules:
         self = object.__new__(cls)
         signals = tuple(
-            RulesSignal(name, Signal(*signal), _criteria(*criteria))
+            RulesSignal(name, _signal(*signal), _criteria(*criteria))
             for name, signal, criteria in _core.rules_signals(handle)
         )
         fill(self, _handle=handle, _again=again, _signals=signals)
@@ -289,11 +293,11 @@ class Board(Immutable):
         self._write(_core.board_write, plan, path)
 
     def write_plan_csv(self, plan: Plan, path: Path) -> None:
-        """Writes a plan as a table with a row per plated hole; moved in place when it is whole; `WriteError`."""
+        """Writes a plan to a path as a table, a row per plated hole; moved in place when it is whole; `WriteError`."""
         self._write(_core.board_write_plan_csv, plan, path)
 
     def write_drill_csv(self, plan: Plan, path: Path) -> None:
-        """Writes the drill table of a plan, a row per drill group; moved in place when it is whole; `WriteError`."""
+        """Writes the drill table of a plan to a path, a row per drill group; moved in place when it is whole; `WriteError`."""
         self._write(_core.board_write_drill_csv, plan, path)
 
     def _write(self, call: Any, plan: Any, path: Path) -> None:

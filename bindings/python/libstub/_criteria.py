@@ -67,7 +67,8 @@ class Criteria(Frozen):
     Parameters
     ----------
     notch_over_nyquist : first notch at least this many times Nyquist, > 0; None: not asked
-    added_loss_db : loss added at Nyquist at most this, dB, > 0; None: not asked
+    added_loss_db : loss added at Nyquist at most this, dB, > 0; None: not asked. A notch below Nyquist fails it
+        whatever the loss at Nyquist
 
     Ranges are checked where the criteria are used.
 

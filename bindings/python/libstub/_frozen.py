@@ -116,7 +116,7 @@ _UNITS = {
         "depth_most diameter length stub_length rule_length rule_margin margin depth_tolerance cut_clearance "
         "residual_min residual_target bit_oversize wall_clearance residual residual_least residual_most limit tolerance "
         "x y",
-        "Hz": "f_ref f f_series f1 nyquist notch_margin",
+        "Hz": "f_ref f_range f f_series f1 nyquist notch_margin",
         "Bd": "baud",
         "dB": "added_loss_db loss_margin_db depth_db worst_added_loss_db",
         "ohm": "impedance",

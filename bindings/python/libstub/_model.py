@@ -33,7 +33,8 @@ class StubLine(Frozen):
     fidelity: the one that made these numbers. dk_effective: (c/(4 L f1))^2 of the first notch, end effects included.
     dk_line: c^2 L' C' of the line without its end. impedance: sqrt(L'/C'), ohm. inductance: L', H/m. capacitance: C',
     F/m. end_capacitance: at the open end, F. stated_error: largest error of the first notch found against full-wave
-    data for this fidelity, relative.
+    data for this fidelity, relative. f_range: top of the stated range, Hz: an antipad radius or a plate spacing is a tenth
+    of the wavelength in the laminate.
     """
 
     fidelity: str
@@ -44,6 +45,7 @@ class StubLine(Frozen):
     capacitance: float
     end_capacitance: float
     stated_error: float
+    f_range: float
 
 
 @dataclass(frozen=True, repr=False)
@@ -52,7 +54,7 @@ class Notch(Frozen):
 
     stub: number of the stub that makes it. f: minimum of |S21|, the notch as it is measured, Hz. f_series: zero of
     Im Zin next to it, Hz; NaN where there is none. depth_db: 20 log10 |S21| at f, negative, -300 at least. q: f over
-    the width of the notch 3 dB above its floor; NaN where it is not that deep.
+    the width of the notch 3 dB above its floor; NaN where it is not that deep, inf without loss.
     """
 
     stub: int
@@ -136,8 +138,8 @@ class Model(Immutable):
             pairs), apart from f; None: a new array
 
         Returns complex128 of the shape of f (a complex for a number), or out. Time factor exp(+jwt). Without NumPy a
-        `ComplexArray`. Gives one `RangeWarning` where the model is stretched: a plate spacing or antipad above a
-        tenth of the wavelength in the laminate. Raises `ArgumentError` with the index of a frequency out of range.
+        `ComplexArray`. Gives one `RangeWarning` for frequencies above f_range of the line: an antipad radius or a
+        plate spacing is more than a tenth of the wavelength in the laminate. Raises `ArgumentError` with the index of a frequency out of range.
         Source: Zin = Zs coth(gamma L) with the end load, Pozar, Microwave Engineering.
         """
         return _arrays.evaluate(functools.partial(_core.model_zin, self._handle, stub), f, "Z", out)
@@ -145,14 +147,14 @@ class Model(Immutable):
     def s21(self, f: Any, *, stub: int = ALL_STUBS, out: Any = None) -> Any:
         """Transmission past the stub on a line of z_ref matched at both ends, complex: 2 Zin/(2 Zin + z_ref).
 
-        Arguments, result, warnings and errors as `zin`; no unit.
+        f, stub, out, result, warnings and errors as `zin`; no unit.
         """
         return _arrays.evaluate(functools.partial(_core.model_s21, self._handle, stub), f, "Z", out)
 
     def added_loss(self, f: Any, *, stub: int = ALL_STUBS, out: Any = None) -> Any:
         """Loss that the stubs add, dB >= 0: -20 log10 |S21|.
 
-        Arguments, warnings and errors as `zin`, but for out: a buffer of as many float64 as f. Returns float64 of the
+        f, stub, warnings and errors as `zin`. out: a buffer of as many float64 as f. Returns float64 of the
         shape of f (a float for a number; array.array without NumPy), or out.
         """
         return _arrays.evaluate(functools.partial(_core.model_added_loss, self._handle, stub), f, "d", out)
@@ -160,12 +162,18 @@ class Model(Immutable):
     def notches(self, up_to: float, *, stub: int = ALL_STUBS) -> list[Notch]:
         """All notches from 1e6 Hz up to a frequency (Hz, to 1e12), in rising order.
 
-        The roots of the reactance found by bracketing, not multiples of the first. Empty where there are none.
+        Parameters
+        ----------
+        up_to : Hz
+        stub : its number, or `ALL_STUBS`
+
+        The roots of the reactance found by bracketing, not multiples of the first. Empty where there are none. A
+        `RangeWarning` where there are notches beyond f_range of the line.
         """
         return [Notch(*values) for values in _core.model_notches(self._handle, stub, up_to, 2**31)]
 
     def margin(self, signal: Signal, criteria: Criteria) -> Margin:
-        """What the criteria say of this via for a signal: see `Margin`."""
+        """What the criteria say of this via for a signal (`Signal`, `Criteria`): see `Margin`."""
         return margin_of(self._handle, signal, criteria)
 
     def highest_symbol_rate(self, criteria: Criteria) -> SymbolRateLimit:

@@ -112,7 +112,8 @@ class Stub(Frozen):
 
     side, exit_layer (the connecting layer it hangs on), end_layer (the outer layer its barrel ends on; None where it
     was drilled), top and bottom (depths of its ends), length (nominal), length_min and length_max (worst case over the
-    stackup's tolerances), length_rss_min and length_rss_max (root of the sum of squares).
+    stackup's tolerances; of a drilled end over all layers to the surface it was drilled from, and without the drill's
+    own: <= 0 where it may be cut off), length_rss_min and length_rss_max (root of the sum of squares).
     """
 
     side: Side
@@ -321,7 +322,7 @@ class Via(Immutable):
         return stubs_of(self.stackup, _core.via_stubs(self.stackup._handle, self._record))
 
     def model(self, *, fidelity: Literal["default", "bulk", "loaded"] = "default", z_ref: float = 50.0) -> Model:
-        """The electrical model of this via, compiled: see `Model`."""
+        """The electrical model of this via, compiled; fidelity and z_ref (ohm) as `Model`."""
         from ._model import Model
 
         return Model(self, fidelity=fidelity, z_ref=z_ref)

@@ -32,11 +32,13 @@ static PyObject *rules_parse(PyObject *module, PyObject *args)
     lstub_rules *rules = NULL;
     const char *text;
     Py_ssize_t bytes;
+    int32_t status;
     lstub_error err;
     LSTUB_INIT(err);
     if (!PyArg_ParseTuple(args, "y#", &text, &bytes))
         return NULL;
-    return rules_end(core_of(module), lstub_rules_parse(text, (size_t)bytes, NULL, &rules, &err), &err, rules);
+    status = lstub_rules_parse(text, (size_t)bytes, NULL, &rules, &err);
+    return rules_end(core_of(module), status, &err, rules);
 }
 
 static PyObject *rules_signal(core_state *state, const lstub_rules *rules, int32_t index)
@@ -258,8 +260,7 @@ static PyObject *board_plan(PyObject *module, PyObject *args)
     choice = with ? core_record_get(state, options, SHAPE_OPTIONS, "options") : NULL;
     if (choice == NULL)
         return NULL;
-    shop = core_record_get(state, capability, SHAPE_CAPABILITY, "capability");
-    if (shop == NULL && PyErr_Occurred())
+    if (core_record_optional(state, capability, SHAPE_CAPABILITY, "capability", &shop) < 0)
         return NULL;
     Py_BEGIN_ALLOW_THREADS
     status = lstub_board_plan(board, with, shop, choice, NULL, &plan, &err);

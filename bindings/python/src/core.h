@@ -68,8 +68,10 @@ int core_columns(core_state *state, int shape, const void *data, size_t count, P
 
 PyType_Spec *core_record_spec(void);
 PyObject *core_record_new(core_state *state, int shape, PyObject *values);
-/* The struct of a record; null with an exception if it is not one of that shape. None gives null without one. */
+/* The struct of a record; null with an exception if it is not one of that shape. */
 const void *core_record_get(core_state *state, PyObject *record, int shape, const char *name);
+/* The same where None stands for a null pointer. */
+int core_record_optional(core_state *state, PyObject *record, int shape, const char *name, const void **out);
 
 typedef struct core_gather {  /* structs of many records side by side                                  */
     PyObject *keep;

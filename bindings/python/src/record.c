@@ -125,16 +125,20 @@ static const char *pack_text(core_state *state, PyObject *value, const char *nam
 static int pack_member(core_state *state, record *rec, const core_member *member, PyObject *value)
 {
     void *at = (char *)&rec->data + member->offset;
-    const void *pointer;
+    const void *pointer = NULL;
     switch (member->type) {
     case 'd': return core_number(state, value, member->name, at);
     case 'i': return core_int(state, value, member->name, at);
-    case 's': pointer = pack_text(state, value, member->name); break;
-    case 'r': pointer = core_record_get(state, value, member->shape, member->name); break;
-    default:  return pack_array(state, rec, member, value);
+    case 's':
+        if ((pointer = pack_text(state, value, member->name)) == NULL)
+            return -1;
+        break;
+    case 'r':
+        if (core_record_optional(state, value, member->shape, member->name, &pointer) < 0)
+            return -1;
+        break;
+    default: return pack_array(state, rec, member, value);
     }
-    if (pointer == NULL && PyErr_Occurred())
-        return -1;
     memcpy(at, &pointer, sizeof pointer);
     return 0;
 }
@@ -167,13 +171,17 @@ PyObject *core_record_new(core_state *state, int shape, PyObject *values)
 
 const void *core_record_get(core_state *state, PyObject *object, int shape, const char *name)
 {
-    if (object == Py_None)
-        return NULL;
     if (Py_TYPE(object) != (PyTypeObject *)state->record_type || ((record *)object)->shape != shape) {
         PyErr_Format(PyExc_TypeError, "%s: must be a record of a %s", name, core_shape_of(shape)->name);
         return NULL;
     }
     return &((record *)object)->data;
+}
+
+int core_record_optional(core_state *state, PyObject *object, int shape, const char *name, const void **out)
+{
+    *out = object == Py_None ? NULL : core_record_get(state, object, shape, name);
+    return *out == NULL && object != Py_None ? -1 : 0;
 }
 
 /* ---- many ---------------------------------------------------------------------------------------- */
@@ -195,11 +203,8 @@ int core_gather_take(core_state *state, PyObject *records, int shape, const char
     }
     for (i = 0; i < out->count; i++) {
         const void *data = core_record_get(state, PyTuple_GetItem(out->keep, (Py_ssize_t)i), shape, name);
-        if (data == NULL) {
-            if (!PyErr_Occurred())
-                core_bad_argument(state, name, "%s: item %d is None", name, (int)i);
+        if (data == NULL)
             return -1;
-        }
         memcpy((char *)out->items + i * size, data, size);
     }
     return 0;

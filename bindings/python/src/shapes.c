@@ -68,6 +68,7 @@ static const core_member line[] = {
     VALUE(lstub_stub_line, dk_line, 'd'), VALUE(lstub_stub_line, impedance, 'd'),
     VALUE(lstub_stub_line, inductance, 'd'), VALUE(lstub_stub_line, capacitance, 'd'),
     VALUE(lstub_stub_line, end_capacitance, 'd'), VALUE(lstub_stub_line, stated_error, 'd'),
+    VALUE(lstub_stub_line, f_range, 'd'),
 };
 static const core_member notch[] = {
     VALUE(lstub_notch, stub, 'i'), VALUE(lstub_notch, f, 'd'), VALUE(lstub_notch, f_series, 'd'),

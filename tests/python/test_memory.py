@@ -1,0 +1,113 @@
+"""Nothing leaks: neither in what succeeds nor in what fails."""
+
+import gc
+import pickle
+import sys
+import warnings
+
+import pytest
+from conftest import make_stackup, make_via
+
+import libstub as ls
+from libstub import _core
+
+RULES = "signal a symbol_rate 10 GBd notch_over_nyquist 2\nnet A* a\n"
+
+
+def resident():
+    """Bytes in memory; None where the system does not tell."""
+    try:
+        with open("/proc/self/statm", encoding="ascii") as file:
+            return int(file.read().split()[1]) * 4096
+    except OSError:
+        return None
+
+
+def fails(call):
+    with pytest.raises((ls.LibstubError, TypeError, ValueError, BufferError)):
+        call()
+
+
+def make_and_drop():
+    laminate = ls.Dielectric(3.6, 0.004)
+    stackup = make_stackup(laminate)
+    via = make_via(stackup, pads={"L3": ls.mil(22)}, backdrills=[ls.BackDrill("bottom", ls.mil(12), ls.mil(18))])
+    model = via.model()
+    f = [1e9, 2e9, 3e9] * 50
+    model.zin(f), model.added_loss(f), model.notches(up_to=30e9), model.line(), model.stubs, laminate.permittivity(f)
+    link, criteria = ls.Signal(10e9), ls.Criteria(2.0)
+    model.margin(link, criteria), model.highest_symbol_rate(criteria), ls.longest_stub(via, link, criteria)
+    ls.margin_batch([via] * 20, [link] * 20, criteria), ls.longest_stub_batch([via] * 20, link, criteria)
+    plan = ls.plan(stackup, [ls.Job(via, link, criteria), ls.Job(via)], ls.Capability(depths=[1e-3]))
+    list(plan), plan.groups, plan.totals, plan.reason(0)
+    rules = ls.Rules.parse(RULES)
+    rules.match("A1"), rules.capability
+    list(_core.complex_array(50)), _core.complex_array(50).real_imag().tolist()
+    pickle.loads(pickle.dumps(plan))
+    with warnings.catch_warnings(record=True):
+        warnings.simplefilter("always")
+        model.zin([100e9] * 50)
+    fails(lambda: ls.Dielectric(0.1, 0.0))
+    fails(lambda: ls.Stackup([ls.Layer("A", "signal", 1e-5), ls.Layer("A", "signal", 1e-5)]))
+    fails(lambda: via.replace(drill=1.0))
+    fails(lambda: via.replace(pads={"L3": "x"}))
+    fails(lambda: model.zin([1e9, "x"]))
+    fails(lambda: model.zin([1e9] * 49 + [0.0]))
+    fails(lambda: model.zin(f, out=bytearray(7)))
+    fails(lambda: model.zin(f, out=bytes(16 * len(f))))
+    fails(lambda: ls.margin_batch([via], link, ls.Criteria()))
+    fails(lambda: ls.margin_batch([via] * 3, [link] * 2, criteria))
+    fails(lambda: ls.plan(stackup, [], ls.Capability(depth_tolerance=-1)))
+    fails(lambda: ls.Rules.parse("nonsense"))
+    fails(lambda: ls.Rules.load("/nonexistent/rules"))
+    fails(lambda: ls.Board.load("/nonexistent/board"))
+    fails(lambda: _core.stackup_create((None,)))
+    fails(lambda: _core.stackup_create((1,)))
+    fails(lambda: _core.model_zin(1, 0, f, f))
+    fails(lambda: _core.record("via", (1, 2)))
+    fails(lambda: _core.record("job", (link._record, None, None)))
+
+
+def test_memory_does_not_grow():
+    if resident() is None:
+        pytest.skip("the system does not tell how much memory is in use")
+    for _ in range(60):
+        make_and_drop()
+    gc.collect()
+    before = resident()
+    for _ in range(300):
+        make_and_drop()
+    gc.collect()
+    # a leak of one struct a round would be 300 times some hundred bytes, one of a handle some kilobytes: 1 MB and more
+    assert resident() - before < 700_000
+
+
+def test_references_do_not_grow():
+    types = (_core.Handle, _core.Record, _core.ComplexArray)
+    shared = (None, True, False, (), "L3")
+    for _ in range(5):
+        make_and_drop()
+    gc.collect()
+    before = [sys.getrefcount(thing) for thing in types + shared]
+    for _ in range(50):
+        make_and_drop()
+    gc.collect()
+    after = [sys.getrefcount(thing) for thing in types + shared]
+    assert all(abs(a - b) < 50 for a, b in zip(after, before)), (before, after)
+
+
+def test_arguments_are_let_go():
+    stackup = make_stackup(ls.Dielectric(3.6, 0.004))
+    via = make_via(stackup)
+    f = [1e9, 2e9]
+    import array
+
+    buffer, out = array.array("d", f), array.array("d", bytes(32))
+    model = via.model()
+    counts = [sys.getrefcount(thing) for thing in (via, stackup, buffer, out, model)]
+    for _ in range(100):
+        model.zin(buffer, out=out)
+        ls.first_notch_batch([via] * 3)
+    assert [sys.getrefcount(thing) for thing in (via, stackup, buffer, out, model)] == counts
+    buffer.append(3e9)  # still exported buffers would refuse this
+    out.append(0.0)

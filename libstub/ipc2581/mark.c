@@ -56,8 +56,8 @@ static const lstub__piece nothing = {0, 0};
 static int add_bytes(scan *s, buffer *b, const char *bytes, size_t count)
 {
     size_t most = b == &s->set ? KEPT_MAX : TEXT_MAX;
-    if (s->xml.status < 0)
-        return 0;
+    if (count == 0 || s->xml.status < 0)
+        return s->xml.status >= 0;
     if (count > most - b->used) {
         lstub__xml_fail(&s->xml, LSTUB_E_FORMAT, "path", "<Set>: more than %u bytes to repeat for holes drilled differently",
                         (unsigned)most);
@@ -93,7 +93,8 @@ static lstub__piece keep_blank(scan *s, buffer *b) { return keep(s, b, s->blank,
 
 static void copy_piece(scan *s, lstub__piece piece)   /* of the Set, into the edits */
 {
-    add_bytes(s, &s->text, s->set.bytes + piece.at, piece.bytes);
+    if (piece.bytes > 0)
+        add_bytes(s, &s->text, s->set.bytes + piece.at, piece.bytes);
 }
 
 /* Everything that is no tag, as it stands in the file; tags too, where XML_DefaultCurrent asks for them. */

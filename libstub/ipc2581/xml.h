@@ -12,7 +12,7 @@
     E(DIAMOND, "Diamond") E(DICT_FILL, "DictionaryFillDesc") E(DICT_LINE, "DictionaryLineDesc") \
     E(DICT_STANDARD, "DictionaryStandard") E(DICT_USER, "DictionaryUser") E(DIELECTRIC, "Dielectric") E(DONUT, "Donut") E(ECAD, "Ecad") \
     E(ELLIPSE, "Ellipse") E(ENTRY_FILL, "EntryFillDesc") E(ENTRY_LINE, "EntryLineDesc") E(ENTRY_STANDARD, "EntryStandard") \
-    E(ENTRY_USER, "EntryUser") E(FEATURES, "Features") E(FILL_DESC, "FillDesc") E(FILL_REF, "FillDescRef") \
+    E(ENTRY_USER, "EntryUser") E(FEATURES, "Features") E(FILL_DESC, "FillDesc") E(FILL_REF, "FillDescRef") E(GENERAL, "General") \
     E(HEXAGON, "Hexagon") E(HOLE, "Hole") E(IPC_2581, "IPC-2581") E(LAYER, "Layer") E(LAYER_FEATURE, "LayerFeature") \
     E(LINE, "Line") E(LINE_DESC, "LineDesc") E(LINE_REF, "LineDescRef") E(LOCATION, "Location") E(MOIRE, "Moire") \
     E(OCTAGON, "Octagon") E(OUTLINE, "Outline") E(OVAL, "Oval") E(PAD, "Pad") E(PAD_STACK_DEF, "PadStackDef") \

@@ -53,6 +53,13 @@ lstub__wideband lstub__wideband_of(const lstub_dielectric *dielectric)
     return w;
 }
 
+/* Re lambda = ln((f2^2 + f^2)/(f1^2 + f^2))/2 falls with f: solved for f. */
+double lstub__wideband_top(lstub__wideband w)
+{
+    double ratio = w.slope > 0.0 ? exp(2.0 * (1.0 - w.constant) / w.slope) : 0.0;
+    return ratio > 1.0 ? sqrt(fmax(F_HIGH * F_HIGH - F_LOW * F_LOW * ratio, 0.0) / (ratio - 1.0)) : HUGE_VAL;
+}
+
 cplx lstub__wideband_at(lstub__wideband w, cplx lambda)
 {
     return cplx_of(w.constant + w.slope * lambda.re, w.slope * lambda.im);
@@ -84,6 +91,9 @@ int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectric, const 
             in_plane[2 * i] = eps.re * ours.in_plane_ratio;
             in_plane[2 * i + 1] = eps.im * ours.in_plane_ratio;
         }
+        if (eps.re < 1.0 && status == LSTUB_OK)
+            status = lstub__fail(err, LSTUB_W_RANGE, "loss_tangent", (int64_t)i, "loss_tangent = %.6g: Dk falls below 1 above %.6g Hz",
+                                 ours.loss_tangent, lstub__wideband_top(w));
     }
-    return LSTUB_OK;
+    return status;
 }

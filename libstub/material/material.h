@@ -17,6 +17,8 @@ int32_t lstub__conductor_take(lstub_conductor *ours, const lstub_conductor *thei
 
 lstub__wideband lstub__wideband_of(const lstub_dielectric *dielectric);
 cplx lstub__wideband_lambda(double f);
+/* Frequency above which the real part is below 1, HUGE_VAL if none: no medium is like that. */
+double lstub__wideband_top(lstub__wideband w);
 cplx lstub__wideband_at(lstub__wideband w, cplx lambda);
 
 #endif

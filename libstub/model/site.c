@@ -235,6 +235,7 @@ static void make_arm(lstub__arm *arm, const lstub__via *via, int index, double l
         part->plane = lstub__is_copper(layer->kind) ? lstub__via_antipad(via, i) : 0.0;
         arm->lossless &= layer->dielectric.loss_tangent == 0.0;
         add_range(arm, 0.5 * part->plane, part->in_plane);
+        arm->f_range = fmin(arm->f_range, lstub__wideband_top(layer->eps));
         if (part->plane > 0.0) {
             plane_part(part, via, i, lambda);
             inside = 0;

@@ -31,10 +31,10 @@ static void record(lstub__case *c, const lstub__site *site, int arm, const lstub
     cut->drilled = 1;
     cut->must_not_cut = arm == 0 ? site->via.first : site->via.last;
     cut->diameter = site->via.in.drill + capability->in.bit_oversize;
-    cut->depth_least = room->full - room->high;
-    cut->depth_most = room->full - room->low;
+    cut->depth_least = room->depth_least;
+    cut->depth_most = room->depth_most;
     cut->limit = limit;
-    c->aim[arm] = room->full - fmin(fmax(capability->in.residual_target, room->low), room->high);
+    c->aim[arm] = fmin(fmax(room->full - capability->in.residual_target, room->depth_least), room->depth_most);
 }
 
 static void blame(lstub_decision *d, int arm, const lstub__room *room)

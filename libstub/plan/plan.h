@@ -17,6 +17,7 @@ typedef struct lstub__room {
     double  full;                  /* surface to the face of the must-not-cut layer            */
     double  shrink, grow;          /* how much shorter or longer the residual may come out     */
     double  low, high;             /* residual, nominal                                        */
+    double  depth_least, depth_most;  /* the same from the surface; set by lstub__room_limit   */
 } lstub__room;
 
 /* What the fabricator and the geometry leave, before the criteria: sets all but `high`, which is `full`. */

@@ -104,25 +104,25 @@ void lstub__room_make(lstub__room *room, const lstub__site *site, int arm, const
     keep_pin(room, site, arm);
 }
 
-/* Only allowed depths: the residuals shrink to the outermost of those that fit. */
+/* Only allowed depths: from the least to the greatest of those that fit. */
 static void keep_depths(lstub__room *room, const lstub__capability *capability)
 {
-    double low = HUGE_VAL, high = -1.0;
+    double least = HUGE_VAL, most = -1.0;
     for (size_t i = 0; i < capability->in.depth_count; i++) {
-        double residual = room->full - capability->depths[i];
-        if (residual >= room->low && residual <= room->high) {
-            low = fmin(low, residual);
-            high = fmax(high, residual);
+        double depth = capability->depths[i];
+        if (depth >= room->depth_least && depth <= room->depth_most) {
+            least = fmin(least, depth);
+            most = fmax(most, depth);
         }
     }
-    if (high < 0.0) {
-        room->value = room->full - room->high;
-        room->limit = room->full - room->low;
+    if (most < 0.0) {
+        room->value = room->depth_least;
+        room->limit = room->depth_most;
         refuse(room, LSTUB_REASON_DEPTHS);
         return;
     }
-    room->low = low;
-    room->high = high;
+    room->depth_least = least;
+    room->depth_most = most;
 }
 
 void lstub__room_limit(lstub__room *room, double longest, const lstub__capability *capability)
@@ -139,6 +139,8 @@ void lstub__room_limit(lstub__room *room, double longest, const lstub__capabilit
         room->low = HUGE_VAL;
         return;
     }
+    room->depth_least = room->full - room->high;
+    room->depth_most = room->full - room->low;
     if (capability->in.depth_count > 0)
         keep_depths(room, capability);
     if (room->low != HUGE_VAL)

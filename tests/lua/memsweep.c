@@ -16,6 +16,7 @@
 #include <string.h>
 
 #define RUNS_MAX 20000
+#define BYTES_MAX ((size_t)1 << 30)     /* more than a test needs; sanitizers stop at sizes beyond belief */
 
 typedef struct memory {
     size_t live;                /* bytes */
@@ -47,7 +48,7 @@ static void *allocate(void *user, void *block, size_t old_size, size_t new_size)
         m->live -= old_size;
         return NULL;
     }
-    if (new_size > old_size && must_fail(m))
+    if (new_size > old_size && (new_size > BYTES_MAX || must_fail(m)))
         return NULL;
     moved = realloc(block, new_size);
     if (moved != NULL)
@@ -164,14 +165,13 @@ static int sweep_operation(char **arguments, int number, const char *name)
 static int sweep(char **arguments)
 {
     lua_State *L = new_state(&main_memory, arguments);
-    int number, bad = 0, count;
-    if (L == NULL || !run_script(L, arguments[0]))
+    int number, bad = 0, count = 0;
+    if (L == NULL)
         return EXIT_FAILURE;
-    if (!lua_istable(L, 2)) {
+    if (run_script(L, arguments[0]) && lua_istable(L, 2))
+        count = (int)lua_rawlen(L, 2);
+    else
         fprintf(stderr, "%s: must return a list of operations\n", arguments[0]);
-        return EXIT_FAILURE;
-    }
-    count = (int)lua_rawlen(L, 2);
     for (number = 1; number <= count; number++) {
         operation(L, number, "name");
         bad |= sweep_operation(arguments, number, lua_tostring(L, -1));

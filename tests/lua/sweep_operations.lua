@@ -1,4 +1,5 @@
 -- What memsweep does with failing memory: each operation once per allocation in it.
+--     memsweep --sweep sweep_operations.lua FOLDER     writes a small board file into FOLDER
 package.path = (arg[0]:match("^.*/") or "./") .. "?.lua;" .. package.path
 local ls = require "libstub"
 local fixture = require "fixture"
@@ -8,6 +9,19 @@ local function model() return via():model() end
 local rich = { pads = { SIG1 = 0.4e-3 }, antipads = { GND2 = 0.9e-3 }, clear = { SIG2 = 1e-3 }, pair = { pitch = 1.2e-3 },
   pin = { side = "top", length = 0.1e-3 }, backdrills = { { side = "bottom", depth = 0.5e-3, diameter = 0.5e-3 } } }
 local freq = { 1e9, 2e9, 3e9 }
+
+local folder = assert(arg[1], "the folder to write into is missing")
+local board_path, out_path = folder .. "/sweep_board.xml", folder .. "/sweep_out.csv"
+if not io.open(board_path) then
+  local file = assert(io.open(board_path, "wb"))
+  file:write(fixture.board_xml())
+  file:close()
+end
+local function board()
+  local rules = ls.rules_parse(fixture.rules)
+  local loaded = assert(ls.board_load(board_path, { rules = rules }))
+  return loaded, rules, loaded:plan(rules)
+end
 
 local operations = {
   { name = "load", setup = function() package.loaded.libstub = nil end, run = function() return require "libstub" end },
@@ -54,6 +68,20 @@ local operations = {
   { name = "rules", run = function()
     local rules <close> = ls.rules_parse("signal A symbol_rate 10 GBd notch_over_nyquist 2\nnet X* A\nfab depths 1 mm 2 mm\n")
     return rules:signal(1) == "A" and rules:match("X1") == 1 and rules:capability() and not ls.rules_parse("nonsense\n")
+  end },
+  { name = "board_load", setup = function() return ls.rules_parse(fixture.rules) end, run = function(rules)
+    local loaded <close> = ls.board_load(board_path, { rules = rules, progress = function() end })
+    return loaded:hole_count() == 5 and #loaded:stackup() == 7
+  end },
+  { name = "board:holes", setup = board, run = function(b)
+    return #b:holes() == 5 and #b:notices() > 0 and b:via(1):options().connects[2] == "IN1"
+  end },
+  { name = "board:plan", setup = board, run = function(b, rules, plan)
+    local made <close> = b:plan(rules)
+    return made:decision(1).action == "drill_bottom" and b:summary(plan)
+  end },
+  { name = "board:write", setup = board, run = function(b, _, plan)
+    return b:write_plan_csv(plan, out_path) and b:write_drill_csv(plan, out_path) and b:write(plan, out_path)
   end },
 }
 

@@ -1,6 +1,7 @@
 /* Arrays of doubles: libstub.array, and libstub.complex with (re, im) pairs. */
 #include "lslua.h"
 
+#include <limits.h>
 #include <math.h>
 #include <string.h>
 
@@ -46,10 +47,15 @@ const double *lslua_numbers(lua_State *L, const lslua_at *at, const char *key, i
     return value;
 }
 
+static void push_list(lua_State *L, size_t count)
+{
+    lua_createtable(L, count < (size_t)INT_MAX ? (int)count : INT_MAX, 0);
+}
+
 void lslua_push_status(lua_State *L, const int32_t *status, size_t count)
 {
     size_t i;
-    lua_createtable(L, (int)count, 0);
+    push_list(L, count);
     for (i = 0; i < count; i++) {
         lua_pushinteger(L, status[i]);
         lua_rawseti(L, -2, (lua_Integer)i + 1);
@@ -142,7 +148,7 @@ static int array_totable(lua_State *L)
 {
     const array *a = luaL_checkudata(L, 1, LSLUA_ARRAY);
     size_t i;
-    lua_createtable(L, (int)a->count, 0);
+    push_list(L, a->count);
     for (i = 0; i < a->count; i++) {
         lua_pushnumber(L, a->value[i]);
         lua_rawseti(L, -2, (lua_Integer)i + 1);

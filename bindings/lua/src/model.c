@@ -185,7 +185,7 @@ static int model_stub(lua_State *L)
 {
     lstub_stub stub;
     lstub_error err;
-    int32_t number, status;
+    int32_t number = 0, status;
     LSTUB_INIT(err);
     LSTUB_INIT(stub);
     status = stub_argument(L, 2, &number, &err);
@@ -202,7 +202,7 @@ static int model_line(lua_State *L)
 {
     lstub_stub_line line;
     lstub_error err;
-    int32_t number, status;
+    int32_t number = 0, status;
     LSTUB_INIT(err);
     LSTUB_INIT(line);
     status = stub_argument(L, 2, &number, &err);

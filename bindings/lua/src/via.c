@@ -77,7 +77,7 @@ static int32_t read_span_end(const reading *r, const char *key, int32_t *layer, 
 static int32_t read_span(const reading *r)
 {
     lua_State *L = r->at.L;
-    int start, end;
+    int start = 0, end = 0;
     int32_t status = read_span_end(r, "start_layer", &r->to->start_layer, &start);
     if (status == LSTUB_OK)
         status = read_span_end(r, "end_layer", &r->to->end_layer, &end);

@@ -33,7 +33,7 @@ def make_and_drop():
     stackup = make_stackup(laminate)
     via = make_via(stackup, pads={"L3": ls.mil(22)}, backdrills=[ls.BackDrill("bottom", ls.mil(12), ls.mil(18))])
     model = via.model()
-    f = [1e9, 2e9, 3e9] * 50
+    f = [1e9, 2e9, 3e9] * 1000
     model.zin(f), model.added_loss(f), model.notches(up_to=30e9), model.line(), model.stubs, laminate.permittivity(f)
     link, criteria = ls.Signal(10e9), ls.Criteria(2.0)
     model.margin(link, criteria), model.highest_symbol_rate(criteria), ls.longest_stub(via, link, criteria)
@@ -52,7 +52,7 @@ def make_and_drop():
     fails(lambda: via.replace(drill=1.0))
     fails(lambda: via.replace(pads={"L3": "x"}))
     fails(lambda: model.zin([1e9, "x"]))
-    fails(lambda: model.zin([1e9] * 49 + [0.0]))
+    fails(lambda: model.zin([1e9] * 999 + [0.0]))
     fails(lambda: model.zin(f, out=bytearray(7)))
     fails(lambda: model.zin(f, out=bytes(16 * len(f))))
     fails(lambda: ls.margin_batch([via], link, ls.Criteria()))

@@ -95,6 +95,9 @@ class Status(enum.IntEnum):
     E_WRITE = _core.E_WRITE
     E_FORMAT = _core.E_FORMAT
 
+    def __str__(self) -> str:
+        return self.name
+
 
 # ---- repr ---------------------------------------------------------------------------------------------
 

@@ -91,6 +91,7 @@ t.fails("stub 1: there is none", ls.E_NONE, none:line(1))
 -- Refused, by name.
 t.fails("stub 2: must be 1 to 1", ls.E_NONE, model:line(2))
 t.fails("stub 0: must be 1 to 1", ls.E_NONE, model:stub(0))
+t.raises("number expected, got string", model.stub, model, "1")
 t.fails("stub 2: the model has 1", ls.E_NONE, model:zin(1e9, { stub = 2 }))
 t.fails("item 2", ls.E_ARGUMENT, model:zin { 1e9, 0 })
 t.fails("item 3", ls.E_ARGUMENT, model:s21 { 1e9, 1e9, 0 / 0 })

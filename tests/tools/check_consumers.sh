@@ -12,7 +12,7 @@ mkdir -p "$work"
 echo "== install, moved elsewhere afterwards"
 cmake --install "$build" --prefix "$work/first" >/dev/null
 mv "$work/first" "$work/stage"
-lib=$(dirname "$(find "$work/stage" -name libstub.so)")
+lib=$(dirname "$(find "$work/stage" -name libstub.so.0)")
 
 echo "== find_package"
 cmake -S "$root/tests/consumer" -B "$work/find" "-DCMAKE_PREFIX_PATH=$work/stage" >/dev/null

@@ -1,0 +1,107 @@
+#!/usr/bin/env python3
+"""Runs every example in every language it is written in and compares: the same task gives the same bytes.
+
+    check_examples.py ROOT --build DIR [--lua LUA]          (with the Python that has the binding)
+
+C programs are taken from the build, examples/python and examples/lua from the tree. `board_plan` is run on the demo
+board, and on the boards of ../shared/boards where that folder is, with the rules that examples/data has for each.
+Any other example must end well and, with its picture files, leave something behind.
+"""
+import argparse
+import os
+import subprocess
+import sys
+import tempfile
+from pathlib import Path
+
+BOARDS = (("demo_board.xml.gz", "demo_rules.txt"), ("testcase10.xml.gz", "testcase10_rules.txt"))
+
+
+class Check:
+    def __init__(self, args):
+        self.args, self.failed, self.count = args, 0, 0
+        self.env = dict(os.environ, LUA_CPATH=f"{args.build}/bindings/lua/?.so", LUA_PATH=f"{args.root}/examples/lua/?.lua",
+                        MPLBACKEND="Agg", PYTHONDONTWRITEBYTECODE="1")
+
+    def languages(self, name):
+        root = self.args.root / "examples"
+        found = {}
+        if (root / "c" / f"{name}.c").exists():
+            found["c"] = [self.args.build / "examples" / name]
+        if (root / "python" / f"{name}.py").exists():
+            found["python"] = [sys.executable, root / "python" / f"{name}.py"]
+        if (root / "lua" / f"{name}.lua").exists():
+            found["lua"] = [self.args.lua, root / "lua" / f"{name}.lua"]
+        return found
+
+    def tell(self, fine, what):
+        self.count += 1
+        self.failed += not fine
+        print(f"{'ok    ' if fine else 'FAILED'} {what}", flush=True)
+        return fine
+
+    def run(self, what, command, folder):
+        """Standard output and the files left in `folder`, or None."""
+        folder.mkdir()
+        done = subprocess.run(command, cwd=folder, env=self.env, stdin=subprocess.DEVNULL, capture_output=True, timeout=500)
+        if not self.tell(done.returncode == 0, what):
+            sys.stdout.write(done.stdout.decode(errors="replace") + done.stderr.decode(errors="replace"))
+            return None
+        files = {str(p.relative_to(folder)): p.read_bytes() for p in sorted(folder.rglob("*")) if p.is_file()}
+        return done.stdout, files
+
+    def compare(self, what, results):
+        """Text and tables of all languages are the same bytes. Pictures are one language's own."""
+        first, (text, files) = next(iter(results.items()))
+        tables = {n: b for n, b in files.items() if not n.endswith((".png", ".svg"))}
+        for language, (other_text, other_files) in results.items():
+            if language == first:
+                continue
+            others = {n: b for n, b in other_files.items() if not n.endswith((".png", ".svg"))}
+            self.tell(other_text == text, f"{what}: {language} prints what {first} prints")
+            self.tell(sorted(others) == sorted(tables), f"{what}: {language} writes {sorted(others)}, {first} {sorted(tables)}")
+            for name in tables.keys() & others.keys():
+                self.tell(tables[name] == others[name], f"{what}: {name} of {language} and {first} are the same bytes")
+
+    def example(self, what, name, arguments, scratch):
+        results = {}
+        for language, command in self.languages(name).items():
+            found = self.run(f"{what} in {language}", [*command, *arguments], scratch / f"{what}-{language}".replace(" ", "-"))
+            if found is not None:
+                results[language] = found
+        if results:
+            self.compare(what, results)
+        return results
+
+
+def main():
+    parser = argparse.ArgumentParser()
+    parser.add_argument("root", type=lambda p: Path(p).resolve())
+    parser.add_argument("--build", required=True, type=lambda p: Path(p).resolve())
+    parser.add_argument("--lua", default="lua5.4")
+    args = parser.parse_args()
+    check = Check(args)
+    data, shared = args.root / "examples" / "data", args.root.parent / "shared" / "boards"
+    names = {p.stem for folder in ("c", "python", "lua") for p in (args.root / "examples" / folder).glob("*.*")
+             if p.suffix in (".c", ".py", ".lua") and p.stem != "invented"}
+    for name in ("board_plan", "max_stub", "stackup_sweep"):
+        check.tell(set(check.languages(name)) == {"c", "python", "lua"}, f"{name} is there in C, Python and Lua")
+    with tempfile.TemporaryDirectory() as folder:
+        scratch = Path(folder)
+        for board, rules in BOARDS:
+            path = data / board if (data / board).exists() else shared / board
+            if not path.exists():
+                print(f"not run: board_plan on {board}, which is not here")
+                continue
+            results = check.example(f"board_plan {board}", "board_plan", [path, data / rules, "."], scratch)
+            for language, (_, files) in results.items():
+                check.tell({"plan.csv", "drill_table.csv"} < set(files) and len(files) == 3, f"{board} in {language}: {sorted(files)}")
+        for name in sorted(names - {"board_plan"}):
+            results = check.example(name, name, [], scratch)
+            check.tell(any(text or files for text, files in results.values()), f"{name} says something")
+    print(f"{check.count} checks, {check.failed} failed")
+    return 1 if check.failed or check.count < 20 else 0
+
+
+if __name__ == "__main__":
+    sys.exit(main())

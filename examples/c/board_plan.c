@@ -58,8 +58,9 @@ int main(int argc, char **argv)
     char *plan_csv = path_in(argv[3], "", "plan.csv"), *drill_csv = path_in(argv[3], "", "drill_table.csv");
     char *copy = path_in(argv[3], "backdrilled_", slash ? slash + 1 : argv[1]);
 
+    fprintf(stderr, "rules %s\n", argv[2]);
     must(lstub_rules_load(argv[2], NULL, &rules, &err), &err);
-    fprintf(stderr, "reading");
+    fprintf(stderr, "reading %s:", argv[1]);
     const int32_t status = lstub_board_load(argv[1], rules, &options, NULL, &board, &err);
     fprintf(stderr, "\n");
     must(status, &err);
@@ -75,7 +76,7 @@ int main(int argc, char **argv)
     must(lstub_board_summary(board, plan, text, needed, &needed, &err), &err);
     printf("%s", text);
 
-    fprintf(stderr, "writing\n");
+    fprintf(stderr, "writing %s, %s, %s\n", plan_csv, drill_csv, copy);
     must(lstub_board_write_plan_csv(board, plan, plan_csv, &err), &err);
     must(lstub_board_write_drill_csv(board, plan, drill_csv, &err), &err);
     must(lstub_board_write(board, plan, copy, &err), &err);
@@ -87,5 +88,9 @@ int main(int argc, char **argv)
     lstub_plan_destroy(plan);
     lstub_board_destroy(board);
     lstub_rules_destroy(rules);
-    return fflush(stdout) == 0 ? 0 : 1;
+    if (fflush(stdout) != 0) {
+        fprintf(stderr, "board_plan: cannot write the summary\n");
+        return 1;
+    }
+    return 0;
 }

@@ -19,9 +19,10 @@ local path, rules_path, out = arg[1], arg[2], arg[3]
 local plan_csv, drill_csv = out .. "/plan.csv", out .. "/drill_table.csv"
 local copy = out .. "/backdrilled_" .. path:match("[^/]*$")
 
+io.stderr:write(string.format("rules %s\n", rules_path))
 local rules = must(ls.rules_load(rules_path))
 local tenths = 0
-io.stderr:write("reading")
+io.stderr:write(string.format("reading %s:", path))
 local board, message, code = ls.board_load(path, { rules = rules, progress = function(fraction)
     while tenths < 10.0 * fraction // 1 do
         tenths = tenths + 1
@@ -34,7 +35,7 @@ io.stderr:write(string.format("planning %d holes\n", board:hole_count()))
 local plan = must(board:plan(rules))
 io.write(must(board:summary(plan)))
 
-io.stderr:write("writing\n")
+io.stderr:write(string.format("writing %s, %s, %s\n", plan_csv, drill_csv, copy))
 must(board:write_plan_csv(plan, plan_csv))
 must(board:write_drill_csv(plan, drill_csv))
 must(board:write(plan, copy))

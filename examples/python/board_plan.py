@@ -28,8 +28,9 @@ def main(arguments):
     plan_csv, drill_csv = out + "/plan.csv", out + "/drill_table.csv"
     copy = out + "/backdrilled_" + os.path.basename(path)
     try:
+        print("rules %s" % rules_path, file=sys.stderr)
         rules = ls.Rules.load(rules_path)
-        print("reading", end="", file=sys.stderr)
+        print("reading %s:" % path, end="", file=sys.stderr)
         try:
             board = ls.Board.load(path, rules, progress=show_progress())
         finally:
@@ -37,7 +38,7 @@ def main(arguments):
         print("planning %d holes" % len(board), file=sys.stderr)
         plan = board.plan()
         print(board.summary(plan), end="")
-        print("writing", file=sys.stderr)
+        print("writing %s, %s, %s" % (plan_csv, drill_csv, copy), file=sys.stderr)
         board.write_plan_csv(plan, plan_csv)
         board.write_drill_csv(plan, drill_csv)
         board.write(plan, copy)

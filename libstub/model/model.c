@@ -85,7 +85,7 @@ int32_t lstub_model_stub_count(const lstub_model *model) { return model == NULL 
 
 int32_t lstub_model_stub(const lstub_model *model, int32_t stub, lstub_stub *out, lstub_error *err)
 {
-    const lstub__line *line;
+    const lstub__line *line = NULL;
     int32_t count, status = chosen(model, stub, 0, &line, &count, err);
     if (status < 0)
         return status;
@@ -94,7 +94,7 @@ int32_t lstub_model_stub(const lstub_model *model, int32_t stub, lstub_stub *out
 
 int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub_stub_line *out, lstub_error *err)
 {
-    const lstub__line *line;
+    const lstub__line *line = NULL;
     int32_t count, status = chosen(model, stub, 0, &line, &count, err);
     if (status < 0)
         return status;
@@ -159,7 +159,7 @@ static int32_t at_frequencies(const lstub_model *model, int32_t stub, const doub
                               int needs_stub, double *out, int32_t *status, lstub_error *err)
 {
     static const lstub__range BAND = {LSTUB__F_MIN, LSTUB__F_MAX, 0, "Hz"};
-    const lstub__line *lines;
+    const lstub__line *lines = NULL;
     int32_t count, result = chosen(model, stub, 1, &lines, &count, err);
     if (result < 0)
         return result;

@@ -13,7 +13,7 @@ int lstub__bracket(lstub__function *f, const void *context, double *a, double *b
 /* Middle of the narrowed bracket, or the end where f is exactly 0; NaN without a change of sign. */
 double lstub__root(lstub__function *f, const void *context, double a, double b, double tol);
 
-/* Place of the least value in [a, b], to tol, by parabolas through three points and golden sections (Brent 1973). For
+/* Place of the least value in [a, b], to 3 tol, by parabolas through three points and golden sections (Brent 1973). For
 ** f with one minimum there. */
 double lstub__minimum(lstub__function *f, const void *context, double a, double b, double tol);
 

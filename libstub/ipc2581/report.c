@@ -8,19 +8,9 @@
 #include <stdio.h>
 #include <string.h>
 
-int32_t lstub__report_check(const lstub_board *board, const lstub_plan *plan, lstub_error *err)
+static int32_t check_groups(const lstub_board *board, const lstub_plan *plan, lstub_error *err)
 {
-    int32_t i, groups, layers;
-    size_t jobs;
-    if (board == NULL || plan == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, board == NULL ? "board" : "plan", -1, "%s = null: must not be null",
-                           board == NULL ? "board" : "plan");
-    jobs = lstub_plan_count(plan);
-    if (jobs != board->hole_count)
-        return lstub__fail(err, LSTUB_E_ARGUMENT, "plan", -1, "plan of %lu vias: this board has %lu plated holes",
-                           (unsigned long)jobs, (unsigned long)board->hole_count);
-    groups = lstub_plan_group_count(plan);
-    layers = lstub_stackup_count(board->stackup);
+    int32_t i, groups = lstub_plan_group_count(plan), layers = lstub_stackup_count(board->stackup);
     for (i = 0; i < groups; i++) {
         lstub_drill_group group;
         int32_t status;
@@ -35,37 +25,64 @@ int32_t lstub__report_check(const lstub_board *board, const lstub_plan *plan, ls
     return LSTUB_OK;
 }
 
-/* The board remembers the rules it was read with. A plan may come from others: then the rate is the plan's own, and
-   the name is left out rather than wrong. */
-int32_t lstub__report_row(const lstub_board *board, const lstub_plan *plan, size_t index, lstub__row *row, lstub_error *err)
+/* Whether the decision fits the signal that the hole had when the board was read. A plan may come from other rules: then
+   rates are the plan's own, and names are left out rather than wrong. */
+static int same_signal(const lstub_board *board, const board_hole *hole, const lstub_decision *d)
 {
     lstub_signal signal;
-    const char *name = "";
+    LSTUB_INIT(signal);
+    if (d->reason == LSTUB_REASON_NO_SIGNAL || hole->signal < 0)
+        return d->reason == LSTUB_REASON_NO_SIGNAL && hole->signal < 0;
+    return lstub_rules_signal(board->rules, hole->signal, NULL, &signal, NULL, NULL) == LSTUB_OK
+           && (!(d->before.nyquist > 0.0) || 2.0 * d->before.nyquist == signal.symbol_rate);
+}
+
+int32_t lstub__report_open(lstub__report *report, const lstub_board *board, const lstub_plan *plan, lstub_error *err)
+{
+    size_t i, jobs;
     int32_t status;
-    row->hole = &board->holes[index];
+    if (board == NULL || plan == NULL)
+        return lstub__fail(err, LSTUB_E_NULL, board == NULL ? "board" : "plan", -1, "%s = null: must not be null",
+                           board == NULL ? "board" : "plan");
+    jobs = lstub_plan_count(plan);
+    if (jobs != board->hole_count)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "plan", -1, "plan of %lu vias: this board has %lu plated holes",
+                           (unsigned long)jobs, (unsigned long)board->hole_count);
+    status = check_groups(board, plan, err);
+    report->board = board;
+    report->plan = plan;
+    report->named = 1;
+    for (i = 0; i < jobs && status == LSTUB_OK && report->named; i++) {
+        lstub_decision d;
+        LSTUB_INIT(d);
+        status = lstub_plan_decision(plan, i, &d, err);
+        report->named = same_signal(board, &board->holes[i], &d);
+    }
+    return status;
+}
+
+int32_t lstub__report_row(const lstub__report *report, size_t index, lstub__row *row, lstub_error *err)
+{
+    lstub_signal signal;
+    int32_t status;
+    row->hole = &report->board->holes[index];
     row->signal = "";
     row->symbol_rate = NAN;
     row->levels = 0;
     LSTUB_INIT(row->decision);
-    status = lstub_plan_decision(plan, index, &row->decision, err);
-    if (status < 0 || row->decision.reason == LSTUB_REASON_NO_SIGNAL)
+    status = lstub_plan_decision(report->plan, index, &row->decision, err);
+    if (status < 0)
         return status;
-    if (lstub__report_judged(row))
+    row->judged = row->decision.action != LSTUB_ACTION_NOT_JUDGED && row->decision.action != LSTUB_ACTION_REFUSED;
+    if (row->decision.before.nyquist > 0.0)
         row->symbol_rate = 2.0 * row->decision.before.nyquist;
     LSTUB_INIT(signal);
-    if (row->hole->signal < 0 || lstub_rules_signal(board->rules, row->hole->signal, &name, &signal, NULL, NULL) < 0)
-        return LSTUB_OK;
-    if (isnan(row->symbol_rate) || row->symbol_rate == signal.symbol_rate) {
-        row->signal = name;
+    if (report->named && row->hole->signal >= 0
+        && lstub_rules_signal(report->board->rules, row->hole->signal, &row->signal, &signal, NULL, NULL) == LSTUB_OK) {
         row->symbol_rate = signal.symbol_rate;
         row->levels = signal.levels != 0 ? signal.levels : 2;
     }
     return LSTUB_OK;
-}
-
-int lstub__report_judged(const lstub__row *row)
-{
-    return row->decision.action != LSTUB_ACTION_REFUSED && row->decision.before.nyquist > 0.0;
 }
 
 const char *lstub__report_layer(const lstub_board *board, int32_t layer)
@@ -165,7 +182,7 @@ static void stub_cell(table *t, double length) { number_cell(t, length > 0.0 ? l
 
 static void margin_cells(table *t, const lstub__row *row, const lstub_margin *margin)
 {
-    if (!lstub__report_judged(row)) {
+    if (!row->judged) {
         empty_cells(t, 4);
         return;
     }
@@ -190,13 +207,13 @@ static void cut_cells(table *t, const lstub_board *board, const lstub_drill_cut 
     integer_cell(t, (long)cut->group + 1);
 }
 
-static int32_t plan_row(table *t, const lstub_board *board, const lstub_plan *plan, size_t index, lstub_error *err)
+static int32_t plan_row(table *t, const lstub__report *report, size_t index, lstub_error *err)
 {
     char reason[LSTUB_REASON_MAX] = "";
     lstub__row row;
-    int32_t status = lstub__report_row(board, plan, index, &row, err);
+    int32_t status = lstub__report_row(report, index, &row, err);
     if (status >= 0)
-        status = lstub_plan_reason(plan, index, reason, sizeof reason, err);
+        status = lstub_plan_reason(report->plan, index, reason, sizeof reason, err);
     if (status < 0)
         return status;
     const lstub_decision *d = &row.decision;
@@ -208,13 +225,13 @@ static int32_t plan_row(table *t, const lstub_board *board, const lstub_plan *pl
     text_cell(t, row.signal);
     number_cell(t, row.symbol_rate * 1e-9, 9);
     number_cell(t, row.levels > 0 ? (double)row.levels : (double)NAN, 9);
-    span_cells(t, board, &row.hole->via);
+    span_cells(t, report->board, &row.hole->via);
     stub_cell(t, d->stub_top);
     stub_cell(t, d->stub_bottom);
     margin_cells(t, &row, &d->before);
     text_cell(t, lstub_action_name(d->action));
-    cut_cells(t, board, &d->bottom);
-    cut_cells(t, board, &d->top);
+    cut_cells(t, report->board, &d->bottom);
+    cut_cells(t, report->board, &d->top);
     margin_cells(t, &row, &d->after);
     text_cell(t, lstub_status_name(d->status));
     text_cell(t, reason);
@@ -225,15 +242,16 @@ static int32_t plan_row(table *t, const lstub_board *board, const lstub_plan *pl
 int32_t lstub_board_write_plan_csv(const lstub_board *board, const lstub_plan *plan, const char *path, lstub_error *err)
 {
     table t = {NULL, 0};
+    lstub__report report;
     size_t i;
-    int32_t status = lstub__report_check(board, plan, err);
+    int32_t status = lstub__report_open(&report, board, plan, err);
     if (status == LSTUB_OK)
         status = lstub__out_open(path, &board->alloc, &t.out, err);
     if (status < 0)
         return status;
     lstub__out_text(t.out, plan_head);
     for (i = 0; i < board->hole_count && status == LSTUB_OK; i++)
-        status = plan_row(&t, board, plan, i, err);
+        status = plan_row(&t, &report, i, err);
     return lstub__out_close(t.out, status, err);
 }
 
@@ -263,7 +281,8 @@ static int32_t drill_row(table *t, const lstub_board *board, const lstub_plan *p
 int32_t lstub_board_write_drill_csv(const lstub_board *board, const lstub_plan *plan, const char *path, lstub_error *err)
 {
     table t = {NULL, 0};
-    int32_t i, groups, status = lstub__report_check(board, plan, err);
+    lstub__report report;
+    int32_t i, groups, status = lstub__report_open(&report, board, plan, err);
     if (status == LSTUB_OK)
         status = lstub__out_open(path, &board->alloc, &t.out, err);
     if (status < 0)

@@ -174,12 +174,16 @@ static void board_lines(page *p, const lstub_board *board)
     end_line(p);
 }
 
-static void totals_lines(page *p, const lstub_plan_summary *totals)
+static void totals_lines(page *p, const lstub_plan_summary *totals, int64_t one_layer)
 {
     int64_t judged = totals->vias - totals->not_judged - totals->refused;
     say(p, "Judged    ");
     count_of(p, judged, "holes; ");
-    count_of(p, totals->not_judged, "carry no signal that matters");
+    count_of(p, totals->not_judged - one_layer, "carry no signal that matters");
+    if (one_layer > 0) {
+        say(p, ", ");
+        count_of(p, one_layer, "connect on one layer only");
+    }
     if (totals->refused > 0) {
         say(p, ", ");
         count_of(p, totals->refused, "are in error");
@@ -245,7 +249,7 @@ typedef struct signal_total {
     const char *name;
     double      symbol_rate;
     int32_t     levels;
-    int64_t     vias, keep, bottom, top, both, cannot, refused;
+    int64_t     holes, keep, bottom, top, both, cannot;
     double      ratio[2], loss[2];   /* worst before and after */
 } signal_total;
 
@@ -255,7 +259,7 @@ static signal_total *total_of(lstub__list *totals, const lstub__row *row, lstub_
     signal_total *t;
     for (i = 0; i < totals->count; i++) {
         t = LSTUB__ITEM(*totals, signal_total, i);
-        if (t->name == row->signal && (t->symbol_rate == row->symbol_rate || (isnan(t->symbol_rate) && isnan(row->symbol_rate))))
+        if (t->name == row->signal && t->symbol_rate == row->symbol_rate)
             return t;
     }
     t = lstub__list_add(totals, err);
@@ -273,14 +277,13 @@ static void add_hole(signal_total *t, const lstub__row *row)
     const lstub_margin *margin[2] = {&row->decision.before, &row->decision.after};
     int32_t action = row->decision.action;
     int i;
-    t->vias++;
+    t->holes++;
     t->keep += action == LSTUB_ACTION_KEEP;
     t->bottom += action == LSTUB_ACTION_DRILL_BOTTOM;
     t->top += action == LSTUB_ACTION_DRILL_TOP;
     t->both += action == LSTUB_ACTION_DRILL_BOTH;
     t->cannot += action == LSTUB_ACTION_CANNOT;
-    t->refused += action == LSTUB_ACTION_REFUSED;
-    for (i = 0; i < 2 && lstub__report_judged(row); i++) {
+    for (i = 0; i < 2; i++) {
         t->ratio[i] = fmin(t->ratio[i], margin[i]->notch_over_nyquist);
         t->loss[i] = fmax(t->loss[i], margin[i]->added_loss_db);
     }
@@ -292,7 +295,7 @@ static void signals_block(page *p, const lstub__list *totals)
     size_t i;
     say(p, "\nSignals\n");
     if (totals->count == 0) {
-        say(p, "  none: no net of this board carries a signal by the rules\n");
+        say(p, "  none judged: no net of this board carries a signal by the rules\n");
         return;
     }
     for (i = 0; i < totals->count; i++) {
@@ -311,12 +314,12 @@ static void signals_block(page *p, const lstub__list *totals)
         left(p, t->name[0] != '\0' ? t->name : "?", width);
         right(p, lstub__significant(rate, t->symbol_rate * 1e-9, 7), 10);
         number(p, t->levels > 0 ? (double)t->levels : (double)NAN, 0, 7);
-        integer(p, t->vias, 7);
+        integer(p, t->holes, 7);
         integer(p, t->keep, 7);
         integer(p, t->bottom, 7);
         integer(p, t->top, 5);
         integer(p, t->both, 5);
-        integer(p, t->cannot + t->refused, 7);
+        integer(p, t->cannot, 7);
         for (k = 0; k < 2; k++) {
             number(p, t->ratio[k], 2, 7);
             say(p, t->ratio[k] < HUGE_VAL ? "x" : " ");
@@ -366,7 +369,7 @@ static int32_t drills_block(page *p, const lstub_board *board, const lstub_plan 
     return status;
 }
 
-/* ---- what is left failing ------------------------------------------------------------------------ */
+/* ---- what is left over --------------------------------------------------------------------------- */
 
 typedef struct failure {         /* holes that fail alike */
     size_t  index;               /* the first of them */
@@ -379,7 +382,7 @@ typedef struct failure {         /* holes that fail alike */
 typedef struct worst_list {      /* the worst first */
     failure item[LISTED];
     size_t  count;
-    int64_t failing;
+    int64_t failing, in_error;
 } worst_list;
 
 /* How many times the worse of the two criteria is exceeded. */
@@ -393,7 +396,9 @@ static double excess(const lstub_margin *m)
 static int alike(const failure *a, const lstub__row *row)
 {
     const lstub_decision *x = &a->decision, *y = &row->decision;
-    return a->signal == row->signal && x->reason == y->reason && x->reason_side == y->reason_side && x->reason_layer == y->reason_layer
+    if (row->decision.action == LSTUB_ACTION_REFUSED)   /* numbers do not count */
+        return x->action == y->action && a->signal == row->signal && x->status == y->status;
+    return a->signal == row->signal && x->action == y->action && x->reason == y->reason && x->reason_side == y->reason_side && x->reason_layer == y->reason_layer
            && x->before.nyquist == y->before.nyquist && x->after.f1 == y->after.f1 && x->after.added_loss_db == y->after.added_loss_db
            && (x->reason_value == y->reason_value || (isnan(x->reason_value) && isnan(y->reason_value)));
 }
@@ -401,9 +406,11 @@ static int alike(const failure *a, const lstub__row *row)
 /* A kind of failure that has once fallen off the end stays off: counts of those listed are complete. */
 static void add_failing(worst_list *list, size_t index, const lstub__row *row)
 {
-    failure one = {index, 1, excess(&row->decision.after), row->decision, row->signal};
+    int refused = row->decision.action == LSTUB_ACTION_REFUSED;
+    failure one = {index, 1, refused ? HUGE_VAL : excess(&row->decision.after), row->decision, row->signal};
     size_t i;
-    list->failing++;
+    list->failing += !refused;
+    list->in_error += refused;
     for (i = 0; i < list->count; i++)
         if (alike(&list->item[i], row)) {
             list->item[i].count++;
@@ -442,88 +449,101 @@ static int32_t failing_lines(page *p, const lstub_board *board, const lstub_plan
 static int32_t failing_block(page *p, const lstub_board *board, const lstub_plan *plan, const worst_list *list, lstub_error *err)
 {
     size_t i;
-    int64_t listed = 0;
+    int64_t left_over = list->failing + list->in_error;
     int32_t status = LSTUB_OK;
-    say(p, "\nStill failing after the plan\n");
-    if (list->failing == 0) {
-        say(p, "  none of the holes judged\n");
+    say(p, "\nLeft over\n");
+    if (left_over == 0) {
+        say(p, "  nothing: every hole judged passes after the plan\n");
         return LSTUB_OK;
     }
     say(p, "  ");
-    count_of(p, list->failing, list->failing == 1 ? "hole:\n" : "holes, the farthest beyond their limits first:\n");
+    count_of(p, list->failing, "still fail");
+    if (list->in_error > 0) {
+        say(p, ", ");
+        count_of(p, list->in_error, "are in error");
+    }
+    say(p, "; the worst first:\n");
     for (i = 0; i < list->count && status == LSTUB_OK; i++) {
         status = failing_lines(p, board, plan, &list->item[i], err);
-        listed += list->item[i].count;
+        left_over -= list->item[i].count;
     }
-    if (listed < list->failing) {
+    if (left_over > 0) {
         say(p, "  and ");
-        count_of(p, list->failing - listed, "more: see plan.csv\n");
+        count_of(p, left_over, "more: see plan.csv\n");
     }
     return status;
 }
 
 /* ---- all of it ----------------------------------------------------------------------------------- */
 
-static int32_t survey(const lstub_board *board, const lstub_plan *plan, lstub__list *totals, worst_list *worst, lstub_error *err)
+typedef struct findings {
+    lstub__list signals;         /* of signal_total */
+    worst_list  worst;
+    int64_t     one_layer;
+} findings;
+
+static int32_t survey(const lstub__report *report, findings *f, lstub_error *err)
 {
     size_t i;
-    for (i = 0; i < board->hole_count; i++) {
+    for (i = 0; i < report->board->hole_count; i++) {
         lstub__row row;
-        signal_total *t;
-        int32_t status = lstub__report_row(board, plan, i, &row, err);
+        int32_t status = lstub__report_row(report, i, &row, err);
         if (status < 0)
             return status;
-        if (row.decision.reason == LSTUB_REASON_NO_SIGNAL || (row.signal[0] == '\0' && isnan(row.symbol_rate)))
-            continue;
-        t = total_of(totals, &row, err);
-        if (t == NULL)
-            return LSTUB_E_MEMORY;
-        add_hole(t, &row);
-        if (lstub__report_judged(&row) && !row.decision.after.pass)
-            add_failing(worst, i, &row);
+        f->one_layer += row.decision.reason == LSTUB_REASON_ONE_LAYER;
+        if (row.judged) {
+            signal_total *t = total_of(&f->signals, &row, err);
+            if (t == NULL)
+                return LSTUB_E_MEMORY;
+            add_hole(t, &row);
+        }
+        if (row.decision.action == LSTUB_ACTION_REFUSED || (row.judged && !row.decision.after.pass))
+            add_failing(&f->worst, i, &row);
     }
     return LSTUB_OK;
 }
 
-static int32_t write_page(page *p, const lstub_board *board, const lstub_plan *plan, lstub_error *err)
+static int32_t write_page(page *p, const lstub__report *report, lstub_error *err)
 {
+    const lstub_board *board = report->board;
+    const lstub_plan *plan = report->plan;
     lstub_plan_summary totals;
-    lstub__list signals;
-    worst_list worst;
+    findings f;
     int32_t status;
-    memset(&worst, 0, sizeof worst);
+    memset(&f, 0, sizeof f);
     LSTUB_INIT(totals);
-    lstub__list_init(&signals, &board->alloc, sizeof(signal_total));
+    lstub__list_init(&f.signals, &board->alloc, sizeof(signal_total));
     status = lstub_plan_totals(plan, &totals, err);
-    if (status >= 0)
-        status = survey(board, plan, &signals, &worst, err);
-    if (status >= 0) {
+    if (status == LSTUB_OK)
+        status = survey(report, &f, err);
+    if (status == LSTUB_OK) {
         board_lines(p, board);
-        totals_lines(p, &totals);
+        totals_lines(p, &totals, f.one_layer);
         notices_block(p, board);
-        signals_block(p, &signals);
+        signals_block(p, &f.signals);
         status = drills_block(p, board, plan, &totals, err);
     }
-    if (status >= 0)
-        status = failing_block(p, board, plan, &worst, err);
-    lstub__list_clear(&signals);
+    if (status == LSTUB_OK)
+        status = failing_block(p, board, plan, &f.worst, err);
+    lstub__list_clear(&f.signals);
     say(p, "\nThese are estimates from a model. Confirm drill depths, tolerances and clearances with the\n"
            "fabricator; verify critical links by measurement or full-wave simulation; safety-related equipment\n"
            "follows its own codes and licensed practice.\n");
-    return status < 0 ? status : LSTUB_OK;
+    return status;
 }
 
 int32_t lstub_board_summary(const lstub_board *board, const lstub_plan *plan, char *text, size_t bytes, size_t *needed,
                             lstub_error *err)
 {
     page p = {text, 0, 0};
-    int32_t status = lstub__report_check(board, plan, err);
+    lstub__report report;
+    int32_t status = lstub__report_open(&report, board, plan, err);
     if (status < 0)
         return status;
     if (text == NULL && needed == NULL)
         return lstub__fail(err, LSTUB_E_NULL, "needed", -1, "needed = null: must not be null where text is");
     p.room = text == NULL ? 0 : bytes;
-    status = write_page(&p, board, plan, err);
+    status = write_page(&p, &report, err);
     if (status < 0)
         return status;
     if (needed != NULL)

@@ -318,7 +318,8 @@ int32_t lstub_board_write(const lstub_board *board, const lstub_plan *plan, cons
 {
     drills d;
     writing w;
-    int32_t status = lstub__report_check(board, plan, err);
+    lstub__report report;
+    int32_t status = lstub__report_open(&report, board, plan, err);
     if (status < 0)
         return status;
     memset(&w, 0, sizeof w);

@@ -78,6 +78,20 @@ START_TEST(passive_and_causal)
 }
 END_TEST
 
+/* So much loss that the model's Dk falls below that of air somewhere in its band: told, and the values are there. */
+START_TEST(dk_below_1_is_told)
+{
+    lstub_dielectric d = dielectric(3.6, 0, 0.3, 1e9);
+    double f[3] = {1e9, 1e10, 1e11}, z[6];
+    LSTUB_INIT(err);
+    ck_assert_int_eq(lstub_dielectric_permittivity(&d, f, 3, z, NULL, &err), LSTUB_W_RANGE);
+    ck_assert_int_eq(err.status, LSTUB_W_RANGE);
+    ck_assert_str_ne(err.message, "");
+    ck_assert(z[0] > 1 && z[2] > 1 && z[4] < 1 && z[5] < 0);
+    assert_ok(lstub_dielectric_permittivity(&d, f, 2, z, NULL, &err), err);
+}
+END_TEST
+
 START_TEST(arrays_are_items_side_by_side)
 {
     lstub_dielectric d = dielectric(4.2, 1.1, 0.02, 1e9);
@@ -152,6 +166,7 @@ int main(void)
     tcase_add_test(truth, zero_means_the_default);
     tcase_add_test(truth, no_loss_no_dispersion);
     tcase_add_test(truth, passive_and_causal);
+    tcase_add_test(truth, dk_below_1_is_told);
     tcase_add_test(truth, arrays_are_items_side_by_side);
     tcase_add_loop_test(input, bad_dielectrics, 0, (int)COUNT(bad));
     tcase_add_loop_test(input, bad_frequency_names_its_place, 0, (int)COUNT(bad_frequencies));

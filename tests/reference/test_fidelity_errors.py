@@ -1,7 +1,5 @@
-"""First notch of each fidelity against full-wave cells: no error may exceed the one that the library states.
-
-Run as a program it prints the table that docs/theory.md shows:   python tests/reference/test_fidelity_errors.py
-"""
+"""First notch of each fidelity against full-wave cells: no error may exceed the one that the library states. The table
+cell by cell is in docs/theory.md, written by docs/make_error_table.py."""
 
 import statistics
 import warnings
@@ -45,18 +43,3 @@ def test_loaded_is_better_than_bulk():
     median = {f: statistics.median(abs(first_notch(case, result, f)[0] / result["f1_Hz"] - 1) for case, result in cases())
               for f in FIDELITIES}
     assert median["loaded"] < 0.5 * median["bulk"], median
-
-
-def main():
-    rows = [(case["id"], case["note"], result["f1_Hz"], *(first_notch(case, result, f)[0] / result["f1_Hz"] - 1 for f in FIDELITIES))
-            for case, result in cases()]
-    print("| cell | what it is | full wave, GHz | " + " | ".join(f"{f}, %" for f in FIDELITIES) + " |")
-    print("|---|---|---|" + "---|" * len(FIDELITIES))
-    for name, note, f1, *errors in rows:
-        print(f"| {name} | {note} | {f1 / 1e9:.3f} | " + " | ".join(f"{100 * e:+.1f}" for e in errors) + " |")
-    for what, of in (("median", statistics.median), ("worst", max)):
-        print(f"| {what} | of the absolute values | | " + " | ".join(f"{100 * of(abs(r[3 + k]) for r in rows):.1f}" for k in range(len(FIDELITIES))) + " |")
-
-
-if __name__ == "__main__":
-    main()

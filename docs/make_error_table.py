@@ -1,0 +1,151 @@
+#!/usr/bin/env python3
+"""Writes the error tables of docs/theory.md and README.md: the library's fidelities against full-wave reference data.
+
+    make_error_table.py [FOLDER] [--check]
+
+FOLDER has cases.json and results.json, and where there are any capacitance.json and curves/ of the same reference set;
+without it: tests/data/axisym, which has the first two. Tables go between lines `<!-- table NAME: ... -->` and `<!-- end -->`; those whose data are not in FOLDER stay as they are.
+--check writes nothing and fails where a table is stale. Needs the Python package.
+"""
+import csv
+import json
+import math
+import re
+import sys
+import warnings
+from pathlib import Path
+from statistics import median
+
+import libstub as ls
+
+ROOT = Path(__file__).resolve().parent.parent
+sys.path.insert(0, str(ROOT / "tests" / "reference"))
+sys.dont_write_bytecode = True
+from cells import via_of  # noqa: E402  a cell of the reference as a via of the library
+
+FIDELITIES = ("bulk", "loaded")
+
+
+def percent(value):
+    return f"{100 * value:+.1f}" if value is not None else "-"
+
+
+def summary(errors):
+    sizes = [abs(e) for e in errors]
+    return f"{100 * median(sizes):.1f} % | {100 * max(sizes):.0f} %"
+
+
+def notch_tables(cases, results):
+    """Cell by cell, and in short."""
+    rows, first, second, inside = [], {f: [] for f in FIDELITIES}, [], []
+    for case in cases:
+        ref = results[case["id"]]
+        via = via_of(case, ref["f1_Hz"])
+        cells = []
+        for fidelity in FIDELITIES:
+            model = via.model(fidelity=fidelity)
+            notches = model.notches(400e9)
+            error = notches[0].f / ref["f1_Hz"] - 1
+            first[fidelity].append(error)
+            cells.append(percent(error))
+        more = None
+        if len(ref["f_notch_Hz"]) > 1 and len(notches) > 1:
+            more = notches[1].f / ref["f_notch_Hz"][1] - 1
+            second.append(more)
+        in_range = notches[0].f <= model.line().f_range
+        if in_range:
+            inside.append(first["loaded"][-1])
+        rows.append(f"| {case['id']} | {case['note']} | {ref['L_m'] * 1e3:.2f} | {ref['f1_Hz'] / 1e9:.2f} | {cells[0]} | "
+                    f"{cells[1]}{'' if in_range else ' *'} | {percent(more)} |")
+    cells = ["| cell | | stub, mm | first notch, GHz | `bulk`, % | `loaded`, % | second notch, `loaded`, % |",
+             "|---|---|---|---|---|---|---|", *rows]
+    short = ["| first notch, 24 full-wave cells | median error | largest error |", "|---|---|---|",
+             f"| `bulk`: quarter wave in the laminate's Dk | {summary(first['bulk'])} |",
+             f"| `loaded`: loaded barrel (the default) | {summary(first['loaded'])} |"]
+    inner = ["| `loaded` | cells | median error | largest error |", "|---|---|---|---|",
+             f"| first notch within the stated range | {len(inside)} | {summary(inside)} |",
+             f"| first notch, all cells | {len(cases)} | {summary(first['loaded'])} |",
+             f"| second notch | {len(second)} | {summary(second)} |"]
+    return {"cells": cells, "short": short, "range": inner}
+
+
+def loss_at(folder, name, f):
+    """Loss at f by the reference curve, dB, linear between its points."""
+    rows = [[float(x) for x in row] for row in csv.reader(open(folder / "curves" / f"{name}.csv")) if row[0][0].isdigit()]
+    points = [(row[0], -20 * math.log10(math.hypot(row[5], row[6]))) for row in rows]
+    for (x0, y0), (x1, y1) in zip(points, points[1:]):
+        if x0 <= f <= x1:
+            return y0 + (y1 - y0) * (f - x0) / (x1 - x0)
+    raise ValueError(f"{name}: no curve at {f} Hz")
+
+
+def loss_table(cases, results, folder):
+    text = ["| loss added at half the first notch | median error | largest errors | reference |", "|---|---|---|---|"]
+    for fidelity in FIDELITIES:
+        errors, losses = [], []
+        for case in cases:
+            ref = results[case["id"]]
+            f = 0.5 * ref["f1_Hz"]
+            losses.append(loss_at(folder, case["id"], f))
+            errors.append(via_of(case, ref["f1_Hz"]).model(fidelity=fidelity).added_loss(f) - losses[-1])
+        text.append(f"| `{fidelity}` | {median(map(abs, errors)):.2f} dB | {min(errors):+.2f} to {max(errors):+.2f} dB | "
+                    f"{min(losses):.2f} to {max(losses):.2f} dB |")
+    return text
+
+
+def capacitance_table(entries):
+    """The sum of lstub_plate_capacitance for both planes, with the coaxial line in the plane, against electrostatics."""
+    errors = []
+    for e in entries:
+        cavity = 2 * ls.plate_capacitance(2 * e["a"], 2 * e["antipad"], e["h"], e["eps_z"], e["eps_rho"])
+        plane = ls.coax(2 * e["a"], 2 * e["antipad"], e["eps_rho"]).capacitance * e["t"]
+        errors.append((cavity + plane) / e["C_cell_F"] - 1)
+    return ["| capacitance per cavity cell | cells | smallest error | median error | largest error |", "|---|---|---|---|---|",
+            f"| via-plate sum and plane against electrostatic finite elements | {len(errors)} | {100 * min(errors):+.1f} % | "
+            f"{100 * median(errors):+.1f} % | {100 * max(errors):+.1f} % |"]
+
+
+def make_tables(folder):
+    cases = json.loads((folder / "cases.json").read_text())["cases"]
+    results = {r["id"]: r for r in json.loads((folder / "results.json").read_text())["results"]}
+    tables = notch_tables(cases, results)
+    if (folder / "curves").is_dir():
+        tables["loss"] = loss_table(cases, results, folder)
+    if (folder / "capacitance.json").exists():
+        tables["capacitance"] = capacitance_table(json.loads((folder / "capacitance.json").read_text())["results"])
+    return tables
+
+
+def fill(text, tables, found):
+    def replace(match):
+        found.add(match[2])
+        return match[1] + "\n".join(tables[match[2]]) + "\n" + match[3] if match[2] in tables else match[0]
+    return re.sub(r"(<!-- table (\w+):[^\n]*-->\n).*?(<!-- end -->)", replace, text, flags=re.S)
+
+
+def main(arguments):
+    check = "--check" in arguments
+    folders = [a for a in arguments if a != "--check"]
+    folder = Path(folders[0]) if folders else ROOT / "tests/data/axisym"
+    warnings.simplefilter("ignore", ls.RangeWarning)
+    tables, found, stale = make_tables(folder), set(), []
+    for name in ("README.md", "docs/theory.md"):
+        path = ROOT / name
+        old = path.read_text(encoding="utf-8")
+        new = fill(old, tables, found)
+        if new != old and check:
+            stale.append(name)
+        elif new != old:
+            path.write_text(new, encoding="utf-8")
+            print(f"wrote {name}")
+    missing = set(tables) - found
+    for name in stale:
+        print(f"{name}: a table is stale: run docs/make_error_table.py and commit what it writes")
+    for name in missing:
+        print(f"no page has a place for the table '{name}'")
+    print(f"{len(found & set(tables))} tables, {len(stale) + len(missing)} wrong")
+    return 1 if stale or missing else 0
+
+
+if __name__ == "__main__":
+    sys.exit(main(sys.argv[1:]))

@@ -113,7 +113,7 @@ function board:notices() end
 
 ---Plans the board: job i is hole i, with the signal and criteria that the rules give its net.
 ---@param rules? libstub.rules
----@param capability? libstub.capability default what the rules say
+---@param capability? libstub.capability default what the rules say; needed without rules
 ---@param options? libstub.model_options
 ---@return libstub.plan?, string? message, integer? code
 function board:plan(rules, capability, options) end

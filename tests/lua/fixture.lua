@@ -41,7 +41,9 @@ f.criteria = { notch_over_nyquist = 2, added_loss_db = 0.5 }
 f.capability = { depth_tolerance = ls.um(50), cut_clearance = ls.um(75), residual_min = ls.um(125),
   residual_target = ls.um(200), bit_oversize = ls.um(200), wall_clearance = ls.um(100), aspect_ratio = 12 }
 
--- ---- a small board file: two vias of a pair from TOP to IN1, two ground vias, a pin; no antipad on the plane ----
+-- ---- a small board file ----
+--
+-- Two vias of a pair from TOP to IN1, two ground vias, a pin, a hole that nothing connects to; no antipad anywhere.
 
 f.rules = [[
 signal LINK symbol_rate 40 GBd levels 2 notch_over_nyquist 2 added_loss 0.5 dB
@@ -66,6 +68,7 @@ local board_layers = {
 local holes = {
   { "TX_P", "VIA", "VIA", 0.25, 10, 10 }, { "TX_N", "VIA", "VIA", 0.25, 11, 10 },
   { "GND", "VIA", "VIA", 0.25, 10, 11 }, { "GND", "VIA", "VIA", 0.25, 11, 11 }, { "TX_P", "PLATED", "PRESS", 0.6, 20, 10 },
+  { "LONE", "VIA", "VIA", 0.25, 30, 10, alone = true },
 }
 
 function f.board_xml()
@@ -90,6 +93,7 @@ function f.board_xml()
   for _, layer in ipairs { "TOP", "IN1" } do
     line('<LayerFeature layerRef="%s">', layer)
     for _, h in ipairs(holes) do
+      if h.alone then break end    -- the last one
       line('<Set net="%s"><Features><Location x="0" y="0"/><Polyline><PolyBegin x="%g" y="%g"/><PolyStepSegment x="%g" y="%g"/><LineDescRef id="W"/></Polyline></Features></Set>',
         h[1], h[5], h[6], h[5] + 0.3, h[6] - 0.4)
       line('<Set net="%s" padUsage="VIA"><Pad><Location x="%g" y="%g"/><StandardPrimitiveRef id="C"/></Pad></Set>', h[1], h[5], h[6])

@@ -11,8 +11,8 @@ local rules = assert(ls.rules_parse(fixture.rules))
 local fractions = {}
 local board = assert(ls.board_load(path, { rules = rules, progress = function(fraction) fractions[#fractions + 1] = fraction end }))
 t.equal(board:name(), "SPARROW")
-t.equal(board:hole_count(), 5)
-t.equal(tostring(board), "libstub.board 'SPARROW': 5 holes")
+t.equal(board:hole_count(), 6)
+t.equal(tostring(board), "libstub.board 'SPARROW': 6 holes")
 t.check(#fractions > 0)
 for i, fraction in ipairs(fractions) do
   t.check(fraction >= 0 and fraction <= 1 and (i == 1 or fraction >= fractions[i - 1]))
@@ -27,7 +27,7 @@ t.close(stackup:layer("D3").in_plane_ratio, 1.1, 1e-15)
 
 -- Holes: numbers from 1, names of layers, what is absent.
 local holes = board:holes()
-t.equal(#holes, 5)
+t.equal(#holes, 6)
 for i, hole in ipairs(holes) do
   local again = board:hole(i)
   for key, value in pairs(hole) do t.equal(again[key], value, key) end
@@ -60,6 +60,27 @@ t.close(via:stubs()[1].length, 1.235e-3, 1e-9)
 t.check(assert(via:model()):notches(ls.ghz(100))[1].f > 1e9)
 t.equal(board:via(5):options().pin.length, 1e-3)
 
+-- A hole that is no via says why; it does not stop a batch or a plan.
+t.equal(holes[6].status, ls.E_ARGUMENT)
+local lone = assert(board:via(6))
+t.fails("connects", ls.E_ARGUMENT, lone:check())
+t.fails("connects", ls.E_ARGUMENT, lone:stubs())
+t.fails("connects", ls.E_ARGUMENT, lone:model())
+t.equal(#lone:options().connects, 0)
+t.fails("connects", ls.E_ARGUMENT, ls.via(stackup, lone:options()))
+do
+  local batch, message, code = ls.first_notch_batch(stackup, { via, lone, via })
+  t.equal(code, ls.E_ARGUMENT)
+  t.check(message:find("item 2", 1, true) and message:find("connects", 1, true), message)
+  t.check(batch.f1[1] == batch.f1[3] and batch.f1[2] ~= batch.f1[2] and batch.status[2] == ls.E_ARGUMENT)
+  local made = assert(ls.plan(stackup, { { via = lone, signal = fixture.signal, criteria = fixture.criteria },
+    { via = via, signal = fixture.signal, criteria = fixture.criteria } }, fixture.capability))
+  t.equal(made:decision(1).action, "refused")
+  t.equal(made:decision(1).status, ls.E_ARGUMENT)
+  t.check(made:reason(1):find("connects", 1, true), made:reason(1))
+  t.check(made:decision(2).action ~= "refused")
+end
+
 -- Notices: whatever was settled by a rule.
 local notices = board:notices()
 t.equal(#notices, board:notice_count())
@@ -73,7 +94,7 @@ t.fails("notice " .. #notices + 1, ls.E_NONE, board:notice(#notices + 1))
 
 -- The plan, and what is written.
 local plan = assert(board:plan(rules))
-t.equal(#plan, 5)
+t.equal(#plan, 6)
 t.equal(plan:decision(1).action, "drill_bottom")
 t.equal(plan:decision(1).bottom.must_not_cut, "IN1")
 t.equal(plan:decision(3).action, "not_judged")
@@ -81,19 +102,19 @@ t.check(board:summary(plan):find("SPARROW", 1, true))
 local out = os.tmpname()
 t.equal(board:write_plan_csv(plan, out), true)
 local rows = select(2, t.read(out):gsub("\n", "\n"))
-t.check(rows >= 6, rows .. " lines")
+t.check(rows >= 7, rows .. " lines")
 t.equal(board:write_drill_csv(plan, out), true)
 t.check(t.read(out):find("IN1", 1, true))
 t.equal(board:write(plan, out), true)
 t.check(t.read(out):find("MUST_NOT_CUT_LAYER", 1, true))
 local again = assert(ls.board_load(out, { rules = rules }))
-t.equal(again:hole_count(), 5)
+t.equal(again:hole_count(), 6)
 again:close()
 
 -- Another capability, other options, no rules at all.
 t.equal(board:plan(rules, { sides = "top" }):decision(1).action, "cannot")
 t.check(board:plan(rules, nil, { fidelity = "bulk" }):decision(1).before.f1 > plan:decision(1).before.f1)
-t.equal(board:plan(nil, fixture.capability):totals().not_judged, 5)
+t.equal(board:plan(nil, fixture.capability):totals().not_judged, 6)
 t.check(ls.board_load(path):notice_count() > 0)
 
 -- Files that cannot be written: what stood there still stands.
@@ -113,14 +134,15 @@ t.fails("SPARROW_5", ls.E_NONE, ls.board_load(path, { stackup = "SPARROW_5" }))
 t.check(ls.board_load(path, { stackup = "SPARROW_4" }))
 
 -- Wrong calls.
-t.fails("hole 6: must be 1 to 5", ls.E_NONE, board:hole(6))
-t.fails("hole 0: must be 1 to 5", ls.E_NONE, board:via(0))
+t.fails("hole 7: must be 1 to 6", ls.E_NONE, board:hole(7))
+t.fails("hole 0: must be 1 to 6", ls.E_NONE, board:via(0))
 t.raises("unknown key 'rule'; allowed: rules, stackup, progress", ls.board_load, path, { rule = rules })
 t.raises("rules: libstub.rules expected, got string", ls.board_load, path, { rules = "r.txt" })
 t.raises("stackup: string expected, got libstub.stackup", ls.board_load, path, { stackup = stackup })
 t.raises("progress: function expected, got number", ls.board_load, path, { progress = 1 })
 t.raises("string expected, got no value", ls.board_load)
 t.raises("libstub.rules expected, got string", board.plan, board, "rules")
+t.raises("capability expected where there are no rules", board.plan, board)
 t.raises("libstub.plan expected, got nil", board.summary, board, nil)
 t.raises("string expected, got no value", board.write, board, plan)
 

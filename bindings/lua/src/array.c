@@ -70,7 +70,7 @@ int lslua_array_new(lua_State *L)
     double *to;
     lslua_most(L, 1);
     if (lua_type(L, 1) == LUA_TNUMBER) {
-        lua_Integer n = luaL_checkinteger(L, 1);
+        lua_Integer n = lslua_whole(L, 1);
         luaL_argcheck(L, n >= 0, 1, "count must be >= 0");
         lslua_push_array(L, LSLUA_ARRAY, (size_t)n);
         return 1;
@@ -94,7 +94,7 @@ int lslua_linspace(lua_State *L)
     luaL_checktype(L, 2, LUA_TNUMBER);
     first = (double)lua_tonumber(L, 1);
     last = (double)lua_tonumber(L, 2);
-    count = luaL_checkinteger(L, 3);
+    count = lslua_whole(L, 3);
     luaL_argcheck(L, count >= 1, 3, "count must be >= 1");
     value = lslua_push_array(L, LSLUA_ARRAY, (size_t)count);
     step = count > 1 ? (last - first) / (double)(count - 1) : 0.0;
@@ -135,7 +135,7 @@ static int array_index(lua_State *L)
 static int array_set(lua_State *L)
 {
     array *a = luaL_checkudata(L, 1, LSLUA_ARRAY);
-    lua_Integer i = luaL_checkinteger(L, 2);
+    lua_Integer i = lslua_whole(L, 2);
     if (i < 1 || (lua_Unsigned)i > a->count)
         return luaL_error(L, "index %I: must be 1 to %I", (LUAI_UACINT)i, (LUAI_UACINT)a->count);
     if (lua_type(L, 3) != LUA_TNUMBER)
@@ -173,7 +173,7 @@ static double part_db(const double *z) { return 20.0 * log10(hypot(z[0], z[1]));
 
 static const double *pair_at(lua_State *L, const array *a, int arg)
 {
-    lua_Integer i = luaL_checkinteger(L, arg);
+    lua_Integer i = lslua_whole(L, arg);
     if (i < 1 || (lua_Unsigned)i > a->count)
         luaL_argerror(L, arg, lua_pushfstring(L, "index %I: must be 1 to %I", (LUAI_UACINT)i, (LUAI_UACINT)a->count));
     return a->value + 2 * (i - 1);

@@ -294,6 +294,8 @@ static int board_plan(lua_State *L)
     own = !lua_isnil(L, 3);
     if (given)
         lslua_handle(L, 2, 2, LSLUA_RULES);
+    else if (!own)
+        luaL_argerror(L, 3, "capability expected where there are no rules");
     lslua_model_argument(L, 4, &options);
     if (own)
         lslua_read_capability(L, 3, &capability);

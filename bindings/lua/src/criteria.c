@@ -7,7 +7,7 @@ static const char *const signal_keys[] = {"symbol_rate", "levels", NULL};
 static const char *const criteria_keys[] = {"notch_over_nyquist", "added_loss_db", NULL};
 static const char *const longest_keys[] = {"side", "fidelity", "z_ref", NULL};
 
-const lslua_word lslua_limits[] = {
+static const lslua_word limits[] = {
     {"none", LSTUB_LIMIT_NONE}, {"notch", LSTUB_LIMIT_NOTCH}, {"loss", LSTUB_LIMIT_LOSS}, {NULL, 0}
 };
 
@@ -49,7 +49,7 @@ void lslua_push_margin(lua_State *L, const lstub_margin *margin)
 {
     lua_createtable(L, 0, 11);
     lslua_set_boolean(L, "pass", margin->pass);
-    lslua_set_string(L, "limited_by", lslua_word_of(lslua_limits, margin->limited_by));
+    lslua_set_string(L, "limited_by", lslua_word_of(limits, margin->limited_by));
     lslua_set_number(L, "nyquist", margin->nyquist);
     lslua_set_number(L, "f1", margin->f1);
     lslua_set_number(L, "notch_over_nyquist", margin->notch_over_nyquist);
@@ -64,7 +64,7 @@ void lslua_push_margin(lua_State *L, const lstub_margin *margin)
 static void push_limit(lua_State *L, const lstub_stub_limit *limit)
 {
     lua_createtable(L, 0, 4);
-    lslua_set_string(L, "limited_by", lslua_word_of(lslua_limits, limit->limited_by));
+    lslua_set_string(L, "limited_by", lslua_word_of(limits, limit->limited_by));
     lslua_set_number(L, "length", limit->length);
     lslua_set_number(L, "stub_length", limit->stub_length);
     lslua_set_number(L, "margin", limit->margin);
@@ -147,7 +147,7 @@ int lslua_highest_symbol_rate(lua_State *L)
     if (status < 0)
         return lslua_fail(L, status, &err);
     lua_pushnumber(L, rate);
-    lua_pushstring(L, lslua_word_of(lslua_limits, limited_by));
+    lua_pushstring(L, lslua_word_of(limits, limited_by));
     return lslua_done(L, 2, status, &err);
 }
 

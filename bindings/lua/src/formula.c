@@ -71,7 +71,7 @@ static void read_arguments(lua_State *L, const formula *f, double *in)
         luaL_checktype(L, i + 1, LUA_TNUMBER);
         in[i] = (double)lua_tonumber(L, i + 1);
         if (f->whole != NULL && strcmp(f->in[i], f->whole) == 0) {
-            lua_Integer n = luaL_checkinteger(L, i + 1);
+            lua_Integer n = lslua_whole(L, i + 1);
             luaL_argcheck(L, n >= INT32_MIN && n <= INT32_MAX, i + 1, "number has no 32-bit integer representation");
             in[i] = (double)n;
         }

@@ -47,7 +47,7 @@ static void release(void *user, void *memory)
 void *lslua_scratch(lua_State *L, size_t count, size_t size)
 {
     void *memory;
-    if (count > (size_t)INT_MAX || count * size > (size_t)-1 / 4)
+    if (count > (size_t)INT_MAX || count > (size_t)-1 / 4 / size)
         luaL_error(L, "not enough memory");
     memory = lua_newuserdatauv(L, count * size, 0);
     memset(memory, 0, count * size);

@@ -106,6 +106,8 @@ const char *lslua_text(const lslua_at *at, const char *key, int index);
 const char *lslua_path(lua_State *L, int arg);
 int32_t lslua_word_at(const lslua_at *at, const char *key, const lslua_word *words, int index);
 const char *lslua_word_of(const lslua_word *words, int32_t value);
+/* The integer at argument `arg`; a string is none. */
+lua_Integer lslua_whole(lua_State *L, int arg);
 /* A number counted from 1 at argument `arg`, as an index from 0; 0 and a filled err if beyond count. */
 int lslua_item(lua_State *L, int arg, const char *what, int64_t count, int64_t *index, lstub_error *err);
 
@@ -162,14 +164,12 @@ lstub_via *lslua_vias(lua_State *L, int arg, int stackup, size_t *count);
 void lslua_open_model(lua_State *L);
 int lslua_via_model(lua_State *L);
 void lslua_model_options(const lslua_at *at, lstub_model_options *options);
-extern const char *const lslua_model_keys[];
 /* Options of the model at argument `arg`, which may be none. */
 void lslua_model_argument(lua_State *L, int arg, lstub_model_options *options);
 int lslua_first_notch_batch(lua_State *L);
 
 /* ---- criteria.c ---- */
 
-extern const lslua_word lslua_limits[];
 void lslua_read_signal(const lslua_at *at, lstub_signal *signal);
 void lslua_read_criteria(const lslua_at *at, lstub_criteria *criteria);
 void lslua_push_signal(lua_State *L, const lstub_signal *signal);

@@ -9,7 +9,7 @@ static const lslua_word fidelities[] = {
     {"default", LSTUB_FIDELITY_DEFAULT}, {"bulk", LSTUB_FIDELITY_BULK}, {"loaded", LSTUB_FIDELITY_LOADED}, {NULL, 0}
 };
 
-const char *const lslua_model_keys[] = {"fidelity", "z_ref", NULL};
+static const char *const model_keys[] = {"fidelity", "z_ref", NULL};
 static const char *const stub_keys[] = {"stub", NULL};
 
 void lslua_model_options(const lslua_at *at, lstub_model_options *options)
@@ -22,7 +22,7 @@ void lslua_model_argument(lua_State *L, int arg, lstub_model_options *options)
 {
     LSTUB_INIT(*options);
     if (!lua_isnoneornil(L, arg)) {
-        lslua_at at = lslua_options(L, arg, lslua_model_keys);
+        lslua_at at = lslua_options(L, arg, model_keys);
         lslua_model_options(&at, options);
     }
 }

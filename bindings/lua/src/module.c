@@ -24,7 +24,7 @@ static int model_revision(lua_State *L)
 
 static int status_name(lua_State *L)
 {
-    lua_Integer status = luaL_checkinteger(L, 1);
+    lua_Integer status = lslua_whole(L, 1);
     lslua_most(L, 1);
     luaL_argcheck(L, status >= INT32_MIN && status <= INT32_MAX, 1, "not a status");
     lua_pushstring(L, lstub_status_name((int32_t)status));

@@ -217,9 +217,15 @@ const char *lslua_path(lua_State *L, int arg)
     return lslua_text(&at, NULL, arg);
 }
 
+lua_Integer lslua_whole(lua_State *L, int arg)
+{
+    luaL_checktype(L, arg, LUA_TNUMBER);
+    return luaL_checkinteger(L, arg);
+}
+
 int lslua_item(lua_State *L, int arg, const char *what, int64_t count, int64_t *index, lstub_error *err)
 {
-    lua_Integer n = luaL_checkinteger(L, arg);
+    lua_Integer n = lslua_whole(L, arg);
     if (n >= 1 && n <= (lua_Integer)count) {
         *index = n - 1;
         return 1;

@@ -271,7 +271,7 @@ int lslua_via_new(lua_State *L)
 static const void *copy_array(lua_State *L, int via, int value, const void *from, size_t count, size_t size)
 {
     void *to;
-    if (count == 0)
+    if (count == 0 || from == NULL)
         return NULL;
     to = new_array(L, via, value, count, size);
     memcpy(to, from, count * size);

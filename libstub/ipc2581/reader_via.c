@@ -176,7 +176,7 @@ static void find_antipads(reader *r, draft *d)
 
 /* ---- into the via ------------------------------------------------------------------------------ */
 
-/* The value that comes most often among those that count, the first of equals. */
+/* The value above 0 that comes most often among those that count, the first of equals; 0: there is none. */
 static double usual(const double *value, const unsigned char *counts, int32_t from, int32_t to)
 {
     double best = 0.0;
@@ -185,7 +185,7 @@ static double usual(const double *value, const unsigned char *counts, int32_t fr
         int32_t n = 0;
         for (int32_t j = from; j < to; j++)
             n += counts[j] && value[j] == value[i];
-        if (counts[i] && n > most) {
+        if (counts[i] && value[i] > 0.0 && n > most) {
             most = n;
             best = value[i];
         }

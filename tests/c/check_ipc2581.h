@@ -90,7 +90,7 @@ static inline void write_text(FILE *file, const char *text, const test_xml *b)
         if (*text == '>') {
             fputs(">\n", file);            /* an element a line: lines can be told in messages */
         } else if (*text == '{' || (*text == '[' && text[1] >= '0' && text[1] <= '9')) {
-            fprintf(file, "%.12g", strtod(text + 1, &end) / unit_of(units));
+            fprintf(file, "%.15g", strtod(text + 1, &end) / unit_of(units));
             text = end;
         } else {
             fputc(*text, file);

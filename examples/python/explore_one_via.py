@@ -60,7 +60,9 @@ for m in (bulk, model):
     print(f"{line.fidelity:7s} Dk {line.dk_effective:5.2f}, {line.impedance:5.1f} ohm, "
           f"notches at {', '.join(f'{n.f / 1e9:.1f}' for n in m.notches(up_to=ls.ghz(67)))} GHz, "
           f"stated error {100 * line.stated_error:.0f} %")
-print(model.margin(link, criteria))
+margin = model.margin(link, criteria)
+print(f"{'passes' if margin.passes else 'fails'}: first notch at {margin.notch_over_nyquist:.2f} x Nyquist, "
+      f"{criteria.notch_over_nyquist} wanted; {margin.added_loss_db:.2f} dB at Nyquist, {criteria.added_loss_db} allowed")
 
 # %% [markdown]
 # ## Input impedance

@@ -1,6 +1,7 @@
 """Which routing layers need no drilling: for three stackups and six data rates a through via from L1 to each.
 
-    python stackup_sweep.py [OUTDIR]        with OUTDIR also a heat map there, stackup_sweep.png; needs Matplotlib
+Prints tables. Where Matplotlib is there it also draws a heat map, stackup_sweep.png, into the folder named by LSTUB_OUT,
+else into `out`.
 """
 
 import os
@@ -35,11 +36,14 @@ def show(name, layers, margins):
         print(row)
 
 
-def draw(results, path):
+def draw(results, folder):
     """A heat map of the first notch over Nyquist, and what has to be drilled."""
-    import matplotlib.pyplot as plt
-    from matplotlib.colors import LogNorm
-
+    try:
+        import matplotlib.pyplot as plt
+        from matplotlib.colors import LogNorm
+    except ImportError:
+        print("no heat map: Matplotlib is not installed", file=sys.stderr)
+        return
     figure, axes = plt.subplots(1, len(results), figsize=(14, 7), layout="constrained")
     for axis, (name, (layers, margins)) in zip(axes, results.items()):
         ratio = [[min(m.notch_over_nyquist[i], 20.0) for m in margins] for i in range(len(layers))]
@@ -60,8 +64,11 @@ def draw(results, path):
     bar.set_label("first notch over Nyquist; at least 2 is asked, and at most 0.5 dB more loss at Nyquist")
     figure.suptitle("Which routing layers need no drilling: through vias, model estimate (~ outside its stated range), "
                     "invented stackups")
+    os.makedirs(folder, exist_ok=True)
+    path = os.path.join(folder, "stackup_sweep.png")
     figure.savefig(path, dpi=120)
     plt.close(figure)
+    print("saved", path, file=sys.stderr)
 
 
 def main():
@@ -72,9 +79,7 @@ def main():
     results = {name: sweep(name) for name in STACKUPS}
     for name, (layers, margins) in results.items():
         show(name, layers, margins)
-    if len(sys.argv) > 1:
-        os.makedirs(sys.argv[1], exist_ok=True)
-        draw(results, os.path.join(sys.argv[1], "stackup_sweep.png"))
+    draw(results, os.environ.get("LSTUB_OUT", "out"))
 
 
 if __name__ == "__main__":

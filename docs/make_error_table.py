@@ -3,9 +3,8 @@
 
     make_error_table.py [FOLDER] [--check]
 
-FOLDER has cases.json and results.json, and where there are any capacitance.json and curves/ of the same reference set;
-without it: tests/data/axisym, which has the first two. Tables go between lines `<!-- table NAME: ... -->` and `<!-- end -->`; those whose data are not in FOLDER stay as they are.
---check writes nothing and fails where a table is stale. Needs the Python package.
+FOLDER has cases.json, results.json, capacitance.json and curves/; without it: tests/data/axisym. Tables go between lines
+`<!-- table NAME: ... -->` and `<!-- end -->`. --check writes nothing and fails where a table is stale. Needs the Python package.
 """
 import csv
 import json
@@ -108,18 +107,14 @@ def capacitance_table(entries):
 def make_tables(folder):
     cases = json.loads((folder / "cases.json").read_text())["cases"]
     results = {r["id"]: r for r in json.loads((folder / "results.json").read_text())["results"]}
-    tables = notch_tables(cases, results)
-    if (folder / "curves").is_dir():
-        tables["loss"] = loss_table(cases, results, folder)
-    if (folder / "capacitance.json").exists():
-        tables["capacitance"] = capacitance_table(json.loads((folder / "capacitance.json").read_text())["results"])
-    return tables
+    capacitances = json.loads((folder / "capacitance.json").read_text())["results"]
+    return {**notch_tables(cases, results), "loss": loss_table(cases, results, folder), "capacitance": capacitance_table(capacitances)}
 
 
 def fill(text, tables, found):
     def replace(match):
         found.add(match[2])
-        return match[1] + "\n".join(tables[match[2]]) + "\n" + match[3] if match[2] in tables else match[0]
+        return match[1] + "\n".join(tables.get(match[2], ["no such table"])) + "\n" + match[3]
     return re.sub(r"(<!-- table (\w+):[^\n]*-->\n).*?(<!-- end -->)", replace, text, flags=re.S)
 
 

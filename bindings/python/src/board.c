@@ -41,7 +41,7 @@ static PyObject *rules_parse(PyObject *module, PyObject *args)
     return rules_end(core_of(module), status, &err, rules);
 }
 
-static PyObject *rules_signal(core_state *state, const lstub_rules *rules, int32_t index)
+static PyObject *signal_item(core_state *state, const void *rules, size_t i)
 {
     const char *name = NULL;
     PyObject *text, *link, *wanted;
@@ -51,7 +51,7 @@ static PyObject *rules_signal(core_state *state, const lstub_rules *rules, int32
     LSTUB_INIT(signal);
     LSTUB_INIT(criteria);
     LSTUB_INIT(err);
-    if (core_done(state, lstub_rules_signal(rules, index, &name, &signal, &criteria, &err), &err, "Rules", 1, 1) < 0)
+    if (core_done(state, lstub_rules_signal(rules, (int32_t)i, &name, &signal, &criteria, &err), &err, "Rules", 1, 1) < 0)
         return NULL;
     text = core_text(name ? name : "");
     link = core_unpack(SHAPE_SIGNAL, &signal);
@@ -68,14 +68,7 @@ static PyObject *rules_signals(PyObject *module, PyObject *handle)
 {
     core_state *state = core_of(module);
     const lstub_rules *rules = core_handle_get(state, handle, HANDLE_RULES);
-    int32_t count = rules ? lstub_rules_signal_count(rules) : 0, i;
-    PyObject *tuple = rules ? PyTuple_New(count) : NULL;
-    for (i = 0; tuple != NULL && i < count; i++) {
-        PyObject *item = rules_signal(state, rules, i);
-        if (item == NULL || PyTuple_SetItem(tuple, i, item) < 0)
-            Py_CLEAR(tuple);
-    }
-    return tuple;
+    return rules == NULL ? NULL : core_tuple(state, rules, (size_t)lstub_rules_signal_count(rules), signal_item);
 }
 
 static PyObject *rules_match(PyObject *module, PyObject *args)
@@ -170,51 +163,40 @@ static PyObject *board_name(PyObject *module, PyObject *handle)
     return board == NULL ? NULL : core_text(name ? name : "");
 }
 
-static PyObject *board_hole(core_state *state, const lstub_board *board, size_t index)
+static PyObject *hole_item(core_state *state, const void *board, size_t i)
 {
     lstub_hole hole;
     lstub_error err;
     LSTUB_INIT(hole);
     LSTUB_INIT(err);
-    if (core_done(state, lstub_board_hole(board, index, &hole, &err), &err, "Board.holes", 1, 1) < 0)
+    if (core_done(state, lstub_board_hole(board, i, &hole, &err), &err, "Board.holes", 1, 1) < 0)
         return NULL;
     return core_unpack(SHAPE_HOLE, &hole);
 }
 
-static PyObject *board_notice(core_state *state, const lstub_board *board, size_t index)
+static PyObject *notice_item(core_state *state, const void *board, size_t i)
 {
     lstub_notice notice;
     lstub_error err;
     LSTUB_INIT(notice);
     LSTUB_INIT(err);
-    if (core_done(state, lstub_board_notice(board, index, &notice, &err), &err, "Board.notices", 1, 1) < 0)
+    if (core_done(state, lstub_board_notice(board, i, &notice, &err), &err, "Board.notices", 1, 1) < 0)
         return NULL;
     return core_unpack(SHAPE_NOTICE, &notice);
 }
 
-static PyObject *board_list(PyObject *module, PyObject *handle, size_t (*count)(const lstub_board *),
-                            PyObject *(*item)(core_state *, const lstub_board *, size_t))
+static PyObject *board_holes(PyObject *module, PyObject *handle)
 {
     core_state *state = core_of(module);
     const lstub_board *board = core_handle_get(state, handle, HANDLE_BOARD);
-    size_t n = board ? count(board) : 0, i;
-    PyObject *tuple = board ? PyTuple_New((Py_ssize_t)n) : NULL;
-    for (i = 0; tuple != NULL && i < n; i++) {
-        PyObject *value = item(state, board, i);
-        if (value == NULL || PyTuple_SetItem(tuple, (Py_ssize_t)i, value) < 0)
-            Py_CLEAR(tuple);
-    }
-    return tuple;
-}
-
-static PyObject *board_holes(PyObject *module, PyObject *handle)
-{
-    return board_list(module, handle, lstub_board_hole_count, board_hole);
+    return board == NULL ? NULL : core_tuple(state, board, lstub_board_hole_count(board), hole_item);
 }
 
 static PyObject *board_notices(PyObject *module, PyObject *handle)
 {
-    return board_list(module, handle, lstub_board_notice_count, board_notice);
+    core_state *state = core_of(module);
+    const lstub_board *board = core_handle_get(state, handle, HANDLE_BOARD);
+    return board == NULL ? NULL : core_tuple(state, board, lstub_board_notice_count(board), notice_item);
 }
 
 static PyObject *board_hole_count(PyObject *module, PyObject *handle)

@@ -63,6 +63,9 @@ typedef struct core_shape {
 const core_shape *core_shape_of(int shape);
 int core_shape_named(core_state *state, const char *name);           /* -1 with an exception            */
 PyObject *core_unpack(int shape, const void *data);                  /* a tuple in the order of the table */
+/* A tuple of what item(state, from, i) gives for each i; null with an exception where one gives null. */
+typedef PyObject *(*core_item)(core_state *state, const void *from, size_t i);
+PyObject *core_tuple(core_state *state, const void *from, size_t count, core_item item);
 /* Writes a column per member of count structs into writable buffers, one per member of the table. */
 int core_columns(core_state *state, int shape, const void *data, size_t count, PyObject *columns);
 

@@ -63,22 +63,20 @@ static PyObject *stackup_create(PyObject *module, PyObject *layers)
     return done < 0 ? NULL : core_handle_new(state, HANDLE_STACKUP, stackup);
 }
 
+static PyObject *layer_item(core_state *state, const void *stackup, size_t i)
+{
+    lstub_layer layer;
+    lstub_error err;
+    LSTUB_INIT(layer);
+    LSTUB_INIT(err);
+    if (core_done(state, lstub_stackup_layer(stackup, (int32_t)i, &layer, &err), &err, "Stackup.layers", 1, 1) < 0)
+        return NULL;
+    return core_unpack(SHAPE_LAYER, &layer);
+}
+
 static PyObject *layers_of(core_state *state, const lstub_stackup *stackup)
 {
-    int32_t count = lstub_stackup_count(stackup), i;
-    PyObject *tuple = PyTuple_New(count);
-    for (i = 0; tuple != NULL && i < count; i++) {
-        PyObject *item = NULL;
-        lstub_layer layer;
-        lstub_error err;
-        LSTUB_INIT(layer);
-        LSTUB_INIT(err);
-        if (core_done(state, lstub_stackup_layer(stackup, i, &layer, &err), &err, "Stackup.layers", 1, 1) == 0)
-            item = core_unpack(SHAPE_LAYER, &layer);
-        if (item == NULL || PyTuple_SetItem(tuple, i, item) < 0)
-            Py_CLEAR(tuple);
-    }
-    return tuple;
+    return core_tuple(state, stackup, (size_t)lstub_stackup_count(stackup), layer_item);
 }
 
 static PyObject *stackup_layers(PyObject *module, PyObject *handle)
@@ -112,22 +110,23 @@ static PyObject *stackup_find(PyObject *module, PyObject *args)
     return PyLong_FromLong(index);
 }
 
+static PyObject *copper_item(core_state *state, const void *stackup, size_t i)
+{
+    int32_t index = -1;
+    lstub_error err;
+    LSTUB_INIT(err);
+    if (core_done(state, lstub_stackup_copper(stackup, (int32_t)i, &index, &err), &err, "Stackup.copper", 1, 1) < 0)
+        return NULL;
+    return PyLong_FromLong(index);
+}
+
 static PyObject *stackup_copper(PyObject *module, PyObject *handle)
 {
     core_state *state = core_of(module);
     const lstub_stackup *stackup = core_handle_get(state, handle, HANDLE_STACKUP);
-    int32_t count = stackup ? lstub_stackup_copper_count(stackup) : 0, i, index = -1;
-    PyObject *tuple = stackup ? PyTuple_New(count) : NULL;
-    for (i = 0; tuple != NULL && i < count; i++) {
-        PyObject *item = NULL;
-        lstub_error err;
-        LSTUB_INIT(err);
-        if (core_done(state, lstub_stackup_copper(stackup, i, &index, &err), &err, "Stackup.copper", 1, 1) == 0)
-            item = PyLong_FromLong(index);
-        if (item == NULL || PyTuple_SetItem(tuple, i, item) < 0)
-            Py_CLEAR(tuple);
-    }
-    return tuple;
+    if (stackup == NULL)
+        return NULL;
+    return core_tuple(state, stackup, (size_t)lstub_stackup_copper_count(stackup), copper_item);
 }
 
 static PyObject *stackup_depth(PyObject *module, PyObject *args)
@@ -192,14 +191,19 @@ static PyObject *via_check(PyObject *module, PyObject *args)
     Py_RETURN_NONE;
 }
 
+static PyObject *stub_item(core_state *state, const void *stubs, size_t i)
+{
+    (void)state;
+    return core_unpack(SHAPE_STUB, (const lstub_stub *)stubs + i);
+}
+
 static PyObject *via_stubs(PyObject *module, PyObject *args)
 {
     core_state *state = core_of(module);
     const lstub_stackup *stackup;
     const lstub_via *via;
     lstub_stub stubs[2];
-    int32_t count = 0, i;
-    PyObject *tuple;
+    int32_t count = 0;
     lstub_error err;
     LSTUB_INIT(err);
     LSTUB_INIT(stubs[0]);
@@ -207,13 +211,7 @@ static PyObject *via_stubs(PyObject *module, PyObject *args)
     if (take_via(state, args, &stackup, &via) < 0 ||
         core_done(state, lstub_via_stubs(stackup, via, stubs, sizeof stubs[0], &count, &err), &err, "Via.stubs", 1, 1) < 0)
         return NULL;
-    tuple = PyTuple_New(count);
-    for (i = 0; tuple != NULL && i < count; i++) {
-        PyObject *item = core_unpack(SHAPE_STUB, &stubs[i]);
-        if (item == NULL || PyTuple_SetItem(tuple, i, item) < 0)
-            Py_CLEAR(tuple);
-    }
-    return tuple;
+    return core_tuple(state, stubs, (size_t)count, stub_item);
 }
 
 PyMethodDef core_geometry_methods[] = {

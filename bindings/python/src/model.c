@@ -30,24 +30,22 @@ static PyObject *model_create(PyObject *module, PyObject *args)
     return core_handle_new(state, HANDLE_MODEL, model);
 }
 
+static PyObject *stub_item(core_state *state, const void *model, size_t i)
+{
+    lstub_stub stub;
+    lstub_error err;
+    LSTUB_INIT(stub);
+    LSTUB_INIT(err);
+    if (core_done(state, lstub_model_stub(model, (int32_t)i, &stub, &err), &err, "Model.stubs", 1, 1) < 0)
+        return NULL;
+    return core_unpack(SHAPE_STUB, &stub);
+}
+
 static PyObject *model_stubs(PyObject *module, PyObject *handle)
 {
     core_state *state = core_of(module);
     const lstub_model *model = core_handle_get(state, handle, HANDLE_MODEL);
-    int32_t count = model ? lstub_model_stub_count(model) : 0, i;
-    PyObject *tuple = model ? PyTuple_New(count) : NULL;
-    for (i = 0; tuple != NULL && i < count; i++) {
-        PyObject *item = NULL;
-        lstub_stub stub;
-        lstub_error err;
-        LSTUB_INIT(stub);
-        LSTUB_INIT(err);
-        if (core_done(state, lstub_model_stub(model, i, &stub, &err), &err, "Model.stubs", 1, 1) == 0)
-            item = core_unpack(SHAPE_STUB, &stub);
-        if (item == NULL || PyTuple_SetItem(tuple, i, item) < 0)
-            Py_CLEAR(tuple);
-    }
-    return tuple;
+    return model == NULL ? NULL : core_tuple(state, model, (size_t)lstub_model_stub_count(model), stub_item);
 }
 
 static PyObject *model_line(PyObject *module, PyObject *args)
@@ -133,16 +131,10 @@ static PyObject *model_added_loss(PyObject *module, PyObject *args)
 
 /* ---- notches ------------------------------------------------------------------------------------- */
 
-static PyObject *notch_tuple(const lstub_notch *notches, size_t count)
+static PyObject *notch_item(core_state *state, const void *notches, size_t i)
 {
-    PyObject *tuple = PyTuple_New((Py_ssize_t)count);
-    size_t i;
-    for (i = 0; tuple != NULL && i < count; i++) {
-        PyObject *item = core_unpack(SHAPE_NOTCH, &notches[i]);
-        if (item == NULL || PyTuple_SetItem(tuple, (Py_ssize_t)i, item) < 0)
-            Py_CLEAR(tuple);
-    }
-    return tuple;
+    (void)state;
+    return core_unpack(SHAPE_NOTCH, (const lstub_notch *)notches + i);
 }
 
 /* model_notches(model, stub, f_max, most) -> at most `most` notches, the lowest */
@@ -176,7 +168,7 @@ static PyObject *model_notches(PyObject *module, PyObject *args)
         Py_END_ALLOW_THREADS
     } while (status == LSTUB_W_CAPACITY && capacity < (size_t)most && count > capacity);
     if (core_done(state, status, &err, "Model.notches", 1, 1) == 0)
-        tuple = notch_tuple(notches, count < capacity ? count : capacity);
+        tuple = core_tuple(state, notches, count < capacity ? count : capacity, notch_item);
     PyMem_Free(notches);
     return tuple;
 }

@@ -76,24 +76,22 @@ static PyObject *plan_reason(PyObject *module, PyObject *args)
     return core_text(text);
 }
 
+static PyObject *group_item(core_state *state, const void *plan, size_t i)
+{
+    lstub_drill_group group;
+    lstub_error err;
+    LSTUB_INIT(group);
+    LSTUB_INIT(err);
+    if (core_done(state, lstub_plan_group(plan, (int32_t)i, &group, &err), &err, "Plan.groups", 1, 1) < 0)
+        return NULL;
+    return core_unpack(SHAPE_GROUP, &group);
+}
+
 static PyObject *plan_groups(PyObject *module, PyObject *handle)
 {
     core_state *state = core_of(module);
     const lstub_plan *plan = core_handle_get(state, handle, HANDLE_PLAN);
-    int32_t count = plan ? lstub_plan_group_count(plan) : 0, i;
-    PyObject *tuple = plan ? PyTuple_New(count) : NULL;
-    for (i = 0; tuple != NULL && i < count; i++) {
-        PyObject *item = NULL;
-        lstub_drill_group group;
-        lstub_error err;
-        LSTUB_INIT(group);
-        LSTUB_INIT(err);
-        if (core_done(state, lstub_plan_group(plan, i, &group, &err), &err, "Plan.groups", 1, 1) == 0)
-            item = core_unpack(SHAPE_GROUP, &group);
-        if (item == NULL || PyTuple_SetItem(tuple, i, item) < 0)
-            Py_CLEAR(tuple);
-    }
-    return tuple;
+    return plan == NULL ? NULL : core_tuple(state, plan, (size_t)lstub_plan_group_count(plan), group_item);
 }
 
 static PyObject *plan_totals(PyObject *module, PyObject *handle)

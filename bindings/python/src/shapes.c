@@ -228,6 +228,18 @@ PyObject *core_unpack(int shape, const void *data)
     return tuple;
 }
 
+PyObject *core_tuple(core_state *state, const void *from, size_t count, core_item item)
+{
+    PyObject *tuple = PyTuple_New((Py_ssize_t)count);
+    size_t i;
+    for (i = 0; tuple != NULL && i < count; i++) {
+        PyObject *value = item(state, from, i);
+        if (value == NULL || PyTuple_SetItem(tuple, (Py_ssize_t)i, value) < 0)
+            Py_CLEAR(tuple);
+    }
+    return tuple;
+}
+
 int core_columns(core_state *state, int shape, const void *data, size_t count, PyObject *columns)
 {
     const core_shape *table = &shapes[shape];

@@ -45,8 +45,10 @@ typedef struct scan {
     lstub__piece set_tag, set_blank, set_name;
     lstub__list  parts, kepts;
     int     header_depth, header_seen;
-    int64_t header_at;                   /* where Specs go in               */
-    lstub__piece header_blank, header_prefix;
+    int64_t header_at, layer_at;         /* where Specs and Layers go in    */
+    lstub__piece header_blank, header_prefix, layer_blank;
+    int     layers;                      /* whether Layers do               */
+    int     step_depth, step_seen;
 } scan;
 
 static const lstub__piece nothing = {0, 0};
@@ -215,8 +217,12 @@ static void edit_part(scan *s, size_t number, int64_t from, int64_t to)
 static void end_set(scan *s)
 {
     size_t i, count = s->parts.count;
-    const part *first = LSTUB__ITEM(s->parts, part, 0);
-    if (count > 1 || (count == 1 && (first->group[0] >= 0 || first->group[1] >= 0)))
+    int drilled = count > 1;
+    if (count == 1) {
+        const part *only = LSTUB__ITEM(s->parts, part, 0);
+        drilled = only->group[0] >= 0 || only->group[1] >= 0;
+    }
+    if (drilled)
         for (i = 0; i < count && s->xml.status >= 0; i++)
             edit_part(s, i, i == 0 ? 0 : LSTUB__ITEM(s->parts, part, i)->at,
                       i + 1 < count ? LSTUB__ITEM(s->parts, part, i + 1)->at : INT64_MAX);
@@ -321,8 +327,8 @@ static void start_header(scan *s)
         s->header_blank.bytes += keep(s, &s->text, "  ", 2).bytes;
 }
 
-/* The number of a Spec that is called like ours: ours get higher ones. */
-static void note_spec_name(scan *s, const char *name)
+/* The number of a Spec or Layer that is called like ours: ours get higher ones. */
+static void note_name(scan *s, const char *name)
 {
     size_t start = strlen(LSTUB__SPEC_BOTTOM), digits;
     int64_t number = 0;
@@ -335,6 +341,23 @@ static void note_spec_name(scan *s, const char *name)
         number = 10 * number + (name[start++] - '0');
     if (number > s->out->taken)
         s->out->taken = number;
+}
+
+static void add_place(scan *s, int kind, int64_t at, lstub__piece blank)
+{
+    lstub__edit *edit = add_edit(s, at);
+    if (edit == NULL)
+        return;
+    edit->kind = kind;
+    edit->blank = blank;
+    edit->prefix = s->header_prefix;
+}
+
+static void start_step(scan *s)
+{
+    s->step_seen = 1;
+    s->step_depth = s->xml.depth;
+    add_place(s, EDIT_LAYERS, s->layer_at, s->layer_blank);
 }
 
 static void on_start(lstub__xml *xml, int element, const char **attributes)
@@ -354,21 +377,14 @@ static void on_start(lstub__xml *xml, int element, const char **attributes)
         start_header(s);
     else if (element == EL_SPEC && s->header_depth > 0 && xml->depth == s->header_depth + 1)
         s->header_blank = keep_blank(s, &s->text);
-    if (element == EL_SPEC)
-        note_spec_name(s, lstub__xml_text(attributes, "name"));
+    else if (element == EL_LAYER)
+        s->layer_blank = keep_blank(s, &s->text);
+    else if (element == EL_STEP && s->layers && !s->step_seen && lstub__xml_is(attributes, "name", s->board->step))
+        start_step(s);
+    if (element == EL_SPEC || element == EL_LAYER)
+        note_name(s, lstub__xml_text(attributes, "name"));
     s->blank_bytes = 0;
     s->blank_mixed = 0;
-}
-
-static void end_header(scan *s)
-{
-    lstub__edit *edit = add_edit(s, s->header_at);
-    s->header_depth = 0;
-    if (edit == NULL)
-        return;
-    edit->specs = 1;
-    edit->blank = s->header_blank;
-    edit->prefix = s->header_prefix;
 }
 
 static void on_end(lstub__xml *xml, int element)
@@ -384,7 +400,13 @@ static void on_end(lstub__xml *xml, int element)
     } else if (xml->depth == s->set_depth) {
         end_set(s);
     } else if (xml->depth == s->header_depth) {
-        end_header(s);
+        add_place(s, EDIT_SPECS, s->header_at, s->header_blank);
+        s->header_depth = 0;
+    } else if (xml->depth == s->step_depth) {
+        add_place(s, EDIT_HOLES, here(s), keep_blank(s, &s->text));
+        s->step_depth = 0;
+    } else if (element == EL_LAYER) {
+        s->layer_at = behind(s);
     } else if (element == EL_SPEC && s->header_depth > 0 && xml->depth == s->header_depth + 1) {
         s->header_at = behind(s);
     }
@@ -407,6 +429,9 @@ static int32_t finish(const scan *s, lstub_error *err)
     if (!s->header_seen)
         return lstub__fail(err, LSTUB_E_FORMAT, "board", -1, "'%s' has no <CadHeader>: no place for the back-drill Specs",
                            lstub__path_tail(s->board->path));
+    if (s->layers && (!s->step_seen || s->layer_at == 0))
+        return lstub__fail(err, LSTUB_E_FORMAT, "board", -1, "'%s' has no <Layer> before <Step> '%.40s': no place for a drill layer",
+                           lstub__path_tail(s->board->path), s->board->step);
     if (s->mark < s->last)
         return lstub__fail(err, LSTUB_E_FORMAT, "board", -1, "'%s' has no <Hole> number %ld: no place for its back-drill",
                            lstub__path_tail(s->board->path), (long)s->mark->ordinal);
@@ -414,7 +439,7 @@ static int32_t finish(const scan *s, lstub_error *err)
 }
 
 int32_t lstub__marking_make(lstub__marking *marking, const lstub_board *board, const lstub__mark *marks, size_t count,
-                            lstub_error *err)
+                            int layers, lstub_error *err)
 {
     const lstub_allocator *alloc = &board->alloc;
     scan s;
@@ -428,6 +453,7 @@ int32_t lstub__marking_make(lstub__marking *marking, const lstub_board *board, c
     s.out = marking;
     s.mark = marks;
     s.last = marks + count;
+    s.layers = layers;
     s.xml.start = on_start;
     s.xml.end = on_end;
     s.xml.user = &s;

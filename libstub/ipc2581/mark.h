@@ -16,30 +16,37 @@ typedef struct lstub__piece {
     size_t at, bytes;          /* in lstub__marking.text */
 } lstub__piece;
 
-/* Something to put in before byte `at` of the file: `raw`, then a SpecRef and `blank` for each group. */
+enum {
+    EDIT_REFS,                 /* `raw`, then a SpecRef and `blank` for each group                          */
+    EDIT_SPECS,                /* the Specs, each after `blank`                                             */
+    EDIT_LAYERS,               /* the drill layers for holes that have no Hole element, each after `blank`  */
+    EDIT_HOLES                 /* their features, each before `blank`                                       */
+};
+
+/* Something to put in before byte `at` of the file. */
 typedef struct lstub__edit {
     int64_t      at;
-    lstub__piece raw, blank, prefix;
+    int          kind;         /* EDIT_... */
     int32_t      group[2];
-    int          specs;        /* 1: in place of all that, the Specs, each after a blank line break of `blank` */
+    lstub__piece raw, blank, prefix;
 } lstub__edit;
 
 typedef struct lstub__marking {
     lstub__list edits;         /* of lstub__edit, in the order of the file */
     char   *text;
-    int64_t taken;             /* highest number of a Spec of the file that is called like ours */
+    int64_t taken;             /* highest number of a Spec or Layer of the file that is called like ours */
 } lstub__marking;
 
-/* The names of our Specs: this, the side, the number. */
+/* The names of our Specs, and of our drill layers: one of these and a number. */
 #define LSTUB__SPEC_BOTTOM "BACKDRILL_BOTTOM_"
 #define LSTUB__SPEC_TOP    "BACKDRILL_TOP_"
 
 /*
-** Finds the places, marks sorted by ordinal. LSTUB_E_FORMAT where the file is not the one the board was read from, or
+** Finds the places, marks sorted by ordinal; with `layers` those for drill layers too. LSTUB_E_FORMAT where the file is not the one the board was read from, or
 ** gives a Spec or a SpecRef no place. Release with lstub__marking_clear in any case.
 */
 int32_t lstub__marking_make(lstub__marking *marking, const lstub_board *board, const lstub__mark *marks, size_t count,
-                            lstub_error *err);
+                            int layers, lstub_error *err);
 void    lstub__marking_clear(lstub__marking *marking, const lstub_board *board);
 
 /* The error for a file that is not the one the board was read from. */

@@ -7,6 +7,7 @@
 #include "ipc2581/report.h"
 
 #include <errno.h>
+#include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -17,8 +18,10 @@
 /* ---- what is drilled ----------------------------------------------------------------------------- */
 
 typedef struct drills {
-    lstub__mark       *marks;
+    lstub__mark       *marks;        /* of holes with a Hole element: `count`, from the front                 */
     size_t             count;
+    lstub__mark       *loose;        /* of the others: `loose_count`, ordinal: number of the hole             */
+    size_t             loose_count;
     lstub_drill_group *groups;
     double            *drill;        /* widest hole of each group, m: its bit must not come out narrower */
     int32_t            group_count;
@@ -29,7 +32,7 @@ static int32_t mark_hole(const lstub_board *board, const lstub_plan *plan, size_
     const board_hole *hole = &board->holes[index];
     const lstub_drill_cut *cuts[2];
     lstub_decision decision;
-    lstub__mark *mark = &d->marks[d->count];
+    lstub__mark *mark;
     int32_t status;
     int i;
     LSTUB_INIT(decision);
@@ -40,11 +43,8 @@ static int32_t mark_hole(const lstub_board *board, const lstub_plan *plan, size_
     cuts[1] = &decision.top;
     if (!cuts[0]->drilled && !cuts[1]->drilled)
         return LSTUB_OK;
-    if (hole->ordinal < 0)
-        return lstub__fail(err, LSTUB_E_UNSUPPORTED, "plan", (int64_t)index,
-                           "hole %lu, line %ld, is to be drilled, but stands in a pad stack: there is no <Hole> to mark",
-                           (unsigned long)index, (long)hole->line);
-    mark->ordinal = hole->ordinal;
+    mark = hole->ordinal < 0 ? &d->loose[d->loose_count++] : &d->marks[d->count++];
+    mark->ordinal = hole->ordinal < 0 ? (int64_t)index : hole->ordinal;
     for (i = 0; i < 2; i++) {
         mark->group[i] = cuts[i]->drilled ? cuts[i]->group : -1;
         if (mark->group[i] >= d->group_count)
@@ -53,7 +53,6 @@ static int32_t mark_hole(const lstub_board *board, const lstub_plan *plan, size_
         if (mark->group[i] >= 0 && hole->via.drill > d->drill[mark->group[i]])
             d->drill[mark->group[i]] = hole->via.drill;
     }
-    d->count++;
     return LSTUB_OK;
 }
 
@@ -66,6 +65,7 @@ static int by_ordinal(const void *a, const void *b)
 static void release_drills(drills *d, const lstub_board *board)
 {
     lstub__free(&board->alloc, d->marks);
+    lstub__free(&board->alloc, d->loose);
     lstub__free(&board->alloc, d->groups);
     lstub__free(&board->alloc, d->drill);
 }
@@ -77,9 +77,10 @@ static int32_t collect_drills(const lstub_board *board, const lstub_plan *plan, 
     memset(d, 0, sizeof *d);
     d->group_count = lstub_plan_group_count(plan);
     d->marks = lstub__new(&board->alloc, board->hole_count, sizeof *d->marks, err);
+    d->loose = lstub__new(&board->alloc, board->hole_count, sizeof *d->loose, err);
     d->groups = lstub__new(&board->alloc, (size_t)d->group_count, sizeof *d->groups, err);
     d->drill = lstub__new(&board->alloc, (size_t)d->group_count, sizeof *d->drill, err);
-    if (d->marks == NULL || d->groups == NULL || d->drill == NULL)
+    if (d->marks == NULL || d->loose == NULL || d->groups == NULL || d->drill == NULL)
         return LSTUB_E_MEMORY;
     for (group = 0; group < d->group_count && status == LSTUB_OK; group++) {
         LSTUB_INIT(d->groups[group]);
@@ -157,15 +158,33 @@ static void put_backdrill(const writing *w, const lstub__edit *edit, const char 
     put_tag(w, edit, "</", "Backdrill>");
 }
 
-/* In the unit of the file's header, by the word that a Property has for it. */
+static void put_ref(const writing *w, const lstub__edit *edit, int32_t group)
+{
+    put_tag(w, edit, "<", "SpecRef id=\"");
+    put_spec_name(w, group);
+    lstub__out_text(w->out, "\"/>");
+}
+
+typedef struct file_unit {
+    double      length;              /* m */
+    const char *word;                /* in a Property */
+} file_unit;
+
+/* That of the file's header. */
+static const file_unit *unit_of(const lstub_board *board)
+{
+    static const file_unit units[] = {{0.0254, "INCH"}, {1e-6, "MICRON"}, {1e-3, "MM"}};
+    int i = 0;
+    while (i < 2 && units[i].length != board->unit)
+        i++;
+    return &units[i];
+}
+
 static void put_length(const writing *w, const lstub__edit *edit, const char *what, double length, double least)
 {
-    static const struct { double unit; const char *word; } units[] = {{0.0254, "INCH"}, {1e-6, "MICRON"}, {1e-3, "MM"}};
+    const file_unit *unit = unit_of(w->board);
     char text[LSTUB__NUMBER_MAX];
-    int i = 0;
-    while (i < 2 && units[i].unit != w->board->unit)
-        i++;
-    put_backdrill(w, edit, what, "value", lstub__length_text(text, length, least, units[i].unit), units[i].word);
+    put_backdrill(w, edit, what, "value", lstub__length_text(text, length, least, unit->length), unit->word);
 }
 
 static void put_specs(const writing *w, const lstub__edit *edit)
@@ -188,19 +207,107 @@ static void put_specs(const writing *w, const lstub__edit *edit)
     }
 }
 
+/* The copper layer next to the must-not-cut layer: the last one that the drill may go through. */
+static const char *last_layer_cut(const lstub_board *board, const lstub_drill_group *group)
+{
+    int32_t i, layer = 0, count = lstub_stackup_copper_count(board->stackup), last = group->from_layer;
+    for (i = 0; i < count; i++) {
+        int32_t number = group->side == LSTUB_SIDE_TOP ? i : count - 1 - i;   /* from the drill's side inwards */
+        if (lstub_stackup_copper(board->stackup, number, &layer, NULL) < 0 || layer == group->must_not_cut)
+            break;
+        last = layer;
+    }
+    return lstub__report_layer(board, last);
+}
+
+static int has_loose(const drills *d, int32_t group)
+{
+    size_t i;
+    for (i = 0; i < d->loose_count; i++)
+        if (d->loose[i].group[0] == group || d->loose[i].group[1] == group)
+            return 1;
+    return 0;
+}
+
+/* Holes that come from pad stacks have no element to mark. Their back-drills get a drill layer of their own, as many
+   programs write it: bare holes, where the barrels are, with the same Specs. */
+static void put_layers(const writing *w, const lstub__edit *edit)
+{
+    int32_t i;
+    for (i = 0; i < w->drills->group_count; i++) {
+        const lstub_drill_group *group = &w->drills->groups[i];
+        if (!has_loose(w->drills, i))
+            continue;
+        put_piece(w, edit->blank);
+        put_tag(w, edit, "<", "Layer name=\"");
+        put_spec_name(w, i);
+        lstub__out_text(w->out, "\" layerFunction=\"DRILL\" side=\"");
+        lstub__out_text(w->out, group->side == LSTUB_SIDE_TOP ? "TOP" : "BOTTOM");
+        lstub__out_text(w->out, "\" polarity=\"POSITIVE\">");
+        put_tag(w, edit, "<", "Span fromLayer=\"");
+        put_attribute(w, lstub__report_layer(w->board, group->from_layer));
+        lstub__out_text(w->out, "\" toLayer=\"");
+        put_attribute(w, last_layer_cut(w->board, group));
+        lstub__out_text(w->out, "\"/>");
+        put_tag(w, edit, "</", "Layer>");
+    }
+}
+
+static void put_loose_hole(const writing *w, const lstub__edit *edit, size_t number, int32_t group)
+{
+    const board_hole *hole = &w->board->holes[w->drills->loose[number].ordinal];
+    const file_unit *unit = unit_of(w->board);
+    char text[LSTUB__NUMBER_MAX];
+    put_tag(w, edit, "<", "Set net=\"");
+    put_attribute(w, hole->net);
+    lstub__out_text(w->out, "\">");
+    put_ref(w, edit, group);
+    put_tag(w, edit, "<", "Hole name=\"BD");
+    snprintf(text, sizeof text, "%lu", (unsigned long)number + 1);
+    lstub__out_text(w->out, text);
+    lstub__out_text(w->out, "\" diameter=\"");
+    lstub__out_text(w->out, lstub__length_text(text, w->drills->groups[group].diameter, w->drills->drill[group], unit->length));
+    lstub__out_text(w->out, "\" platingStatus=\"NONPLATED\" plusTol=\"0\" minusTol=\"0\" x=\"");
+    lstub__out_text(w->out, lstub__length_text(text, hole->x, -HUGE_VAL, unit->length));
+    lstub__out_text(w->out, "\" y=\"");
+    lstub__out_text(w->out, lstub__length_text(text, hole->y, -HUGE_VAL, unit->length));
+    lstub__out_text(w->out, "\"/>");
+    put_tag(w, edit, "</", "Set>");
+}
+
+static void put_loose_holes(const writing *w, const lstub__edit *edit)
+{
+    size_t k;
+    int32_t i;
+    for (i = 0; i < w->drills->group_count; i++) {
+        if (!has_loose(w->drills, i))
+            continue;
+        put_tag(w, edit, "<", "LayerFeature layerRef=\"");
+        put_spec_name(w, i);
+        lstub__out_text(w->out, "\">");
+        for (k = 0; k < w->drills->loose_count; k++)
+            if (w->drills->loose[k].group[0] == i || w->drills->loose[k].group[1] == i) {
+                put_piece(w, edit->blank);
+                put_loose_hole(w, edit, k, i);
+            }
+        put_tag(w, edit, "</", "LayerFeature>");
+        put_piece(w, edit->blank);
+    }
+}
+
 static void put_edit(const writing *w, const lstub__edit *edit)
 {
     int i;
-    if (edit->specs) {
-        put_specs(w, edit);
-        return;
+    switch (edit->kind) {
+    case EDIT_SPECS: put_specs(w, edit); return;
+    case EDIT_LAYERS: put_layers(w, edit); return;
+    case EDIT_HOLES: put_loose_holes(w, edit); return;
+    default: break;
     }
     put_piece(w, edit->raw);
     for (i = 0; i < 2; i++)
         if (edit->group[i] >= 0) {
-            put_tag(w, edit, "<", "SpecRef id=\"");
-            put_spec_name(w, edit->group[i]);
-            lstub__out_text(w->out, "\"/>");
+            put_ref(w, edit, edit->group[i]);
             put_piece(w, edit->blank);
         }
 }
@@ -311,7 +418,8 @@ static int32_t check_encoding(const lstub_board *board, lstub_error *err)
 static int32_t mark_file(writing *w)
 {
     int32_t status = check_encoding(w->board, w->err);
-    return status < 0 ? status : lstub__marking_make(&w->marking, w->board, w->drills->marks, w->drills->count, w->err);
+    return status < 0 ? status : lstub__marking_make(&w->marking, w->board, w->drills->marks, w->drills->count,
+                                                       w->drills->loose_count > 0, w->err);
 }
 
 int32_t lstub_board_write(const lstub_board *board, const lstub_plan *plan, const char *path, lstub_error *err)

@@ -307,9 +307,9 @@ typedef struct lstub_via {
     int32_t pair_kind;             /* LSTUB_PAIR_...                                                   */
     double  pair_pitch;            /* m, axis to axis, > drill                                         */
     const lstub_backdrill *backdrills; size_t backdrill_count;  /* at most one a side                  */
-    int32_t pin_side;              /* side a press-fit pin enters from; 0: no pin                      */
+    int32_t pin_side;              /* side a component's pin enters from; 0: no pin                    */
     int32_t reserved;
-    double  pin_length;            /* least barrel to keep from that side's surface, m                 */
+    double  pin_length;            /* press-fit: least barrel to keep from that side's surface, m; 0: any */
 } lstub_via;
 
 typedef struct lstub_stub {        /* a piece of barrel beyond the outermost layers that connect        */
@@ -552,7 +552,7 @@ typedef struct lstub_job {         /* one via of a board. Pointers are read whil
 #define LSTUB_REASON_BURIED         11   /* the barrel does not reach the surface on that side         */
 #define LSTUB_REASON_DRILLED        12   /* that side has been drilled already                         */
 #define LSTUB_REASON_ERROR          13   /* the via is in error                                        */
-#define LSTUB_REASON_ONE_LAYER      14   /* connects on one layer only: no path, nothing to judge      */
+#define LSTUB_REASON_ONE_LAYER      14   /* connects on one layer only and holds no pin: no path       */
 
 typedef struct lstub_drill_cut {   /* what is done on one side of a via                                */
     int32_t drilled;               /* 1: a back-drill is planned on this side                          */

@@ -248,7 +248,8 @@ static void make_arm(lstub__arm *arm, const lstub__via *via, int index, double l
         }
         region_part(part, via, i, &w);
     }
-    arm->full = at;
+    /* From the depths, like the length that a stub is given: the same bits. */
+    arm->full = exit == end ? 0.0 : index == 0 ? s->layer[exit].top - s->layer[end].top : s->layer[end].bottom - s->layer[exit].bottom;
     arm->end_full = end_capacitance(via, end);
     arm->end_cut = 2.0 * LSTUB_EPS0 * via->in.drill;
 }
@@ -310,10 +311,8 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
     for (int i = 0; i < 2; i++) {
         lstub__arm *arm = &site->arm[i];
         make_arm(arm, &site->via, i, lambda, &memory);
-        arm->length = arm->full;
-        if (i == 0 ? site->via.top_drilled : site->via.bottom_drilled)
-            arm->length -= i == 0 ? site->via.top - stackup->layer[site->via.in.start_layer].top
-                                  : stackup->layer[site->via.in.end_layer].bottom - site->via.bottom;
+        arm->length = i == 0 ? stackup->layer[site->via.first].top - site->via.top
+                             : site->via.bottom - stackup->layer[site->via.last].bottom;
         if (arm->count == 0 || arm->length <= LSTUB__SLACK)
             arm->length = 0.0;
     }

@@ -171,7 +171,7 @@ void lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_j
     d->stub_count = count;
     d->status = lstub__judge(lines, count, site.z_ref, &demand, &d->before);
     d->after = d->before;
-    if (site.via.in.connect_count < 2) {
+    if (site.via.in.connect_count < 2 && site.via.in.pin_side == 0) {
         d->action = LSTUB_ACTION_NOT_JUDGED;
         d->reason = LSTUB_REASON_ONE_LAYER;
         d->reason_layer = site.via.first;

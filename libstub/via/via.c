@@ -70,7 +70,8 @@ static int32_t check_list(const lstub__via *via, const lstub_on_layer *list, siz
         if (status == LSTUB_OK)
             status = lstub__check(list[i].value, &SIZE_OR_NONE, field, err);
         if (status == LSTUB_OK && entry(list, i, list[i].layer) != NULL)
-            status = lstub__fail(err, LSTUB_E_ARGUMENT, field, -1, "%s: layer %ld is listed twice", field, (long)list[i].layer);
+            status = lstub__fail(err, LSTUB_E_ARGUMENT, field, -1, "%s: listed twice",
+                                 lstub__layer_label(via->stackup, list[i].layer).text);
         if (status < 0) {
             lstub__fail_where(err, (int64_t)i, "%s[%lu]", field, (unsigned long)i);
             return status;
@@ -104,8 +105,8 @@ static int32_t take_span(lstub__via *via, lstub_error *err)
         || (status = lstub__layer_index(via->stackup, in->end_layer, 1, "end_layer", err)) < 0)
         return status;
     if (in->start_layer >= in->end_layer)
-        return lstub__fail(err, LSTUB_E_GEOMETRY, "end_layer", -1, "end_layer = %ld: must be below start_layer = %ld",
-                           (long)in->end_layer, (long)in->start_layer);
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "end_layer", -1, "end_layer: %s: must be below start_layer, %s",
+                           lstub__layer_label(via->stackup, in->end_layer).text, lstub__layer_label(via->stackup, in->start_layer).text);
     return LSTUB_OK;
 }
 
@@ -125,12 +126,13 @@ static int32_t take_connects(lstub__via *via, lstub_error *err)
         }
         if (layer < in->start_layer || layer > in->end_layer)
             return lstub__fail(err, LSTUB_E_GEOMETRY, "connects", (int64_t)i,
-                               "connects[%lu] = %ld '%s': outside the span, layers %ld to %ld", (unsigned long)i, (long)layer,
-                               via->stackup->layer[layer].name, (long)in->start_layer, (long)in->end_layer);
+                               "connects[%lu]: %s: outside the span, %s to %s", (unsigned long)i,
+                               lstub__layer_label(via->stackup, layer).text, lstub__layer_label(via->stackup, in->start_layer).text,
+                               lstub__layer_label(via->stackup, in->end_layer).text);
         for (size_t j = 0; j < i; j++)
             if (in->connects[j] == layer)
-                return lstub__fail(err, LSTUB_E_ARGUMENT, "connects", (int64_t)i, "connects[%lu] = %ld: listed twice",
-                                   (unsigned long)i, (long)layer);
+                return lstub__fail(err, LSTUB_E_ARGUMENT, "connects", (int64_t)i, "connects[%lu]: %s: listed twice",
+                                   (unsigned long)i, lstub__layer_label(via->stackup, layer).text);
         if (layer < via->first)
             via->first = layer;
         if (layer > via->last)

@@ -227,13 +227,8 @@ void lstub__batch_add(lstub__batch *batch, int32_t status, int64_t index, const 
 {
     if (status == LSTUB_OK)
         return;
-    if (status > 0) {
-        if (batch->result == LSTUB_OK)
-            batch->result = status;
-        return;
-    }
-    if (!batch->failed) {
-        batch->failed = 1;
+    int first = status < 0 ? !batch->failed : batch->result == LSTUB_OK;
+    if (first) {
         batch->result = status;
         if (error_usable(err)) {
             err->status = item->status;
@@ -241,7 +236,8 @@ void lstub__batch_add(lstub__batch *batch, int32_t status, int64_t index, const 
             memcpy(err->message, item->message, sizeof err->message);
             lstub__fail_where(err, index, "item %ld", (long)index);
         }
-    } else if (batch->result != status) {
+    } else if (status < 0 && batch->result != status) {
         batch->result = LSTUB_E_MIXED;
     }
+    batch->failed |= status < 0;
 }

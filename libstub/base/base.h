@@ -59,7 +59,7 @@ void *lstub__new(const lstub_allocator *allocator, size_t count, size_t bytes, l
 void  lstub__free(const lstub_allocator *allocator, void *memory);
 
 /* The status of a batch from its items': all fine, a warning, one common failure, or LSTUB_E_MIXED; err keeps
-** the first item that failed. Start with {0}. */
+** the first item that failed, or else the first with a warning. Start with {0}. */
 typedef struct lstub__batch {
     int32_t result;
     int32_t failed;

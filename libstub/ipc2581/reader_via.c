@@ -12,6 +12,7 @@ typedef struct draft {
     reader_cell *cells;
     int32_t count;
     int     through_pin;
+    int32_t side;              /* that its component is on, 0: not known */
     double  pad[LSTUB_LAYERS_MAX], antipad[LSTUB_LAYERS_MAX];
     unsigned char connects[LSTUB_LAYERS_MAX], plane[LSTUB_LAYERS_MAX];
     lstub_on_layer list[LSTUB_LAYERS_MAX];
@@ -62,24 +63,30 @@ static void find_pads(reader *r, draft *d)
 
 /* ---- connections ------------------------------------------------------------------------------- */
 
+static int32_t known_side(reader *r, draft *d)
+{
+    if (d->side == 0) {
+        lstub__note(&r->notices, LSTUB_NOTICE_WARNING, NOTE_SIDE, 0, d->site->line, "hole '%.40s': the file does not say on which side its component "
+                    "is: taken as the top", d->site->name);
+        d->side = LSTUB_SIDE_TOP;
+    }
+    return d->side;
+}
+
 /* A component's pin leads away on the side of the component; a pad on one side only, on that side. */
 static void connect_pin(reader *r, draft *d)
 {
-    const reader_site *s = d->site;
     int first = d->cells[0].flags & CELL_PIN, last = d->cells[d->count - 1].flags & CELL_PIN;
-    int32_t side = s->side;
-    if (first && last && side == 0) {
-        lstub__note(&r->notices, LSTUB_NOTICE_WARNING, NOTE_SIDE, 0, s->line, "hole '%.40s': the file does not say on which side its component is: "
-                    "taken as the top", s->name);
-        side = LSTUB_SIDE_TOP;
-    }
-    if (first && last)
-        d->connects[side == LSTUB_SIDE_BOTTOM ? d->count - 1 : 0] = 1;
-    else if (first || last)
+    d->side = d->site->side;
+    if (first && last) {
+        d->connects[known_side(r, d) == LSTUB_SIDE_BOTTOM ? d->count - 1 : 0] = 1;
+    } else if (first || last) {
+        d->side = d->side != 0 ? d->side : first ? LSTUB_SIDE_TOP : LSTUB_SIDE_BOTTOM;
         d->connects[first ? 0 : d->count - 1] = 1;
-    else
+    } else {
         for (int32_t k = 0; k < d->count; k++)
             d->connects[k] |= (d->cells[k].flags & CELL_PIN) != 0;
+    }
 }
 
 static void connect_layer(reader *r, draft *d, int32_t k)
@@ -287,7 +294,7 @@ static int32_t fill(reader *r, draft *d, board_hole *hole)
         return status;
     via->pin_length = lstub__rules_pin(r->rules, hole->padstack);
     if (via->pin_length > 0.0)
-        via->pin_side = s->side != 0 ? s->side : LSTUB_SIDE_TOP;
+        via->pin_side = known_side(r, d);
     return lstub__reader_backdrills(r, s, via);
 }
 

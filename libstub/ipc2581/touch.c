@@ -88,39 +88,69 @@ static unsigned char rays_crossed(double hx, double hy, double ax, double ay, do
     return (unsigned char)rays;
 }
 
+static void near_hole(touch *t, int32_t hole, double d)
+{
+    touch_hole *h = list_ring(t, hole);
+    h->ring = fmin(h->ring, d);
+}
+
 /* The holes near a straight piece, row by row of the grid: a long slanted one passes few cells of each. */
-static void near_segment(touch *t, double ax, double ay, double bx, double by, const lstub__arc *arc)
+static void near_segment(touch *t, double ax, double ay, double bx, double by)
 {
     const lstub__grid *g = &t->r->grid;
     int32_t row, last, at, to;
-    double reach = t->reach + (arc != NULL ? 0.005 * arc->r : 0.0);   /* an arc bulges out of its chord */
-    lstub__grid_rows(g, fmin(ay, by) - reach, fmax(ay, by) + reach, &row, &last);
+    lstub__grid_rows(g, fmin(ay, by) - t->reach, fmax(ay, by) + t->reach, &row, &last);
     for (; row <= last; row++) {
         double low = 0.0, high = 1.0, dy = by - ay;
-        double bottom = lstub__grid_row_low(g, row) - reach, top = lstub__grid_row_low(g, row + 1) + reach;
-        if (fabs(dy) > 1e-12) {
+        double bottom = lstub__grid_row_low(g, row) - t->reach, top = lstub__grid_row_low(g, row + 1) + t->reach;
+        if (fabs(dy) > 1e-12 && row > 0 && row < g->rows - 1) {   /* rounding may have put points beyond the outer rows */
             double k0 = (bottom - ay) / dy, k1 = (top - ay) / dy;
             low = fmax(low, fmin(k0, k1));
             high = fmin(high, fmax(k0, k1));
         }
-        if (row == 0 || row == g->rows - 1) {  /* rounding may have put points just beyond the border */
-            low = 0.0;
-            high = 1.0;
-        }
         double xa = ax + low * (bx - ax), xb = ax + high * (bx - ax);
-        lstub__grid_row(g, row, fmin(xa, xb) - reach, fmax(xa, xb) + reach, &at, &to);
+        lstub__grid_row(g, row, fmin(xa, xb) - t->reach, fmax(xa, xb) + t->reach, &at, &to);
         for (; at < to; at++) {
             int32_t hole = g->item[at];
-            if (!crosses_layer(t, hole))
+            double hx = t->r->x[hole], hy = t->r->y[hole], d = lstub__segment_distance(hx, hy, ax, ay, bx, by);
+            if (d > t->reach || !crosses_layer(t, hole))
                 continue;
-            double hx = t->r->x[hole], hy = t->r->y[hole];
-            double d = arc != NULL ? lstub__arc_distance(arc, hx, hy) : lstub__segment_distance(hx, hy, ax, ay, bx, by);
-            if (d > t->reach)
-                continue;
-            touch_hole *h = list_ring(t, hole);
-            h->ring = fmin(h->ring, d);
+            near_hole(t, hole, d);
             if (t->rays && d <= REACH)
-                h->rays |= rays_crossed(hx, hy, ax, ay, bx, by);
+                t->hole[hole].rays |= rays_crossed(hx, hy, ax, ay, bx, by);
+        }
+    }
+}
+
+static unsigned char arc_rays(const lstub__arc *arc, double hx, double hy)
+{
+    unsigned rays = 0;
+    int chords = lstub__arc_chords(arc);
+    double ax = arc->ax, ay = arc->ay, bx, by;
+    for (int i = 1; i <= chords; i++, ax = bx, ay = by) {
+        lstub__arc_point(arc, i, chords, &bx, &by);
+        rays |= rays_crossed(hx, hy, ax, ay, bx, by);
+    }
+    return (unsigned char)rays;
+}
+
+/* The same for an arc, whose extent is that of its chords and the little that it bulges out of them. */
+static void near_arc(touch *t, const lstub__arc *arc, double x0, double y0, double x1, double y1)
+{
+    const lstub__grid *g = &t->r->grid;
+    double far = t->reach + 0.005 * arc->r;
+    int32_t row, last, at, to;
+    lstub__grid_rows(g, y0 - far, y1 + far, &row, &last);
+    for (; row <= last; row++) {
+        lstub__grid_row(g, row, x0 - far, x1 + far, &at, &to);
+        for (; at < to; at++) {
+            int32_t hole = g->item[at];
+            double hx = t->r->x[hole], hy = t->r->y[hole], d = lstub__arc_distance(arc, hx, hy);
+            if (d > t->reach || !crosses_layer(t, hole))
+                continue;
+            near_hole(t, hole, d);
+            if (t->rays && d <= REACH)
+                t->hole[hole].rays |= arc_rays(arc, hx, hy);
         }
     }
 }
@@ -155,7 +185,7 @@ void lstub__touch_begin_ring(touch *t, double x, double y, int cutout)
 
 void lstub__touch_segment(touch *t, double x, double y)
 {
-    near_segment(t, t->px, t->py, x, y, NULL);
+    near_segment(t, t->px, t->py, x, y);
     if (t->area)
         pass(t, t->px, t->py, x, y);
     t->px = x;
@@ -165,15 +195,19 @@ void lstub__touch_segment(touch *t, double x, double y)
 void lstub__touch_arc(touch *t, double x, double y, double cx, double cy, int clockwise)
 {
     lstub__arc arc;
-    double ax = t->px, ay = t->py, bx, by;
+    double ax = t->px, ay = t->py, bx, by, x0 = ax, y0 = ay, x1 = ax, y1 = ay;
     lstub__arc_make(&arc, ax, ay, x, y, cx, cy, clockwise);
     int chords = lstub__arc_chords(&arc);
     for (int i = 1; i <= chords; i++, ax = bx, ay = by) {
         lstub__arc_point(&arc, i, chords, &bx, &by);
-        near_segment(t, ax, ay, bx, by, &arc);
+        x0 = fmin(x0, bx);
+        x1 = fmax(x1, bx);
+        y0 = fmin(y0, by);
+        y1 = fmax(y1, by);
         if (t->area)
             pass(t, ax, ay, bx, by);
     }
+    near_arc(t, &arc, x0, y0, x1, y1);
     t->px = x;
     t->py = y;
 }

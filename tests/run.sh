@@ -1,9 +1,9 @@
 #!/bin/sh
 # All tests, on a bare Debian machine too:   sh tests/run.sh [options of ctest, e.g. -R model]
 #
-# Installs what is missing, makes a Python environment, builds twice (gcc with warnings as errors; clang with address
-# and undefined-behaviour sanitizers) and runs one ctest in each. Everything is left in build-tests/, where a second
-# run is quick; LSTUB_TEST_DIR names another place.
+# Installs what is missing, makes a Python environment, builds twice (gcc; clang with address and undefined-behaviour
+# sanitizers; warnings are errors) and runs one ctest in each. One suite runs under the thread sanitizer, too. Everything
+# is left in build-tests/, where a second run is quick; LSTUB_TEST_DIR names another place.
 set -eu
 cd "$(dirname "$0")/.."
 dir=${LSTUB_TEST_DIR:-build-tests}
@@ -21,22 +21,29 @@ python=$dir/venv/bin/python
 "$python" -m pip install --quiet --disable-pip-version-check --force-reinstall --no-deps --no-build-isolation \
     ./bindings/python
 
-configure() {   # folder, compiler, options
+configure() {   # folder, compiler, target, options
     folder=$1
     compiler=$2
-    shift 2
+    target=$3
+    shift 3
     CC=$compiler CXX=$(echo "$compiler" | sed 's/gcc/g++/; s/clang/clang++/') \
         cmake -S . -B "$dir/$folder" -DLSTUB_BUILD_TESTS=ON -DLSTUB_BUILD_EXAMPLES=ON -DLSTUB_IPC2581=ON -DLSTUB_LUA=ON \
-        "-DCMAKE_C_FLAGS=-Werror" "$@" >"$dir/$folder.configure.log" || { cat "$dir/$folder.configure.log"; exit 1; }
-    cmake --build "$dir/$folder" --parallel "$jobs" >"$dir/$folder.build.log" 2>&1 || { cat "$dir/$folder.build.log"; exit 1; }
+        -DCMAKE_C_FLAGS=-Werror "$@" >"$dir/$folder.log" 2>&1 &&
+        cmake --build "$dir/$folder" --target "$target" --parallel "$jobs" >>"$dir/$folder.log" 2>&1 ||
+        { cat "$dir/$folder.log"; exit 1; }
 }
-configure release gcc -DCMAKE_BUILD_TYPE=Release "-DLSTUB_TEST_PYTHON=$python"
-configure sanitize clang -DCMAKE_BUILD_TYPE=RelWithDebInfo -DLSTUB_SANITIZE=address,undefined
+configure release gcc all -DCMAKE_BUILD_TYPE=Release "-DLSTUB_TEST_PYTHON=$python"
+configure sanitize clang all -DCMAKE_BUILD_TYPE=RelWithDebInfo -DLSTUB_SANITIZE=address,undefined
+configure threads clang check_threads -DCMAKE_BUILD_TYPE=RelWithDebInfo -DLSTUB_SANITIZE=thread
 
-# Both are run to the end, whatever fails in the first.
+# Each is run to the end, whatever fails in the others. Options may name tests that only one of them has.
 failed=0
+none=error
+[ $# -eq 0 ] || none=ignore
+echo "== shared handles, thread sanitizer"
+CK_FORK=no "$dir/threads/tests/check_threads" || failed=1
 for folder in release sanitize; do
     echo "== ctest, $folder"
-    ctest --test-dir "$dir/$folder" --output-on-failure --no-tests=error --parallel "$jobs" "$@" || failed=1
+    ctest --test-dir "$dir/$folder" --output-on-failure --no-tests=$none --parallel "$jobs" "$@" || failed=1
 done
 exit $failed

@@ -1,5 +1,5 @@
 #!/usr/bin/env python3
-"""Runs the fenced code blocks of README.md and docs/*.md, so that they stay true.
+"""Runs the fenced code blocks of README.md, DEVELOPERS.md and docs/*.md, so that they stay true.
 
     run_snippets.py ROOT --build DIR [--python PYTHON] [--lua LUA] [--cc CC]
 
@@ -108,11 +108,11 @@ def main():
     skipped = 0
     with tempfile.TemporaryDirectory() as folder:
         scratch = Path(folder)
-        for name in ("libstub", "bindings", "examples", "tests", "docs"):
-            if (args.root / name).exists():
-                (scratch / name).symlink_to(args.root / name)
+        for path in args.root.iterdir():
+            if path.name[0] != "." and not path.name.startswith(("build", "out")):
+                (scratch / path.name).symlink_to(path)
         runner = Runner(args, scratch)
-        for path in [args.root / "README.md", *sorted((args.root / "docs").glob("*.md"))]:
+        for path in [args.root / "README.md", args.root / "DEVELOPERS.md", *sorted((args.root / "docs").glob("*.md"))]:
             skipped += runner.file(path, path.relative_to(args.root))
     print(f"{runner.count} run, {skipped} not run, {runner.failed} failed")
     return 1 if runner.failed or runner.count == 0 else 0

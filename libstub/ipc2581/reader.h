@@ -1,6 +1,32 @@
 /*
 ** What is known while a board is read. Pass 1 collects what the features refer to and the holes; the stackup is laid
 ** out; pass 2 goes through the features and notes, per hole and copper layer, what it meets; then the vias are made.
+**
+** How things are settled where a file leaves them open; each leaves a notice where it was not said outright:
+** Stackup      The first, or the one asked for. By sequence; by group first where numbers come twice; turned over when
+**              the sides of the outer copper say so. Layers that are neither copper nor dielectric (paste, legend), not
+**              declared, or dielectrics without thickness are left out. No Dk: the rules' default; without one a
+**              coating is left out and anything else refuses the board. A Dk of 1 on copper is a blank form: the core's
+**              rule for resin holds. The layers count, not overallThickness.
+** Holes        Plated ones of the Step that Content refers to, or of the first that has any; one of two at the same place
+**              and with the same span. Without a usable Span: through the board. Pads whose stack defines a plated hole
+**              stand for it where there is no Hole.
+** Connects     A trace or area of the same net that reaches the pad on that layer, or the barrel where there is no pad; a
+**              land that covers the axis, or a pin's that reaches it. A pin with pads on both outer layers connects on its
+**              component's side: Component, or a mirrored pad, else the top. Via pads alone connect nothing, nor do those
+**              of a neighbour; micro vias whose spans meet do when their pads overlap. On a negative plane: what has no
+**              clearance wider than the hole, if any hole on it has one.
+** Antipads     Twice the least distance to the cutout that the hole is in, or to an outline that is met in six of eight
+**              directions; the nearest of several areas. Copper farther than REACH is no plane at this via. Where nothing
+**              is drawn, or copper of another net covers the hole: the pad stack's antipad, the rules' default, or no plane.
+**              A conductor layer with such an opening around some via is a mixed one.
+** Pads         Not round: the disc of the same area. Not larger than the hole: none. The definition's, where no feature
+**              is on the hole.
+** Returns      Holes of return nets within the rule's distance that cross all the via's layers: as many of the nearest as
+**              have room on one circle, at their geometric mean distance.
+** Pairs        The nearest hole of the partner net with the same span within 2.5 mm, if it is mutual; shared when one
+**              opening holds both or the antipads overlap, unless the rule says.
+** Derived lengths are rounded to 0.1 um.
 */
 #ifndef LSTUB_IPC2581_READER_H
 #define LSTUB_IPC2581_READER_H
@@ -148,6 +174,7 @@ typedef struct reader {
     double  widest;                /* line, m */
     /* the stackup */
     lstub__list stack, stack_from; /* of lstub_layer; the layer number of each */
+    double  left_out;              /* m of layers in it that are none of the board's */
     int32_t *copper_layer;         /* layer number of each copper layer */
     int32_t copper_count;
     /* pass 2 */
@@ -208,14 +235,14 @@ int32_t lstub__reader_features(reader *r, const char *path);
 
 /* reader_near.c: neighbours: vias on vias, barrels in the bit's way; returns and pairs. reader_drill.c: back-drills. */
 void    lstub__reader_barrels(reader *r);
-int32_t lstub__reader_returns(reader *r);
+void    lstub__reader_returns(reader *r);
 void    lstub__reader_bits(reader *r);
 int32_t lstub__reader_backdrills(reader *r, const reader_site *site, lstub_via *via);
 
 /* reader_via.c: cells become vias, checked against the stackup. */
 void    lstub__reader_kinds(reader *r);                 /* signal layers with planes at some via: mixed ones */
 int32_t lstub__reader_vias(reader *r);
-int32_t lstub__reader_check(reader *r);
+void    lstub__reader_check(reader *r);
 
 double lstub__tidy(double length);       /* to a tenth of a micrometre: what the coordinates are good for */
 

@@ -157,7 +157,7 @@ static void pair(reader *r, int32_t i)
     hole->via.pair_kind = net->pair_kind != 0 ? net->pair_kind : shared(r, i, other, gap) ? LSTUB_PAIR_SHARED : LSTUB_PAIR_SEPARATE;
 }
 
-int32_t lstub__reader_returns(reader *r)
+void lstub__reader_returns(reader *r)
 {
     double within = 0.0;
     for (int32_t i = 0; i < r->nets.count; i++)
@@ -171,5 +171,4 @@ int32_t lstub__reader_returns(reader *r)
         }
         pair(r, i);
     }
-    return LSTUB_OK;
 }

@@ -194,6 +194,7 @@ static int is_part(reader *r, const reader_stack_layer *part)
     if (l->kind == 0) {
         lstub__note(&r->notices, LSTUB_NOTICE_REFUSED, NOTE_NOT_BUILT, 0, part->line,
                     "layer '%.60s' (%.30s) in the Stackup is not a dielectric or copper layer of the board: left out", name, l->function);
+        r->left_out += part->thickness;
         return 0;
     }
     if (l->kind != LSTUB_LAYER_DIELECTRIC && l->stack >= 0) {
@@ -313,6 +314,8 @@ static void compare_thickness(reader *r, const reader_stackup *s)
     for (int i = 0; i < 3; i++)
         if (fabs(thickness(r, i) - s->overall) <= DISAGREE * s->overall)
             lstub__format(other, sizeof other, ", which they do %s", words[i]);
+    if (r->left_out > 0.0 && fabs(sum + r->left_out - s->overall) <= DISAGREE * s->overall)
+        lstub__format(other, sizeof other, ", which they do with those left out");
     lstub__note(&r->notices, LSTUB_NOTICE_WARNING, NOTE_THICKNESS, 0, s->line, "Stackup '%.40s': its layers add up to %.6g mm %s, not to the "
                 "overallThickness of %.6g mm%s: the layers are used", s->name, sum * 1e3, words[over], s->overall * 1e3, other);
 }

@@ -323,7 +323,16 @@ int32_t lstub__reader_vias(reader *r)
     return status;
 }
 
-int32_t lstub__reader_check(reader *r)
+/* Failures are alike when the same member is at fault. */
+static int32_t key_of(const char *field)
+{
+    uint32_t key = 0;
+    for (; *field != '\0'; field++)
+        key = 31u * key + (unsigned char)*field;
+    return (int32_t)(key & 0x7fffffffu);
+}
+
+void lstub__reader_check(reader *r)
 {
     for (size_t i = 0; i < r->board->hole_count; i++) {
         board_hole *hole = &r->board->holes[i];
@@ -336,8 +345,7 @@ int32_t lstub__reader_check(reader *r)
             lstub__note(&r->notices, LSTUB_NOTICE_REFUSED, NOTE_UNCONNECTED, 0, hole->line, "hole '%.40s', net '%.40s': nothing connects to it on any "
                         "layer: no via", hole->name, hole->net);
         else
-            lstub__note(&r->notices, LSTUB_NOTICE_REFUSED, NOTE_CHECK, hole->status, hole->line, "hole '%.40s', net '%.40s': no via: %s", hole->name,
+            lstub__note(&r->notices, LSTUB_NOTICE_REFUSED, NOTE_CHECK, key_of(err.field), hole->line, "hole '%.40s', net '%.40s': no via: %s", hole->name,
                         hole->net, err.message);
     }
-    return LSTUB_OK;
 }

@@ -973,6 +973,7 @@ START_TEST(shared_others)
     assert_ok(lstub_stackup_interval(lstub_board_stackup(board), 0.0, 35.6e-6, &outer, &err), err);
     assert_close(outer.tol_plus, 2.5e-6, 1e-9, 0.0, BY_HAND);
     ck_assert_int_eq(noticed(board, LSTUB_NOTICE_REFUSED, "SOLDERPASTE"), 2);
+    ck_assert_int_eq(noticed(board, LSTUB_NOTICE_WARNING, "overallThickness of 1.7166 mm|those left out"), 1);
     ck_assert_int_eq(noticed(board, LSTUB_NOTICE_REFUSED, "slot"), 4);
     lstub_board_destroy(board);
 }

@@ -1,4 +1,4 @@
-/* Signals and criteria checked; judging lines against them. Knows no physics: only notches and losses. */
+/* Signals and criteria checked; judging branches against them. Knows no physics: only notches and losses. */
 #ifndef LSTUB_CRITERIA_H
 #define LSTUB_CRITERIA_H
 
@@ -14,17 +14,16 @@ int32_t lstub__signal_take(lstub_signal *ours, const lstub_signal *theirs, lstub
 int32_t lstub__criteria_take(lstub_criteria *ours, const lstub_criteria *theirs, lstub_error *err);
 int32_t lstub__demand_make(lstub__demand *demand, const lstub_signal *signal, const lstub_criteria *criteria, lstub_error *err);
 
-/* Judges lines; never fails. Returns LSTUB_OK, or LSTUB_W_RANGE when the answer leans on the model beyond its range. */
-int32_t lstub__judge(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand, lstub_margin *margin);
+/* Judges branches; never fails. Returns LSTUB_OK, or LSTUB_W_RANGE when the answer leans on the model beyond its range. */
+int32_t lstub__judge(const lstub__branch *branches, int32_t count, double z_ref, const lstub__demand *demand, lstub_margin *margin);
 /* What is left of the tightest criterion, as a part of its limit: >= 0 when they pass; falls as a stub grows. */
-double lstub__left_over(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand);
+double lstub__left_over(const lstub__branch *branches, int32_t count, double z_ref, const lstub__demand *demand);
 
 /*
-** Longest length of the stub on one arm that passes, the other arm cut to `other` (0: none there): m, 0 if none
+** Longest length of the stub on one arm that passes, with the other arm's branch beside it (null: none): m, 0 if none
 ** passes, the whole arm if all do. *limited_by: LSTUB_LIMIT_...
 */
-double lstub__longest(const lstub__site *site, int arm, double other, const lstub__demand *demand, int32_t *limited_by);
-/* The lines of both arms cut to these lengths; 0: none. Returns their number. */
-int32_t lstub__cut_lines(const lstub__site *site, double top, double bottom, lstub__line *lines);
+int32_t lstub__longest(const lstub__site *site, int arm, const lstub__branch *other, const lstub__demand *demand, double *length,
+                       int32_t *limited_by, lstub_error *err);
 
 #endif

@@ -49,12 +49,12 @@ int32_t lstub__demand_make(lstub__demand *demand, const lstub_signal *signal, co
     return LSTUB_OK;
 }
 
-double lstub__left_over(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand)
+double lstub__left_over(const lstub__branch *branches, int32_t count, double z_ref, const lstub__demand *demand)
 {
     int32_t which;
-    double f1 = lstub__lines_first_notch(lines, count, z_ref, &which), left = f1 / demand->least_f1 - 1.0;
+    double f1 = lstub__branches_first_notch(branches, count, z_ref, &which), left = f1 / demand->least_f1 - 1.0;
     if (demand->loss_db > 0.0 && f1 > demand->nyquist)
-        left = fmin(left, 1.0 - lstub__lines_loss_db(lines, count, z_ref, demand->nyquist) / demand->loss_db);
+        left = fmin(left, 1.0 - lstub__branches_loss_db(branches, count, z_ref, demand->nyquist) / demand->loss_db);
     return left;
 }
 
@@ -70,22 +70,22 @@ static int32_t limited_by(const lstub_margin *m, const lstub__demand *d)
     return notch <= loss ? LSTUB_LIMIT_NOTCH : LSTUB_LIMIT_LOSS;
 }
 
-int32_t lstub__judge(const lstub__line *lines, int32_t count, double z_ref, const lstub__demand *demand, lstub_margin *margin)
+int32_t lstub__judge(const lstub__branch *branches, int32_t count, double z_ref, const lstub__demand *demand, lstub_margin *margin)
 {
     int32_t which, status = LSTUB_OK;
     LSTUB_INIT(*margin);
     margin->nyquist = demand->nyquist;
-    margin->f1 = lstub__lines_first_notch(lines, count, z_ref, &which);
+    margin->f1 = lstub__branches_first_notch(branches, count, z_ref, &which);
     margin->notch_over_nyquist = margin->f1 / demand->nyquist;
     margin->notch_margin = demand->notch_ratio > 0.0 ? margin->f1 - demand->notch_ratio * demand->nyquist : NAN;
-    margin->added_loss_db = count > 0 ? lstub__lines_loss_db(lines, count, z_ref, demand->nyquist) : 0.0;
+    margin->added_loss_db = count > 0 ? lstub__branches_loss_db(branches, count, z_ref, demand->nyquist) : 0.0;
     margin->loss_margin_db = demand->loss_db > 0.0 ? demand->loss_db - margin->added_loss_db : NAN;
     margin->pass = margin->f1 >= demand->least_f1 && !(margin->loss_margin_db < 0.0);
     margin->limited_by = limited_by(margin, demand);
     lstub_rule_of_thumb_length(demand->bit_rate, &margin->rule_length, NULL);
     for (int32_t i = 0; i < count; i++) {
-        margin->stub_length = fmax(margin->stub_length, lines[i].length);
-        if (fmax(demand->nyquist, fmin(margin->f1, demand->least_f1)) > lines[i].f_range)
+        margin->stub_length = fmax(margin->stub_length, branches[i].length);
+        if (fmax(demand->nyquist, fmin(margin->f1, demand->least_f1)) > branches[i].f_range)
             status = LSTUB_W_RANGE;
     }
     margin->rule_margin = margin->rule_length - margin->stub_length;
@@ -135,7 +135,7 @@ int32_t lstub_model_margin(const lstub_model *model, const lstub_signal *signal,
         return LSTUB_E_NULL;
     if ((status = lstub__demand_make(&demand, signal, criteria, err)) < 0)
         return status;
-    status = lstub__judge(model->line, model->count, model->z_ref, &demand, &ours);
+    status = lstub__judge(model->branch, model->count, model->z_ref, &demand, &ours);
     given = lstub__give(&ours, sizeof ours, out, sizeof ours, "out", err);
     return given < 0 ? given : range_warning(status, err);
 }
@@ -156,14 +156,18 @@ int32_t lstub_margin_batch(const lstub_stackup *stackup, const lstub_via *vias, 
         lstub_error item;
         lstub__demand demand;
         lstub__site site;
-        lstub__line lines[2];
+        lstub__branch branches[2];
+        int32_t n = 0;
         LSTUB_INIT(item);
         int32_t one = lstub__demand_make(&demand, (const lstub_signal *)(const void *)((const char *)signals + i * signal_stride),
                                          (const lstub_criteria *)(const void *)((const char *)criteria + i * criteria_stride), &item);
         if (one == LSTUB_OK)
             one = lstub__site_make(&site, stackup, (const lstub_via *)(const void *)((const char *)vias + i * via_stride), options, &item);
+        if (one == LSTUB_OK)
+            one = lstub__branches_make(branches, &n, &site, site.arm[0].length, site.arm[1].length, &item);
         if (one == LSTUB_OK) {
-            one = range_warning(lstub__judge(lines, lstub__site_lines(&site, lines), site.z_ref, &demand, &ours), &item);
+            one = range_warning(lstub__judge(branches, n, site.z_ref, &demand, &ours), &item);
+            lstub__branches_done(branches, n);
         } else {
             LSTUB_INIT(ours);
             ours.nyquist = ours.f1 = ours.notch_over_nyquist = ours.notch_margin = ours.added_loss_db = NAN;

@@ -6,51 +6,64 @@
 
 #define LENGTH_STEP 1e-9    /* m, to which a limit is found: far below any drill */
 
-int32_t lstub__cut_lines(const lstub__site *site, double top, double bottom, lstub__line *lines)
-{
-    int32_t count = 0;
-    if (top > 0.0)
-        lstub__site_line(site, 0, top, &lines[count++]);
-    if (bottom > 0.0)
-        lstub__site_line(site, 1, bottom, &lines[count++]);
-    return count;
-}
-
 typedef struct cutting {
     const lstub__site *site;
     const lstub__demand *demand;
-    int    arm;
-    double other;
+    int      arm;
+    const lstub__branch *other;
+    int32_t *status;           /* of the first branch that could not be made */
+    lstub_error *err;
 } cutting;
 
-static int32_t lines_at(const cutting *c, double length, lstub__line *lines)
+/* The branch cut to a length and its neighbour; their number, 0 where it could not be made. */
+static int32_t branches_at(const cutting *c, double length, lstub__branch *branches)
 {
-    return lstub__cut_lines(c->site, c->arm == 0 ? length : c->other, c->arm == 0 ? c->other : length, lines);
+    if (*c->status == LSTUB_OK)
+        *c->status = lstub__branch_make(&branches[0], c->site, c->arm, length, c->err);
+    if (*c->status < 0)
+        return 0;
+    if (c->other == NULL)
+        return 1;
+    branches[1] = *c->other;
+    return 2;
 }
 
 /* What is left of the tightest criterion, as a part of its limit: >= 0 passes. */
 static double left_over(double length, const void *context)
 {
     const cutting *c = context;
-    lstub__line lines[2];
-    return lstub__left_over(lines, lines_at(c, length, lines), c->site->z_ref, c->demand);
+    lstub__branch branches[2];
+    int32_t count = branches_at(c, length, branches);
+    if (count == 0)
+        return NAN;
+    double left = lstub__left_over(branches, count, c->site->z_ref, c->demand);
+    lstub__branch_done(&branches[0]);
+    return left;
 }
 
 /* The answer passes, and a length LENGTH_STEP above it fails; pads make small jumps in the curve. */
-double lstub__longest(const lstub__site *site, int arm, double other, const lstub__demand *demand, int32_t *limited_by)
+int32_t lstub__longest(const lstub__site *site, int arm, const lstub__branch *other, const lstub__demand *demand, double *length,
+                       int32_t *limited_by, lstub_error *err)
 {
-    cutting c = {site, demand, arm, other};
+    int32_t status = LSTUB_OK;
+    cutting c = {site, demand, arm, other, &status, err};
     double good = LENGTH_STEP, bad = site->arm[arm].full;
     lstub_margin margin;
-    lstub__line lines[2];
+    lstub__branch branches[2];
     *limited_by = LSTUB_LIMIT_NONE;
-    if (left_over(bad, &c) >= 0.0)
-        return bad;
+    *length = bad;
+    if (left_over(bad, &c) >= 0.0 || status < 0)
+        return status;
     if (!lstub__bracket(left_over, &c, &good, &bad, LENGTH_STEP))
         good = 0.0;
-    lstub__judge(lines, lines_at(&c, bad, lines), site->z_ref, demand, &margin);
+    int32_t count = branches_at(&c, bad, branches);
+    if (count == 0)
+        return status;
+    lstub__judge(branches, count, site->z_ref, demand, &margin);
+    lstub__branch_done(&branches[0]);
     *limited_by = margin.limited_by;
-    return good;
+    *length = good;
+    return LSTUB_OK;
 }
 
 static int32_t longest(const lstub_stackup *stackup, const lstub_via *via, int32_t side, const lstub_model_options *options,
@@ -68,14 +81,20 @@ static int32_t longest(const lstub_stackup *stackup, const lstub_via *via, int32
     int arm = lstub__arm_of(side);
     if (site.arm[arm].count == 0)
         return lstub__fail(err, LSTUB_E_NONE, "side", -1, "side = %ld: the via has no stub there", (long)side);
-    out->length = lstub__longest(&site, arm, site.arm[1 - arm].length, &demand, &out->limited_by);
+    lstub__branch other;
+    int beside = site.arm[1 - arm].length > 0.0;
+    if (beside && (status = lstub__branch_make(&other, &site, 1 - arm, site.arm[1 - arm].length, err)) < 0)
+        return status;
+    status = lstub__longest(&site, arm, beside ? &other : NULL, &demand, &out->length, &out->limited_by, err);
+    if (beside)
+        lstub__branch_done(&other);
+    if (status < 0)
+        return status;
     out->stub_length = site.arm[arm].length;
     out->margin = out->limited_by == LSTUB_LIMIT_NONE ? 0.0 : out->length - out->stub_length;
-    lstub__line line;
-    lstub__site_line(&site, arm, out->length > 0.0 ? out->length : site.arm[arm].full, &line);
-    if (fmax(demand.nyquist, demand.least_f1) > line.f_range)
-        return lstub__fail(err, LSTUB_W_RANGE, "signal", -1, "limit found beyond the stated range of this model, which ends at %.6g Hz",
-                           line.f_range);
+    double top = site.arm[arm].f_range;
+    if (fmax(demand.nyquist, demand.least_f1) > top)
+        return lstub__fail(err, LSTUB_W_RANGE, "signal", -1, "limit found beyond the stated range of this model, which ends at %.6g Hz", top);
     return LSTUB_OK;
 }
 
@@ -131,7 +150,7 @@ typedef struct loss_limit {
 static double over_loss(double f, const void *context)
 {
     const loss_limit *limit = context;
-    return lstub__lines_loss_db(limit->model->line, limit->model->count, limit->model->z_ref, f) - limit->db;
+    return lstub__branches_loss_db(limit->model->branch, limit->model->count, limit->model->z_ref, f) - limit->db;
 }
 
 int32_t lstub_highest_symbol_rate(const lstub_model *model, const lstub_criteria *criteria, double *symbol_rate,
@@ -143,7 +162,7 @@ int32_t lstub_highest_symbol_rate(const lstub_model *model, const lstub_criteria
         return LSTUB_E_NULL;
     if ((status = lstub__criteria_take(&c, criteria, err)) < 0)
         return status;
-    double rate = HUGE_VAL, f1 = lstub__lines_first_notch(model->line, model->count, model->z_ref, &which);
+    double rate = HUGE_VAL, f1 = lstub__branches_first_notch(model->branch, model->count, model->z_ref, &which);
     if (c.notch_over_nyquist > 0.0 && f1 < HUGE_VAL) {
         rate = 2.0 * f1 / c.notch_over_nyquist;
         limit = LSTUB_LIMIT_NOTCH;
@@ -169,8 +188,8 @@ int32_t lstub_highest_symbol_rate(const lstub_model *model, const lstub_criteria
     if (limited_by != NULL)
         *limited_by = limit;
     for (int32_t i = 0; i < model->count; i++)
-        if (rate < HUGE_VAL && 0.5 * rate > model->line[i].f_range)
+        if (rate < HUGE_VAL && 0.5 * rate > model->branch[i].f_range)
             return lstub__fail(err, LSTUB_W_RANGE, "criteria", -1, "found beyond the stated range of this model, which ends at %.6g Hz",
-                               model->line[i].f_range);
+                               model->branch[i].f_range);
     return LSTUB_OK;
 }

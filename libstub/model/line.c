@@ -37,21 +37,6 @@ cplx lstub__line_admittance(const lstub__line *line, double f)
     return cplx_mul(ys, cplx_div(cplx_add(yl, cplx_mul(ys, t)), cplx_add(ys, cplx_mul(yl, t))));
 }
 
-/* S21 = 2/(2 + Z0 Y). */
-double lstub__lines_power(const lstub__line *lines, int count, double z_ref, double f)
-{
-    cplx y = cplx_of(0.0, 0.0);
-    for (int i = 0; i < count; i++)
-        y = cplx_add(y, lstub__line_admittance(&lines[i], f));
-    return 4.0 / cplx_norm(cplx_of(2.0 + z_ref * y.re, z_ref * y.im));
-}
-
-double lstub__lines_loss_db(const lstub__line *lines, int count, double z_ref, double f)
-{
-    double loss = -10.0 * log10(lstub__lines_power(lines, count, z_ref, f));
-    return loss > 0.0 ? loss : 0.0;    /* rounding of a stub that does nothing */
-}
-
 /* ---- notches ----------------------------------------------------------------------------------- */
 
 /* C' and L' change slowly with f: a fixed point, a digit or more a turn. */
@@ -79,7 +64,8 @@ typedef struct seeing {
 static double power_at(double f, const void *context)
 {
     const seeing *s = context;
-    return lstub__lines_power(s->line, 1, s->z_ref, f);
+    cplx y = lstub__line_admittance(s->line, f);
+    return 1.0 / cplx_norm(cplx_of(2.0 + s->z_ref * y.re, s->z_ref * y.im));
 }
 
 double lstub__line_notch(const lstub__line *line, double z_ref, int n)

@@ -24,10 +24,6 @@ cplx lstub__line_capacitance(const lstub__line *line, double f);
 /* Input admittance: 0 S far below the first notch, where Zin would be huge. */
 cplx lstub__line_admittance(const lstub__line *line, double f);
 
-/* |S21| squared of `count` stubs in parallel across a matched line. */
-double lstub__lines_power(const lstub__line *lines, int count, double z_ref, double f);
-double lstub__lines_loss_db(const lstub__line *lines, int count, double z_ref, double f);
-
 /* Zero number n = 1, 2 ... of the reactance without loss: where to look for notch n. NaN beyond LSTUB__F_MAX. */
 double lstub__line_seed(const lstub__line *line, int n);
 /* Notch n: the least |S21| around its seed; NaN where there is no minimum. */

@@ -2,29 +2,6 @@
 
 #include <math.h>
 
-int32_t lstub__site_lines(const lstub__site *site, lstub__line *lines)
-{
-    int32_t count = 0;
-    for (int i = 0; i < 2; i++)
-        if (site->arm[i].length > 0.0)
-            lstub__site_line(site, i, site->arm[i].length, &lines[count++]);
-    return count;
-}
-
-double lstub__lines_first_notch(const lstub__line *lines, int32_t count, double z_ref, int32_t *which)
-{
-    double f1 = HUGE_VAL;
-    *which = -1;
-    for (int32_t i = 0; i < count; i++) {
-        double f = lstub__line_notch(&lines[i], z_ref, 1);
-        if (f < f1) {
-            f1 = f;
-            *which = i;
-        }
-    }
-    return f1;
-}
-
 /* ---- handle ------------------------------------------------------------------------------------ */
 
 int32_t lstub_model_create(const lstub_stackup *stackup, const lstub_via *via, const lstub_model_options *options,
@@ -43,7 +20,11 @@ int32_t lstub_model_create(const lstub_stackup *stackup, const lstub_via *via, c
     m->alloc = alloc;
     m->fidelity = site.fidelity;
     m->z_ref = site.z_ref;
-    m->count = lstub__site_lines(&site, m->line);
+    status = lstub__branches_make(m->branch, &m->count, &site, site.arm[0].length, site.arm[1].length, err);
+    if (status < 0) {
+        lstub__free(&alloc, m);
+        return status;
+    }
     int n = 0;
     for (int i = 0; i < 2; i++)
         n += lstub__via_stub(&site.via, lstub__side_of(i), &m->stub[n < 2 ? n : 1]);
@@ -56,18 +37,19 @@ void lstub_model_destroy(lstub_model *model)
     if (model == NULL)
         return;
     lstub_allocator alloc = model->alloc;
+    lstub__branches_done(model->branch, model->count);
     lstub__free(&alloc, model);
 }
 
 /* ---- questions --------------------------------------------------------------------------------- */
 
-/* The lines that `stub` names: where they start in the model, and how many. */
-static int32_t chosen(const lstub_model *model, int32_t stub, int all, const lstub__line **lines, int32_t *count, lstub_error *err)
+/* The branches that `stub` names: where they start in the model, and how many. */
+static int32_t chosen(const lstub_model *model, int32_t stub, int all, const lstub__branch **branches, int32_t *count, lstub_error *err)
 {
     if (lstub__need(model, "model", err) < 0)
         return LSTUB_E_NULL;
     if (all && stub == LSTUB_ALL_STUBS) {
-        *lines = model->line;
+        *branches = model->branch;
         *count = model->count;
         return LSTUB_OK;
     }
@@ -76,7 +58,7 @@ static int32_t chosen(const lstub_model *model, int32_t stub, int all, const lst
     if (stub < 0 || stub >= model->count)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "stub", -1, "stub = %ld: must be >= 0 and < %ld%s", (long)stub, (long)model->count,
                            all ? ", or LSTUB_ALL_STUBS" : "");
-    *lines = &model->line[stub];
+    *branches = &model->branch[stub];
     *count = 1;
     return LSTUB_OK;
 }
@@ -85,8 +67,8 @@ int32_t lstub_model_stub_count(const lstub_model *model) { return model == NULL 
 
 int32_t lstub_model_stub(const lstub_model *model, int32_t stub, lstub_stub *out, lstub_error *err)
 {
-    const lstub__line *line = NULL;
-    int32_t count, status = chosen(model, stub, 0, &line, &count, err);
+    const lstub__branch *branch = NULL;
+    int32_t count, status = chosen(model, stub, 0, &branch, &count, err);
     if (status < 0)
         return status;
     return lstub__give(&model->stub[stub], sizeof model->stub[stub], out, sizeof model->stub[stub], "out", err);
@@ -94,13 +76,14 @@ int32_t lstub_model_stub(const lstub_model *model, int32_t stub, lstub_stub *out
 
 int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub_stub_line *out, lstub_error *err)
 {
-    const lstub__line *line = NULL;
-    int32_t count, status = chosen(model, stub, 0, &line, &count, err);
+    const lstub__branch *branch = NULL;
+    int32_t count, status = chosen(model, stub, 0, &branch, &count, err);
     if (status < 0)
         return status;
     lstub_stub_line ours;
     LSTUB_INIT(ours);
-    double f1 = lstub__line_notch(line, model->z_ref, 1), root = LSTUB_C0 / (4.0 * line->length * f1);
+    const lstub__line *line = &branch->line;
+    double f1 = lstub__branch_notch(branch, model->z_ref, 0.0, LSTUB__F_MAX), root = LSTUB_C0 / (4.0 * branch->length * f1);
     ours.fidelity = model->fidelity;
     ours.inductance = lstub__line_inductance(line, 1e9).re;
     ours.capacitance = lstub__line_capacitance(line, 1e9).re;
@@ -108,20 +91,12 @@ int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub_stub_line
     ours.impedance = sqrt(ours.inductance / ours.capacitance);
     ours.dk_line = LSTUB_C0 * ours.inductance * LSTUB_C0 * ours.capacitance;
     ours.dk_effective = root * root;
-    ours.stated_error = line->stated_error;
-    ours.f_range = line->f_range;
+    ours.stated_error = branch->stated_error;
+    ours.f_range = branch->f_range;
     return lstub__give(&ours, sizeof ours, out, sizeof ours, "out", err);
 }
 
-typedef void evaluate(const lstub_model *model, const lstub__line *lines, int32_t count, double f, double *out);
-
-static cplx admittance(const lstub__line *lines, int32_t count, double f)
-{
-    cplx y = cplx_of(0.0, 0.0);
-    for (int32_t i = 0; i < count; i++)
-        y = cplx_add(y, lstub__line_admittance(&lines[i], f));
-    return y;
-}
+typedef void evaluate(const lstub_model *model, const lstub__branch *branches, int32_t count, double f, double *out);
 
 static void put(cplx z, double *out)
 {
@@ -129,28 +104,28 @@ static void put(cplx z, double *out)
     out[1] = z.im;
 }
 
-static void put_zin(const lstub_model *model, const lstub__line *lines, int32_t count, double f, double *out)
+static void put_zin(const lstub_model *model, const lstub__branch *branches, int32_t count, double f, double *out)
 {
     (void)model;
-    put(cplx_div(cplx_of(1.0, 0.0), admittance(lines, count, f)), out);
+    put(cplx_div(cplx_of(1.0, 0.0), lstub__branches_admittance(branches, count, f)), out);
 }
 
-static void put_s21(const lstub_model *model, const lstub__line *lines, int32_t count, double f, double *out)
+static void put_s21(const lstub_model *model, const lstub__branch *branches, int32_t count, double f, double *out)
 {
-    cplx y = cplx_scale(admittance(lines, count, f), model->z_ref);
+    cplx y = cplx_scale(lstub__branches_admittance(branches, count, f), model->z_ref);
     put(cplx_div(cplx_of(2.0, 0.0), cplx_add(cplx_of(2.0, 0.0), y)), out);
 }
 
-static void put_loss(const lstub_model *model, const lstub__line *lines, int32_t count, double f, double *out)
+static void put_loss(const lstub_model *model, const lstub__branch *branches, int32_t count, double f, double *out)
 {
-    out[0] = lstub__lines_loss_db(lines, count, model->z_ref, f);
+    out[0] = lstub__branches_loss_db(branches, count, model->z_ref, f);
 }
 
-static double range_of(const lstub__line *lines, int32_t count)
+static double range_of(const lstub__branch *branches, int32_t count)
 {
     double f = HUGE_VAL;
     for (int32_t i = 0; i < count; i++)
-        f = fmin(f, lines[i].f_range);
+        f = fmin(f, branches[i].f_range);
     return f;
 }
 
@@ -159,8 +134,8 @@ static int32_t at_frequencies(const lstub_model *model, int32_t stub, const doub
                               int needs_stub, double *out, int32_t *status, lstub_error *err)
 {
     static const lstub__range BAND = {LSTUB__F_MIN, LSTUB__F_MAX, 0, "Hz"};
-    const lstub__line *lines = NULL;
-    int32_t count, result = chosen(model, stub, 1, &lines, &count, err);
+    const lstub__branch *branches = NULL;
+    int32_t count, result = chosen(model, stub, 1, &branches, &count, err);
     if (result < 0)
         return result;
     if (needs_stub && count == 0)
@@ -168,7 +143,7 @@ static int32_t at_frequencies(const lstub_model *model, int32_t stub, const doub
     if (n > 0 && (lstub__need(freq, "freq", err) < 0 || lstub__need(out, "out", err) < 0))
         return LSTUB_E_NULL;
     lstub__batch batch = {0, 0};
-    double top = range_of(lines, count);
+    double top = range_of(branches, count);
     for (size_t i = 0; i < n; i++) {
         lstub_error item;
         LSTUB_INIT(item);
@@ -177,7 +152,7 @@ static int32_t at_frequencies(const lstub_model *model, int32_t stub, const doub
             for (int k = 0; k < width; k++)
                 out[i * (size_t)width + (size_t)k] = NAN;
         } else {
-            what(model, lines, count, freq[i], out + i * (size_t)width);
+            what(model, branches, count, freq[i], out + i * (size_t)width);
             one = freq[i] > top ? LSTUB_W_RANGE : LSTUB_OK;
         }
         if (status != NULL)

@@ -7,63 +7,71 @@
 #define DEPTH_FLOOR (-300.0)   /* dB, of a lossless notch: a zero, whatever rounding leaves of it */
 
 typedef struct seeing {
-    const lstub__line *line;
+    const lstub__branch *branch;
     double z_ref, level;
 } seeing;
 
 static double im_zin(double f, const void *context)
 {
-    cplx y = lstub__line_admittance(((const seeing *)context)->line, f);
+    cplx y = lstub__branch_admittance(((const seeing *)context)->branch, f);
     return -y.im / cplx_norm(y);
 }
 
 static double over_level(double f, const void *context)
 {
     const seeing *s = context;
-    return lstub__lines_power(s->line, 1, s->z_ref, f) - s->level;
+    return lstub__branches_power(s->branch, 1, s->z_ref, f) - s->level;
 }
 
-/* Where the notch is 3 dB above its floor on one side (sign), within half the way to its neighbour. */
+/* How far a notch's own ground reaches: half the way to the one before. */
+#define NEAREST 1e-9
+
+/* Where the notch is 3 dB above its floor on one side (sign). */
 static double half_width(const seeing *s, double f, double sign, double reach)
 {
-    for (double width = 1e-9 * f; width < reach; width *= 2.0)
+    for (double width = NEAREST * f; width < reach; width *= 2.0)
         if (over_level(f + sign * width, s) > 0.0)
             return fabs(lstub__root(over_level, s, fmin(f, f + sign * width), fmax(f, f + sign * width), 1e-9 * width) - f);
     return NAN;
 }
 
-static void describe(const lstub__line *line, double z_ref, int n, double f, lstub_notch *out)
+/* Where the reactance rises through zero next to the notch. */
+static double series_resonance(const seeing *s, double f, double reach)
 {
-    seeing s = {line, z_ref, 2.0 * lstub__lines_power(line, 1, z_ref, f)};
+    for (double width = NEAREST * f; width < reach; width *= 2.0)
+        if (im_zin(f - width, s) < 0.0 && im_zin(f + width, s) > 0.0)
+            return lstub__root(im_zin, s, f - width, f + width, 1e-12 * f);
+    return NAN;
+}
+
+static void describe(const lstub__branch *branch, double z_ref, double before, double f, lstub_notch *out)
+{
+    seeing s = {branch, z_ref, 2.0 * lstub__branches_power(branch, 1, z_ref, f)};
+    double reach = 0.5 * (f - before);
     LSTUB_INIT(*out);
     out->f = f;
     out->depth_db = fmax(10.0 * log10(0.5 * s.level), DEPTH_FLOOR);
-    if (line->lossless) {
+    if (branch->lossless) {
         out->depth_db = DEPTH_FLOOR;
         out->f_series = f;
         out->q = HUGE_VAL;
         return;
     }
-    double spread = line->radial_dk > 0.0 ? 0.6 : 0.05;
-    out->f_series = lstub__root(im_zin, &s, f * (1.0 - 0.5 * spread / n), f * (1.0 + spread / n), 1e-12 * f);
-    out->q = f / (half_width(&s, f, -1.0, 0.5 * f / n) + half_width(&s, f, 1.0, 0.5 * f / n));
+    out->f_series = series_resonance(&s, f, reach);
+    out->q = f / (half_width(&s, f, -1.0, reach) + half_width(&s, f, 1.0, reach));
 }
 
 typedef struct search {        /* the two stubs' notches, merged in rising order */
-    const lstub__line *line[2];
+    const lstub__branch *branch[2];
     int32_t number[2];         /* the stub's */
-    int     n[2];
-    double  next[2];
+    double  before[2], next[2];
     int32_t count;
 } search;
 
 static void step(search *s, double z_ref, double f_max, int i)
 {
-    do {
-        s->n[i]++;
-        double seed = lstub__line_seed(s->line[i], s->n[i]);
-        s->next[i] = isnan(seed) || seed > 2.0 * f_max ? HUGE_VAL : lstub__line_notch(s->line[i], z_ref, s->n[i]);
-    } while (isnan(s->next[i]));
+    s->before[i] = s->next[i];
+    s->next[i] = lstub__branch_notch(s->branch[i], z_ref, s->next[i], f_max);
 }
 
 int32_t lstub_model_notches(const lstub_model *model, int32_t stub, double f_max, lstub_notch *notches, size_t capacity,
@@ -83,10 +91,10 @@ int32_t lstub_model_notches(const lstub_model *model, int32_t stub, double f_max
     for (size_t i = 0; i < capacity; i++)
         if ((status = lstub__fits((char *)notches + i * stride, sizeof *notches, "notches", err)) < 0)
             return status;
-    search s = {{NULL, NULL}, {0, 0}, {0, 0}, {0.0, 0.0}, 0};
+    search s = {{NULL, NULL}, {0, 0}, {0.0, 0.0}, {0.0, 0.0}, 0};
     for (int32_t i = 0; i < model->count; i++)
         if (stub == LSTUB_ALL_STUBS || stub == i) {
-            s.line[s.count] = &model->line[i];
+            s.branch[s.count] = &model->branch[i];
             s.number[s.count] = i;
             step(&s, model->z_ref, f_max, s.count++);
         }
@@ -98,13 +106,13 @@ int32_t lstub_model_notches(const lstub_model *model, int32_t stub, double f_max
             break;
         if (found < capacity) {
             lstub_notch one;
-            describe(s.line[i], model->z_ref, s.n[i], s.next[i], &one);
+            describe(s.branch[i], model->z_ref, s.before[i], s.next[i], &one);
             one.stub = s.number[i];
             lstub__give(&one, sizeof one, (char *)notches + found * stride, sizeof one, "notches", NULL);
         }
         found++;
         last = s.next[i];
-        top = fmin(top, s.line[i]->f_range);
+        top = fmin(top, s.branch[i]->f_range);
         step(&s, model->z_ref, f_max, i);
     }
     *count = found;
@@ -120,21 +128,22 @@ static int32_t first_notch(const lstub_stackup *stackup, const lstub_via *via, c
                            double *dk, double *length, lstub_error *err)
 {
     lstub__site site;
-    lstub__line lines[2];
-    int32_t which, status = lstub__site_make(&site, stackup, via, options, err);
-    if (status < 0)
+    lstub__branch branches[2];
+    int32_t n, which, status = lstub__site_make(&site, stackup, via, options, err);
+    if (status < 0 || (status = lstub__branches_make(branches, &n, &site, site.arm[0].length, site.arm[1].length, err)) < 0)
         return status;
-    double f = lstub__lines_first_notch(lines, lstub__site_lines(&site, lines), site.z_ref, &which);
-    if (which < 0)
+    double f = lstub__branches_first_notch(branches, n, site.z_ref, &which), top = HUGE_VAL;
+    if (which >= 0) {
+        double root = LSTUB_C0 / (4.0 * branches[which].length * f);
+        *f1 = f;
+        *dk = root * root;
+        *length = branches[which].length;
+        top = branches[which].f_range;
+    }
+    lstub__branches_done(branches, n);
+    if (which < 0 || f <= top)
         return LSTUB_OK;
-    double root = LSTUB_C0 / (4.0 * lines[which].length * f);
-    *f1 = f;
-    *dk = root * root;
-    *length = lines[which].length;
-    if (f <= lines[which].f_range)
-        return LSTUB_OK;
-    return lstub__fail(err, LSTUB_W_RANGE, "f1", -1, "first notch at %.6g Hz: the stated range of this model ends at %.6g Hz", f,
-                       lines[which].f_range);
+    return lstub__fail(err, LSTUB_W_RANGE, "f1", -1, "first notch at %.6g Hz: the stated range of this model ends at %.6g Hz", f, top);
 }
 
 int32_t lstub_first_notch_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t count, size_t stride,

@@ -54,16 +54,48 @@ static double worst_residual(const lstub__room *room, double part)
     return least + part * (room->full - least);
 }
 
-static int both_pass(const lstub__site *site, const lstub__room *room, double part, const lstub__demand *demand)
+/* 1 or 0, or a status < 0. */
+static int32_t both_pass(const lstub__site *site, const lstub__room *room, double part, const lstub__demand *demand, lstub_error *err)
 {
-    lstub__line lines[2];
-    int32_t count = lstub__cut_lines(site, worst_residual(&room[0], part), worst_residual(&room[1], part), lines);
-    return lstub__left_over(lines, count, site->z_ref, demand) >= 0.0;
+    lstub__branch branches[2];
+    int32_t count, status = lstub__branches_make(branches, &count, site, worst_residual(&room[0], part), worst_residual(&room[1], part), err);
+    if (status < 0)
+        return status;
+    int32_t pass = lstub__left_over(branches, count, site->z_ref, demand) >= 0.0;
+    lstub__branches_done(branches, count);
+    return pass;
+}
+
+/* Longest stub on an arm with the other cut to a length; 0: nothing there. */
+static int32_t longest_beside(const lstub__site *site, int arm, double other, const lstub__demand *demand, double *length, lstub_error *err)
+{
+    lstub__branch branch;
+    int32_t by, status = other > 0.0 ? lstub__branch_make(&branch, site, 1 - arm, other, err) : LSTUB_OK;
+    if (status < 0)
+        return status;
+    status = lstub__longest(site, arm, other > 0.0 ? &branch : NULL, demand, length, &by, err);
+    if (other > 0.0)
+        lstub__branch_done(&branch);
+    return status;
+}
+
+/* Not even the shortest residuals pass: the longer arm's is named against what it should be. */
+static int32_t both_too_long(lstub_decision *d, const lstub__site *site, lstub__room *room, int longer, const lstub__demand *demand,
+                             lstub_error *err)
+{
+    int32_t status = LSTUB_OK;
+    if (room[longer].reason == LSTUB_REASON_FAILS) {
+        room[longer].reason = LSTUB_REASON_LIMIT_TOO_SHORT;
+        room[longer].value = worst_residual(&room[longer], 0.0);
+        status = longest_beside(site, longer, worst_residual(&room[1 - longer], 0.0), demand, &room[longer].limit, err);
+    }
+    blame(d, longer, &room[longer]);
+    return status;
 }
 
 /* Both sides: each may leave the same part of what it could. */
-static int drill_both(lstub__case *c, const lstub__site *site, const lstub__room *geometry, const lstub__demand *demand,
-                      const lstub__capability *capability)
+static int32_t drill_both(lstub__case *c, const lstub__site *site, const lstub__room *geometry, const lstub__demand *demand,
+                          const lstub__capability *capability, lstub_error *err)
 {
     lstub__room room[2] = {geometry[0], geometry[1]};
     int longer = site->arm[1].length >= site->arm[0].length;
@@ -71,23 +103,18 @@ static int drill_both(lstub__case *c, const lstub__site *site, const lstub__room
         int arm = k == 0 ? longer : 1 - longer;
         if (room[arm].low == HUGE_VAL) {
             blame(&c->decision, arm, &room[arm]);
-            return 0;
+            return LSTUB_OK;
         }
     }
     double good = 0.0, bad = 1.0;
-    if (!both_pass(site, room, 0.0, demand)) {
-        int32_t by;
-        if (room[longer].reason == LSTUB_REASON_FAILS) {
-            room[longer].reason = LSTUB_REASON_LIMIT_TOO_SHORT;
-            room[longer].value = worst_residual(&room[longer], 0.0);
-            room[longer].limit = lstub__longest(site, longer, worst_residual(&room[1 - longer], 0.0), demand, &by);
-        }
-        blame(&c->decision, longer, &room[longer]);
-        return 0;
-    }
+    int32_t pass = both_pass(site, room, 0.0, demand, err);
+    if (pass <= 0)
+        return pass < 0 ? pass : both_too_long(&c->decision, site, room, longer, demand, err);
     while (bad - good > 1e-6) {
         double middle = 0.5 * (good + bad);
-        if (both_pass(site, room, middle, demand))
+        if ((pass = both_pass(site, room, middle, demand, err)) < 0)
+            return pass;
+        if (pass)
             good = middle;
         else
             bad = middle;
@@ -98,22 +125,23 @@ static int drill_both(lstub__case *c, const lstub__site *site, const lstub__room
         if (room[arm].low == HUGE_VAL) {
             blame(&c->decision, arm, &room[arm]);
             cut_of(&c->decision, 0)->drilled = 0;
-            return 0;
+            return LSTUB_OK;
         }
         record(c, site, arm, &room[arm], limit, capability);
     }
     c->decision.action = LSTUB_ACTION_DRILL_BOTH;
-    return 1;
+    c->decision.reason_side = LSTUB_SIDE_BOTH;
+    return LSTUB_OK;
 }
 
 /* One drill where one is enough, the shorter cut first; else both; else why not. */
-static void drill(lstub__case *c, const lstub__site *site, const lstub__demand *demand, const lstub__capability *capability)
+static int32_t drill(lstub__case *c, const lstub__site *site, const lstub__demand *demand, const lstub__capability *capability,
+                     lstub_error *err)
 {
     lstub__room geometry[2], room[2];
     double limit[2] = {NAN, NAN};
     int present[2], best = -1;
     for (int arm = 0; arm < 2; arm++) {
-        int32_t by;
         present[arm] = site->arm[arm].length > 0.0;
         if (!present[arm])
             continue;
@@ -121,7 +149,9 @@ static void drill(lstub__case *c, const lstub__site *site, const lstub__demand *
         room[arm] = geometry[arm];
         if (room[arm].low == HUGE_VAL)
             continue;
-        limit[arm] = lstub__longest(site, arm, site->arm[1 - arm].length, demand, &by);
+        int32_t status = longest_beside(site, arm, site->arm[1 - arm].length, demand, &limit[arm], err);
+        if (status < 0)
+            return status;
         lstub__room_limit(&room[arm], limit[arm], capability);
         if (room[arm].low == HUGE_VAL)
             continue;
@@ -133,22 +163,29 @@ static void drill(lstub__case *c, const lstub__site *site, const lstub__demand *
         record(c, site, best, &room[best], limit[best], capability);
         c->decision.action = best == 0 ? LSTUB_ACTION_DRILL_TOP : LSTUB_ACTION_DRILL_BOTTOM;
         c->decision.reason_side = lstub__side_of(best);
-    } else if (present[0] && present[1]) {
-        if (drill_both(c, site, geometry, demand, capability))
-            c->decision.reason_side = LSTUB_SIDE_BOTH;
-    } else {
-        blame(&c->decision, present[0] ? 0 : 1, &room[present[0] ? 0 : 1]);
+        return LSTUB_OK;
     }
+    if (present[0] && present[1])
+        return drill_both(c, site, geometry, demand, capability, err);
+    blame(&c->decision, present[0] ? 0 : 1, &room[present[0] ? 0 : 1]);
+    return LSTUB_OK;
 }
 
-void lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
-                   const lstub_model_options *options, lstub_error *err)
+static void refuse(lstub_decision *d, int32_t status)
+{
+    d->status = status;
+    d->action = LSTUB_ACTION_REFUSED;
+    d->reason = LSTUB_REASON_ERROR;
+}
+
+int32_t lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
+                      const lstub_model_options *options, lstub_error *err)
 {
     lstub_decision *d = &out->decision;
     lstub__site site;
-    lstub__line lines[2];
+    lstub__branch branches[2];
     lstub__demand demand;
-    int32_t count;
+    int32_t count, status;
     LSTUB_INIT(*d);
     out->message = -1;
     out->notch_ratio = out->loss_db = out->aim[0] = out->aim[1] = 0.0;
@@ -156,20 +193,21 @@ void lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_j
     d->reason_value = d->reason_limit = NAN;
     if (job->signal == NULL) {
         without_signal(d, stackup, job);
-        return;
+        return LSTUB_OK;
     }
-    d->action = LSTUB_ACTION_REFUSED;
-    d->reason = LSTUB_REASON_ERROR;
-    if ((d->status = lstub__demand_make(&demand, job->signal, job->criteria, err)) < 0
-        || (d->status = lstub__site_make(&site, stackup, job->via, options, err)) < 0)
-        return;
+    if ((status = lstub__demand_make(&demand, job->signal, job->criteria, err)) < 0
+        || (status = lstub__site_make(&site, stackup, job->via, options, err)) < 0
+        || (status = lstub__branches_make(branches, &count, &site, site.arm[0].length, site.arm[1].length, err)) < 0) {
+        refuse(d, status);
+        return status;
+    }
     out->notch_ratio = demand.notch_ratio;
     out->loss_db = demand.loss_db;
     d->stub_top = site.arm[0].length;
     d->stub_bottom = site.arm[1].length;
-    count = lstub__site_lines(&site, lines);
     d->stub_count = count;
-    d->status = lstub__judge(lines, count, site.z_ref, &demand, &d->before);
+    d->status = lstub__judge(branches, count, site.z_ref, &demand, &d->before);
+    lstub__branches_done(branches, count);
     d->after = d->before;
     if (site.via.in.connect_count < 2 && site.via.in.pin_side == 0) {
         d->action = LSTUB_ACTION_NOT_JUDGED;
@@ -178,9 +216,11 @@ void lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_j
     } else if (d->before.pass) {
         d->action = LSTUB_ACTION_KEEP;
         d->reason = count == 0 ? LSTUB_REASON_NO_STUB : LSTUB_REASON_PASSES;
-    } else {
-        drill(out, &site, &demand, capability);
+    } else if ((status = drill(out, &site, &demand, capability, err)) < 0) {
+        refuse(d, status);
+        return status;
     }
+    return LSTUB_OK;
 }
 
 static double settle_side(lstub_drill_cut *cut, const lstub__site *site, int arm, const lstub__capability *capability)
@@ -195,19 +235,25 @@ static double settle_side(lstub_drill_cut *cut, const lstub__site *site, int arm
     return fmin(cut->residual_most, room.full);
 }
 
-void lstub__settle(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
-                   const lstub_model_options *options)
+int32_t lstub__settle(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
+                      const lstub_model_options *options, lstub_error *err)
 {
     lstub_decision *d = &out->decision;
     lstub__site site;
-    lstub__line lines[2];
+    lstub__branch branches[2];
     lstub__demand demand;
+    int32_t count, status;
     if (!d->top.drilled && !d->bottom.drilled)
-        return;
-    lstub__demand_make(&demand, job->signal, job->criteria, NULL);
-    lstub__site_make(&site, stackup, job->via, options, NULL);
+        return LSTUB_OK;
+    if ((status = lstub__demand_make(&demand, job->signal, job->criteria, err)) < 0
+        || (status = lstub__site_make(&site, stackup, job->via, options, err)) < 0)
+        return status;
     double top = settle_side(&d->top, &site, 0, capability), bottom = settle_side(&d->bottom, &site, 1, capability);
-    int32_t status = lstub__judge(lines, lstub__cut_lines(&site, top, bottom, lines), site.z_ref, &demand, &d->after);
-    if (status != LSTUB_OK)
-        d->status = status;
+    if ((status = lstub__branches_make(branches, &count, &site, top, bottom, err)) < 0)
+        return status;
+    int32_t range = lstub__judge(branches, count, site.z_ref, &demand, &d->after);
+    lstub__branches_done(branches, count);
+    if (range != LSTUB_OK)
+        d->status = range;
+    return LSTUB_OK;
 }

@@ -241,7 +241,8 @@ static int32_t decide_all(lstub_plan *plan, work *w, lstub_error *err)
             own->decision.status = status;
         } else if (fresh) {
             job.via = &via;
-            lstub__decide(own, w->stackup, &job, &w->capability, &w->options, &item);
+            if (lstub__decide(own, w->stackup, &job, &w->capability, &w->options, &item) == LSTUB_E_MEMORY)
+                return lstub__fail(err, LSTUB_E_MEMORY, "allocator", -1, "%s", item.message);
         }
         if (fresh && own->decision.action == LSTUB_ACTION_REFUSED
             && keep_message(plan, w, own, &item, &messages, err) < 0)
@@ -390,10 +391,11 @@ static int32_t build(lstub_plan *plan, work *w, lstub_error *err)
     for (size_t i = 0; i < plan->case_count; i++) {
         lstub_job job;
         lstub_via via;
-        if (take_job(w, w->job_of[i], &job, &via, NULL) == LSTUB_OK) {
-            job.via = &via;
-            lstub__settle(&plan->cases[i], w->stackup, &job, &w->capability, &w->options);
-        }
+        if (take_job(w, w->job_of[i], &job, &via, NULL) < 0)
+            continue;
+        job.via = &via;
+        if ((status = lstub__settle(&plan->cases[i], w->stackup, &job, &w->capability, &w->options, err)) < 0)
+            return status;
     }
     make_table(plan, w);
     add_up(plan);

@@ -33,12 +33,12 @@ typedef struct lstub__case {
     int64_t message;               /* number of its error message, -1                           */
 } lstub__case;
 
-/* Decides one via on its own; the depths are intervals still. Refused vias leave their message in err. */
-void lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
-                   const lstub_model_options *options, lstub_error *err);
+/* Decides one via on its own; the depths are intervals still. A status < 0: the via is refused, for the reason in err. */
+int32_t lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
+                      const lstub_model_options *options, lstub_error *err);
 /* With the depths settled: residuals and what the via is like after drilling. */
-void lstub__settle(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
-                   const lstub_model_options *options);
+int32_t lstub__settle(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
+                      const lstub_model_options *options, lstub_error *err);
 
 /* One interval to be stabbed; `point` comes back. */
 typedef struct lstub__interval {

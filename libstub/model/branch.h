@@ -1,0 +1,35 @@
+/* A stub as a branch across the signal path: one barrel cut to one length, at one fidelity, ready to be asked. */
+#ifndef LSTUB_BRANCH_H
+#define LSTUB_BRANCH_H
+
+#include "model/site.h"
+
+typedef struct lstub__branch {
+    int32_t     fidelity;
+    int         lossless;          /* no loss anywhere: the notch is the zero of the reactance                  */
+    double      length;            /* m                                                                         */
+    double      f_range;           /* Hz, top of the stated range                                               */
+    double      stated_error;      /* of the first notch, relative                                              */
+    lstub__line line;              /* the closed form; for other fidelities where their searches begin          */
+} lstub__branch;
+
+/* The stub on an arm of the site cut to `length` (0 < length <= full; full: not drilled). Undone by _done. */
+int32_t lstub__branch_make(lstub__branch *branch, const lstub__site *site, int arm, double length, lstub_error *err);
+void    lstub__branch_done(lstub__branch *branch);
+
+cplx    lstub__branch_admittance(const lstub__branch *branch, double f);
+/* The lowest notch (least |S21|) above `after`, up to f_max; HUGE_VAL where there is none. */
+double  lstub__branch_notch(const lstub__branch *branch, double z_ref, double after, double f_max);
+
+/* Several branches at one place: |S21| squared, loss, first notch of all (HUGE_VAL; *which: whose, or -1). */
+cplx    lstub__branches_admittance(const lstub__branch *branches, int32_t count, double f);
+double  lstub__branches_power(const lstub__branch *branches, int32_t count, double z_ref, double f);
+double  lstub__branches_loss_db(const lstub__branch *branches, int32_t count, double z_ref, double f);
+double  lstub__branches_first_notch(const lstub__branch *branches, int32_t count, double z_ref, int32_t *which);
+
+/* Both arms cut to these lengths (0: none), top one first, *count of them; undone by _done on each. */
+int32_t lstub__branches_make(lstub__branch *branches, int32_t *count, const lstub__site *site, double top, double bottom,
+                             lstub_error *err);
+void    lstub__branches_done(lstub__branch *branches, int32_t count);
+
+#endif

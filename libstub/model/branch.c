@@ -20,14 +20,7 @@ cplx lstub__branch_admittance(const lstub__branch *branch, double f) { return ls
 
 double lstub__branch_notch(const lstub__branch *branch, double z_ref, double after, double f_max)
 {
-    for (int n = 1;; n++) {
-        double seed = lstub__line_seed(&branch->line, n);
-        if (isnan(seed) || seed > 2.0 * f_max)
-            return HUGE_VAL;
-        double f = 2.0 * seed < after ? 0.0 : lstub__line_notch(&branch->line, z_ref, n);
-        if (f > after)
-            return f <= f_max ? f : HUGE_VAL;
-    }
+    return lstub__line_notch(&branch->line, z_ref, after, f_max);
 }
 
 /* ---- several ----------------------------------------------------------------------------------- */

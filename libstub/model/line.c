@@ -39,23 +39,6 @@ cplx lstub__line_admittance(const lstub__line *line, double f)
 
 /* ---- notches ----------------------------------------------------------------------------------- */
 
-/* C' and L' change slowly with f: a fixed point, a digit or more a turn. */
-double lstub__line_seed(const lstub__line *line, int n)
-{
-    double f = 1e10;
-    for (int turn = 0; turn < 60; turn++) {
-        double c = lstub__line_capacitance(line, f).re, l = lstub__line_inductance(line, f).re;
-        double theta = lstub__open_stub_angle(line->c_end / (c * line->length), n);
-        double next = theta / (2.0 * LSTUB_PI * line->length * sqrt(l * c));
-        if (!(next <= LSTUB__F_MAX))     /* NaN, too: the radial wave is no inductance any more */
-            return NAN;
-        if (fabs(next - f) <= 1e-13 * f)
-            return next;
-        f = next;
-    }
-    return f;
-}
-
 typedef struct seeing {
     const lstub__line *line;
     double z_ref;
@@ -68,18 +51,70 @@ static double power_at(double f, const void *context)
     return 1.0 / cplx_norm(cplx_of(2.0 + s->z_ref * y.re, s->z_ref * y.im));
 }
 
-double lstub__line_notch(const lstub__line *line, double z_ref, int n)
+/*
+** Zero number n = 1, 2 ... of the reactance without loss: where to look for notch n; NaN beyond LSTUB__F_MAX. C' changes
+** slowly with f: a fixed point, some digits a turn.
+*/
+static double seed(const lstub__line *line, int n)
 {
-    double f = lstub__line_seed(line, n);
-    if (isnan(f) || line->lossless)
+    double f = 1e10;
+    for (int turn = 0; turn < 60; turn++) {
+        double c = lstub__line_capacitance(line, f).re;
+        double theta = lstub__open_stub_angle(line->c_end / (c * line->length), n);
+        double next = theta / (2.0 * LSTUB_PI * line->length * sqrt(line->inductance * c));
+        if (!(next <= LSTUB__F_MAX))     /* NaN, too: a lossy laminate's Dk below 0 */
+            return NAN;
+        if (fabs(next - f) <= 1e-13 * f)
+            return next;
+        f = next;
+    }
+    return f;
+}
+
+/* Notch n of a line with a return: at its seed but for losses, which move it a little. NaN where there is none. */
+static double guided_notch(const seeing *s, double f, int n)
+{
+    if (s->line->lossless)
         return f;
-    /* The minimum lies at the seed but for losses: close by in a laminate, 10 to 30 % lower where the barrel radiates. */
-    seeing s = {line, z_ref};
-    for (double spread = line->radial_dk > 0.0 ? 0.5 : 0.05; spread < 0.9; spread *= 1.7) {
+    for (double spread = 0.05; spread < 0.9; spread *= 1.7) {
         double low = f * (1.0 - spread / n), high = f * (1.0 + 0.5 * spread / n), edge = 1e-6 * f;
-        double found = lstub__minimum(power_at, &s, low, high, 1e-10 * f);
+        double found = lstub__minimum(power_at, s, low, high, 1e-10 * f);
         if (found - low > edge && high - found > edge)
             return found;
     }
     return NAN;
+}
+
+/* A barrel that radiates has shallow notches, broad and far from any zero: the first dip in steps of 4 percent. */
+static double radial_notch(const seeing *s, double after, double f_max)
+{
+    const double ratio = 1.04;
+    double low = fmax(after * (1.0 + 1e-6), 1e8), f = low * ratio, p_low = power_at(low, s), p = power_at(f, s);
+    while (f <= f_max) {
+        double high = f * ratio, p_high = power_at(high, s);
+        if (p < p_low && p <= p_high) {
+            double found = lstub__minimum(power_at, s, low, high, 1e-9 * f);
+            return found <= f_max ? found : HUGE_VAL;
+        }
+        low = f;
+        f = high;
+        p_low = p;
+        p = p_high;
+    }
+    return HUGE_VAL;
+}
+
+double lstub__line_notch(const lstub__line *line, double z_ref, double after, double f_max)
+{
+    seeing s = {line, z_ref};
+    if (line->radial_dk > 0.0)
+        return radial_notch(&s, after, f_max);
+    for (int n = 1;; n++) {
+        double at = seed(line, n);
+        if (isnan(at) || at > 2.0 * f_max)
+            return HUGE_VAL;
+        double f = 2.0 * at < after ? 0.0 : guided_notch(&s, at, n);
+        if (f > after)
+            return f <= f_max ? f : HUGE_VAL;
+    }
 }

@@ -24,9 +24,7 @@ cplx lstub__line_capacitance(const lstub__line *line, double f);
 /* Input admittance: 0 S far below the first notch, where Zin would be huge. */
 cplx lstub__line_admittance(const lstub__line *line, double f);
 
-/* Zero number n = 1, 2 ... of the reactance without loss: where to look for notch n. NaN beyond LSTUB__F_MAX. */
-double lstub__line_seed(const lstub__line *line, int n);
-/* Notch n: the least |S21| around its seed; NaN where there is no minimum. */
-double lstub__line_notch(const lstub__line *line, double z_ref, int n);
+/* The lowest notch, the least |S21| of the stub across a matched line, above `after` and up to f_max; HUGE_VAL: none. */
+double lstub__line_notch(const lstub__line *line, double z_ref, double after, double f_max);
 
 #endif

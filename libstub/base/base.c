@@ -177,6 +177,11 @@ int32_t lstub__stride(size_t stride, size_t first, const char *name, lstub_error
     return LSTUB_OK;
 }
 
+int32_t lstub__stride_or_one(size_t stride, size_t first, const char *name, lstub_error *err)
+{
+    return stride == 0 ? LSTUB_OK : lstub__stride(stride, first, name, err);
+}
+
 static void *heap_allocate(void *user, size_t bytes)
 {
     (void)user;

@@ -52,6 +52,8 @@ int32_t lstub__give(const void *ours, size_t size, void *theirs, size_t first, c
 int32_t lstub__fits(const void *theirs, size_t first, const char *name, lstub_error *err);
 /* Whether an array's stride can hold such structs. */
 int32_t lstub__stride(size_t stride, size_t first, const char *name, lstub_error *err);
+/* The same where a stride of 0 says that one item serves for all. */
+int32_t lstub__stride_or_one(size_t stride, size_t first, const char *name, lstub_error *err);
 
 int32_t lstub__allocator(const lstub_allocator *given, lstub_allocator *out, lstub_error *err);
 /* Zeroed memory, or null with err filled. count * bytes is checked for overflow. */

@@ -149,7 +149,10 @@ int32_t lstub_margin_batch(const lstub_stackup *stackup, const lstub_via *vias, 
     if (count > 0 && (lstub__need(vias, "vias", err) < 0 || lstub__need(signals, "signals", err) < 0
                       || lstub__need(criteria, "criteria", err) < 0 || lstub__need(out, "out", err) < 0))
         return LSTUB_E_NULL;
-    if (count > 0 && (result = lstub__stride(out_stride, sizeof *out, "out", err)) < 0)
+    if (count > 0 && ((result = lstub__stride(out_stride, sizeof *out, "out", err)) < 0
+                      || (result = lstub__stride_or_one(via_stride, sizeof *vias, "vias", err)) < 0
+                      || (result = lstub__stride_or_one(signal_stride, sizeof *signals, "signals", err)) < 0
+                      || (result = lstub__stride_or_one(criteria_stride, sizeof *criteria, "criteria", err)) < 0))
         return result;
     for (size_t i = 0; i < count; i++) {
         lstub_margin *put = (lstub_margin *)(void *)((char *)out + i * out_stride), ours;

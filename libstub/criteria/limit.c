@@ -120,7 +120,13 @@ int32_t lstub_longest_stub_batch(const lstub_stackup *stackup, const lstub_via *
                       || lstub__need(signals, "signals", err) < 0 || lstub__need(criteria, "criteria", err) < 0
                       || lstub__need(out, "out", err) < 0))
         return LSTUB_E_NULL;
-    if (count > 0 && (result = lstub__stride(out_stride, sizeof *out, "out", err)) < 0)
+    if (side_stride % sizeof(int32_t) != 0)
+        return lstub__fail(err, LSTUB_E_SIZE, "sides", -1, "sides: stride = %lu bytes: must be 0 or a multiple of %lu",
+                           (unsigned long)side_stride, (unsigned long)sizeof(int32_t));
+    if (count > 0 && ((result = lstub__stride(out_stride, sizeof *out, "out", err)) < 0
+                      || (result = lstub__stride_or_one(via_stride, sizeof *vias, "vias", err)) < 0
+                      || (result = lstub__stride_or_one(signal_stride, sizeof *signals, "signals", err)) < 0
+                      || (result = lstub__stride_or_one(criteria_stride, sizeof *criteria, "criteria", err)) < 0))
         return result;
     for (size_t i = 0; i < count; i++) {
         lstub_stub_limit *put = (lstub_stub_limit *)(void *)((char *)out + i * out_stride), ours;

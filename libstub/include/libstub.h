@@ -496,7 +496,7 @@ LSTUB_API int32_t lstub_longest_stub_batch(const lstub_stackup *stackup, const l
 /* Highest symbol rate (Bd, up to 1e12) at which the via still meets the criteria; +inf if nothing limits. */
 LSTUB_API int32_t lstub_highest_symbol_rate(const lstub_model *model, const lstub_criteria *criteria,
                                             double *symbol_rate, int32_t *limited_by, lstub_error *err);
-/* Margins of many vias: as above, one model each, compiled within. */
+/* Margins of many vias: as above, strides 0: the same for all; one model each, compiled within. */
 LSTUB_API int32_t lstub_margin_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t via_stride,
                                      const lstub_signal *signals, size_t signal_stride,
                                      const lstub_criteria *criteria, size_t criteria_stride, size_t count,
@@ -631,8 +631,8 @@ LSTUB_API int32_t lstub_plan_group_count(const lstub_plan *plan);               
 LSTUB_API int32_t lstub_plan_group(const lstub_plan *plan, int32_t index, lstub_drill_group *out, lstub_error *err);
 LSTUB_API int32_t lstub_plan_totals(const lstub_plan *plan, lstub_plan_summary *out, lstub_error *err);
 /*
-** One line of plain English that says why: "first notch 12.9 GHz is 0.97 x Nyquist, 2 wanted: drill from the
-** bottom to 1.702 mm". Needs a buffer of LSTUB_REASON_MAX bytes at most; ends with a zero byte.
+** One line of plain English that says why: "first notch 12.9 GHz is 0.97 x Nyquist (2 wanted), adds 3.1 dB
+** (0.3 allowed); drill from the bottom 1.7020 mm deep, clear of IN3". Needs a buffer of LSTUB_REASON_MAX bytes at most; ends with a zero byte.
 */
 #define LSTUB_REASON_MAX 256
 LSTUB_API int32_t lstub_plan_reason(const lstub_plan *plan, size_t index, char *text, size_t bytes, lstub_error *err);

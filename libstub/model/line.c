@@ -77,8 +77,8 @@ static double guided_notch(const seeing *s, double f, int n)
     if (s->line->lossless)
         return f;
     for (double spread = 0.05; spread < 0.9; spread *= 1.7) {
-        double low = f * (1.0 - spread / n), high = f * (1.0 + 0.5 * spread / n), edge = 1e-6 * f;
-        double found = lstub__minimum(power_at, s, low, high, 1e-10 * f);
+        double low = f * (1.0 - spread / n), high = f * (1.0 + 0.5 * spread / n), edge = 1e-4 * f;
+        double found = lstub__dip(power_at, s, low, high);
         if (found - low > edge && high - found > edge)
             return found;
     }
@@ -93,7 +93,7 @@ static double radial_notch(const seeing *s, double after, double f_max)
     while (f <= f_max) {
         double high = f * ratio, p_high = power_at(high, s);
         if (p < p_low && p <= p_high) {
-            double found = lstub__minimum(power_at, s, low, high, 1e-9 * f);
+            double found = lstub__dip(power_at, s, low, high);
             return found <= f_max ? found : HUGE_VAL;
         }
         low = f;

@@ -85,6 +85,26 @@ double lstub__minimum(lstub__function *f, const void *context, double a, double 
     return x;
 }
 
+typedef struct difference {
+    lstub__function *f;
+    const void *context;
+    double h;
+} difference;
+
+static double central(double x, const void *context)
+{
+    const difference *d = context;
+    return d->f(x + d->h, d->context) - d->f(x - d->h, d->context);
+}
+
+double lstub__dip(lstub__function *f, const void *context, double a, double b)
+{
+    double x = lstub__minimum(f, context, a, b, 2e-5 * b), reach = 1e-4 * x;
+    difference d = {f, context, 1e-6 * x};
+    double sharp = lstub__root(central, &d, fmax(a, x - reach), fmin(b, x + reach), 1e-13 * x);
+    return isnan(sharp) ? x : sharp;
+}
+
 /* t + atan(q t) = (n - 1/2) pi: rising and concave, so Newton from 0 comes from the left and never leaves. */
 double lstub__open_stub_angle(double q, int n)
 {

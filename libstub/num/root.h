@@ -17,6 +17,9 @@ double lstub__root(lstub__function *f, const void *context, double a, double b, 
 ** f with one minimum there. */
 double lstub__minimum(lstub__function *f, const void *context, double a, double b, double tol);
 
+/* The same for x > 0 to 1e-10 x: then the zero of the central difference over 1e-6 x, which rounding blurs far less. */
+double lstub__dip(lstub__function *f, const void *context, double a, double b);
+
 /* Electrical length of an open stub with an end load at its zero of reactance number n = 1, 2 ...: the root of
 ** cot t = q t between (n-1) pi and (n-1/2) pi, q >= 0. */
 double lstub__open_stub_angle(double q, int n);

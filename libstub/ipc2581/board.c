@@ -152,7 +152,7 @@ static int32_t check_index(const lstub_board *board, size_t index, size_t count,
     if (board == NULL)
         return lstub__fail(err, LSTUB_E_NULL, "board", -1, "board = null: must not be null");
     if (index >= count)
-        return lstub__fail(err, LSTUB_E_NONE, "index", (int64_t)index, "index = %lu: must be < %lu", (unsigned long)index, (unsigned long)count);
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "index", (int64_t)index, "index = %lu: must be < %lu", (unsigned long)index, (unsigned long)count);
     return LSTUB_OK;
 }
 

@@ -1,7 +1,7 @@
 /*
 ** Small boards in IPC-2581 for the suites of the reader. A board is put together from parts; a test replaces those it
 ** is about. Numbers in braces, "{0.25}", are millimetres, written in the units that the board is to have; in square
-** brackets, "[0.5]", in those of its dictionaries.
+** brackets, "[0.5]", in those of its dictionaries. The suite defines BOARD_FILE, a name of its own: suites may run at once.
 */
 #ifndef CHECK_IPC2581_H
 #define CHECK_IPC2581_H
@@ -10,8 +10,8 @@
 
 #include "check_util.h"
 
-#define BOARD_FILE "check_board.xml"
 #define MM 1e-3
+#define BY_HAND "by hand from the file"
 
 typedef struct test_xml {
     const char *units, *dictionary_units;   /* NULL: not written */
@@ -76,6 +76,23 @@ static inline test_xml board_parts(void)
         ""};
     return b;
 }
+
+/* Parts of boards: holes, features, drill layers. */
+#define HOLE(name, net, x, y) \
+    "<Set net=\"" net "\" geometry=\"VIA\"><Hole name=\"" name "\" diameter=\"{0.25}\" platingStatus=\"VIA\" x=\"{" x "}\" y=\"{" y "}\"/></Set>"
+#define ON(layer, features) "<LayerFeature layerRef=\"" layer "\">" features "</LayerFeature>"
+#define TRACE(net, x0, y0, x1, y1) \
+    "<Set net=\"" net "\"><Features><Location x=\"0\" y=\"0\"/><Line startX=\"{" x0 "}\" startY=\"{" y0 "}\" endX=\"{" x1 "}\" endY=\"{" y1 "}\">" \
+    "<LineDescRef id=\"L\"/></Line></Features></Set>"
+#define PAD_OF(net, id, x, y, more) \
+    "<Set net=\"" net "\"><Pad padstackDefRef=\"VIA\">" more "<Location x=\"{" x "}\" y=\"{" y "}\"/><StandardPrimitiveRef id=\"" id "\"/></Pad></Set>"
+#define SPAN(name, from, to) "<Layer name=\"" name "\" layerFunction=\"DRILL\"><Span fromLayer=\"" from "\" toLayer=\"" to "\"/></Layer>"
+#define RECTANGLE(x0, y0, x1, y1) \
+    "<PolyBegin x=\"{" x0 "}\" y=\"{" y0 "}\"/><PolyStepSegment x=\"{" x1 "}\" y=\"{" y0 "}\"/><PolyStepSegment x=\"{" x1 "}\" y=\"{" y1 "}\"/>" \
+    "<PolyStepSegment x=\"{" x0 "}\" y=\"{" y1 "}\"/><PolyStepSegment x=\"{" x0 "}\" y=\"{" y0 "}\"/>"
+#define CIRCLE(x0, x1, x, y) \
+    "<PolyBegin x=\"{" x1 "}\" y=\"{" y "}\"/><PolyStepCurve x=\"{" x1 "}\" y=\"{" y "}\" centerX=\"{" x "}\" centerY=\"{" y "}\" clockwise=\"false\"/>"
+#define AREA(net, rings) "<Set net=\"" net "\"><Features><Location x=\"0\" y=\"0\"/><Contour>" rings "</Contour></Features></Set>"
 
 static inline double unit_of(const char *units)
 {

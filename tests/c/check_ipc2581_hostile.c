@@ -1,4 +1,5 @@
 /* The reader of boards against files that are not boards, broken ones, and a machine without memory. */
+#define BOARD_FILE "check_hostile.xml"
 #include "check_ipc2581.h"
 
 static lstub_error err;
@@ -104,9 +105,9 @@ START_TEST(indexes)
     poison(hole);
     poison(via);
     poison(notice);
-    assert_refused(lstub_board_hole(board, 1, &hole, &err), LSTUB_E_NONE, err, "index = 1|< 1");
-    assert_refused(lstub_board_via(board, 1, &via, &err), LSTUB_E_NONE, err, "index = 1|< 1");
-    assert_refused(lstub_board_notice(board, 99, &notice, &err), LSTUB_E_NONE, err, "index = 99");
+    assert_refused(lstub_board_hole(board, 1, &hole, &err), LSTUB_E_ARGUMENT, err, "index = 1|< 1");
+    assert_refused(lstub_board_via(board, 1, &via, &err), LSTUB_E_ARGUMENT, err, "index = 1|< 1");
+    assert_refused(lstub_board_notice(board, 99, &notice, &err), LSTUB_E_ARGUMENT, err, "index = 99");
     assert_refused(lstub_board_hole(NULL, 0, &hole, &err), LSTUB_E_NULL, err, "board");
     assert_untouched(hole);
     assert_untouched(via);
@@ -128,7 +129,7 @@ static const text_case texts[] = {
     {"", "the file is empty", LSTUB_E_FORMAT},
     {"hello", "line 1, column 1|not XML", LSTUB_E_FORMAT},
     {"\x01\x02\x03\xff", "not XML", LSTUB_E_FORMAT},
-    {"\x1f\x8bgarbage that only begins as gzip does", "check_board.xml", LSTUB_E_READ},
+    {"\x1f\x8bgarbage that only begins as gzip does", "check_hostile.xml", LSTUB_E_READ},
     {"<html><body/></html>", "line 1|<html>|<IPC-2581>", LSTUB_E_FORMAT},
     {"<?xml version=\"1.0\" encoding=\"KLINGON\"?><IPC-2581/>", "not XML|encoding", LSTUB_E_FORMAT},
     {DOCUMENT(""), "CadHeader", LSTUB_E_FORMAT},
@@ -296,7 +297,7 @@ START_TEST(cut_short)
     ck_assert_int_eq(load_path(BOARD_FILE), LSTUB_OK);
     zipped[n - 6] ^= 1;                                  /* the checksum */
     write_bytes(BOARD_FILE, zipped, n);
-    assert_refused(load_path(BOARD_FILE), LSTUB_E_READ, err, "check_board.xml");
+    assert_refused(load_path(BOARD_FILE), LSTUB_E_READ, err, "check_hostile.xml");
     free(text);
     free(zipped);
 }

@@ -482,7 +482,6 @@ START_TEST(bad_batches)
         poison(m[i]);
         poison(l[i]);
     }
-    assert_refused(lstub_margin_batch(NULL, b.via, sizeof b.via[0], b.signal, 0, b.criteria, 0, 2, NULL, m, sizeof m[0], NULL, &err), LSTUB_E_NULL, err, "stackup|null");
     assert_refused(lstub_margin_batch(board.stackup, NULL, 0, b.signal, 0, b.criteria, 0, 2, NULL, m, sizeof m[0], NULL, &err), LSTUB_E_NULL, err, "vias|null");
     assert_refused(lstub_margin_batch(board.stackup, b.via, 8, b.signal, 0, b.criteria, 0, 2, NULL, m, sizeof m[0], NULL, &err), LSTUB_E_SIZE, err, "vias|stride = 8");
     assert_refused(lstub_margin_batch(board.stackup, b.via, 0, b.signal, 8, b.criteria, 0, 2, NULL, m, sizeof m[0], NULL, &err), LSTUB_E_SIZE, err, "signals|stride = 8");
@@ -494,7 +493,9 @@ START_TEST(bad_batches)
     for (int i = 0; i < BATCH; i++) {
         assert_untouched(m[i]);
         assert_untouched(l[i]);
+        LSTUB_INIT(m[i]);
     }
+    assert_refused(lstub_margin_batch(NULL, b.via, sizeof b.via[0], b.signal, 0, b.criteria, 0, 2, NULL, m, sizeof m[0], NULL, &err), LSTUB_E_NULL, err, "stackup|null");
     assert_ok(lstub_margin_batch(board.stackup, NULL, 0, NULL, 0, NULL, 0, 0, NULL, NULL, 0, NULL, &err), err);
     assert_ok(lstub_longest_stub_batch(board.stackup, NULL, 0, NULL, 0, NULL, 0, NULL, 0, 0, NULL, NULL, 0, NULL, &err), err);
 }

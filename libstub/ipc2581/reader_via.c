@@ -293,7 +293,7 @@ static int32_t fill(reader *r, draft *d, board_hole *hole)
         || (status = give_clear(r, d, via)) < 0)
         return status;
     via->pin_length = lstub__rules_pin(r->rules, hole->padstack);
-    if (via->pin_length > 0.0)
+    if (via->pin_length > 0.0 || s->kind == LSTUB_HOLE_PIN)
         via->pin_side = known_side(r, d);
     return lstub__reader_backdrills(r, s, via);
 }

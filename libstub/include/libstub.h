@@ -309,7 +309,8 @@ typedef struct lstub_via {
     const lstub_backdrill *backdrills; size_t backdrill_count;  /* at most one a side                  */
     int32_t pin_side;              /* side a component's pin enters from; 0: no pin                    */
     int32_t reserved;
-    double  pin_length;            /* press-fit: least barrel to keep from that side's surface, m; 0: any */
+    double  pin_length;            /* press-fit: least barrel to keep from that side's surface, m; 0: the pin
+                                      is soldered and fills the hole, which is then never drilled      */
 } lstub_via;
 
 typedef struct lstub_stub {        /* a piece of barrel beyond the outermost layers that connect        */

@@ -43,14 +43,15 @@ static void keep_off_copper(lstub__room *room, const lstub__site *site, int arm,
     }
 }
 
-/* A pin sits in the barrel from its own surface down: never drilled from there, and not too near from the other side. */
+/* A pin sits in the barrel from its own surface down: never drilled from there, and not too near from the other side.
+** A soldered one fills the hole. */
 static void keep_pin(lstub__room *room, const lstub__site *site, int arm)
 {
     const lstub__via *via = &site->via;
     const lstub_stackup *s = via->stackup;
-    if (via->in.pin_side == 0 || via->in.pin_length == 0.0)
+    if (via->in.pin_side == 0)
         return;
-    if (via->in.pin_side == lstub__side_of(arm)) {
+    if (via->in.pin_side == lstub__side_of(arm) || via->in.pin_length == 0.0) {
         room->value = 0.0;
         room->limit = via->in.pin_length;
         refuse(room, LSTUB_REASON_PIN);

@@ -123,7 +123,10 @@ static void say_cannot(sentence *s, const lstub_plan *plan, const lstub_decision
         say(s, "no allowed depth from %.4f to %.4f mm", d->reason_value * 1e3, d->reason_limit * 1e3);
         break;
     case LSTUB_REASON_PIN:
-        say(s, "the pin needs %.4f mm of barrel", d->reason_limit * 1e3);
+        if (d->reason_limit > 0.0)
+            say(s, "the pin needs %.4f mm of barrel", d->reason_limit * 1e3);
+        else
+            say(s, "a soldered pin fills the hole");
         break;
     default:
         say(s, "%s", lstub_reason_name(d->reason));

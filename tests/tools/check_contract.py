@@ -5,6 +5,7 @@ that does too many things, no note of unfinished work.
     check_contract.py ROOT
 """
 import re
+import shutil
 import subprocess
 import sys
 from pathlib import Path
@@ -21,11 +22,12 @@ BAD = [
 
 
 def tracked(root):
-    """Files under version control; those of the tree where there is no git (an unpacked archive)."""
-    run = subprocess.run(["git", "-C", root, "ls-files", "-z"], capture_output=True, text=True)
-    if run.returncode == 0 and run.stdout:
-        return [name for name in run.stdout.split("\0") if name]
-    skip = re.compile(r"(^|/)(\.git|build[^/]*|out|__pycache__|[^/]*\.egg-info)(/|$)")
+    """Files under version control; those of the tree where git is not there or knows nothing (an unpacked archive)."""
+    if shutil.which("git"):
+        run = subprocess.run(["git", "-C", root, "ls-files", "-z"], capture_output=True, text=True)
+        if run.returncode == 0 and run.stdout:
+            return [name for name in run.stdout.split("\0") if name]
+    skip = re.compile(r"(^|/)(\.git|\.venv|build[^/]*|out|__pycache__|[^/]*\.egg-info)(/|$)")
     names = (str(p.relative_to(root)) for p in Path(root).rglob("*") if p.is_file())
     return [name for name in names if not skip.search(name)]
 

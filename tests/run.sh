@@ -18,8 +18,13 @@ python=$dir/venv/bin/python
 [ -x "$python" ] || python3 -m venv "$dir/venv"
 "$python" -m pip install --quiet --disable-pip-version-check \
     'numpy>=1.24' 'scipy>=1.10' 'matplotlib>=3.6' 'pytest>=7.2' 'setuptools>=64' wheel
-"$python" -m pip install --quiet --disable-pip-version-check --force-reinstall --no-deps --no-build-isolation \
-    ./bindings/python
+binding() {     # options of pip: the Python binding as it is now
+    "$python" -m pip install --quiet --disable-pip-version-check --no-deps --no-build-isolation "$@" ./bindings/python
+}
+binding --force-reinstall
+rm -rf "$dir/python-sanitize"
+CC=clang LDSHARED="clang -shared" CFLAGS="-g -fsanitize=address,undefined -fno-sanitize-recover=all" \
+    LDFLAGS="-fsanitize=address,undefined -shared-libasan" binding --target "$dir/python-sanitize"
 
 configure() {   # folder, compiler, target, options
     folder=$1
@@ -33,7 +38,8 @@ configure() {   # folder, compiler, target, options
         { cat "$dir/$folder.log"; exit 1; }
 }
 configure release gcc all -DCMAKE_BUILD_TYPE=Release "-DLSTUB_TEST_PYTHON=$python"
-configure sanitize clang all -DCMAKE_BUILD_TYPE=RelWithDebInfo -DLSTUB_SANITIZE=address,undefined
+configure sanitize clang all -DCMAKE_BUILD_TYPE=RelWithDebInfo -DLSTUB_SANITIZE=address,undefined \
+    "-DLSTUB_TEST_PYTHON=$python" "-DLSTUB_TEST_PYTHONPATH=$dir/python-sanitize"
 configure threads clang check_threads -DCMAKE_BUILD_TYPE=RelWithDebInfo -DLSTUB_SANITIZE=thread
 
 # Each is run to the end, whatever fails in the others. Options may name tests that only one of them has.

@@ -80,7 +80,7 @@ int32_t lstub__judge(const lstub__branch *branches, int32_t count, double z_ref,
     margin->notch_margin = demand->notch_ratio > 0.0 ? margin->f1 - demand->notch_ratio * demand->nyquist : NAN;
     margin->added_loss_db = count > 0 ? lstub__branches_loss_db(branches, count, z_ref, demand->nyquist) : 0.0;
     margin->loss_margin_db = demand->loss_db > 0.0 ? demand->loss_db - margin->added_loss_db : NAN;
-    margin->pass = margin->f1 >= demand->least_f1 && !(margin->loss_margin_db < 0.0);
+    margin->pass = margin->f1 >= demand->least_f1 && (demand->loss_db == 0.0 || margin->loss_margin_db >= 0.0);
     margin->limited_by = limited_by(margin, demand);
     lstub_rule_of_thumb_length(demand->bit_rate, &margin->rule_length, NULL);
     for (int32_t i = 0; i < count; i++) {

@@ -395,7 +395,7 @@ LSTUB_API int32_t lstub_model_zin(const lstub_model *model, int32_t stub, const 
 /* Transmission past the stub on a line of z_ref matched at both ends: 2 Zin/(2 Zin + z_ref). s21[2 n]. */
 LSTUB_API int32_t lstub_model_s21(const lstub_model *model, int32_t stub, const double *freq, size_t n,
                                   double *s21, int32_t *status, lstub_error *err);
-/* Loss that the stubs add, dB >= 0: -20 log10 |S21|. loss[n]. */
+/* Loss that the stubs add, dB, 0 to 300: -20 log10 |S21|. loss[n]. */
 LSTUB_API int32_t lstub_model_added_loss(const lstub_model *model, int32_t stub, const double *freq, size_t n,
                                          double *loss, int32_t *status, lstub_error *err);
 

@@ -43,7 +43,9 @@ double lstub__branches_power(const lstub__branch *branches, int32_t count, doubl
 double lstub__branches_loss_db(const lstub__branch *branches, int32_t count, double z_ref, double f)
 {
     double loss = -10.0 * log10(lstub__branches_power(branches, count, z_ref, f));
-    return loss > 0.0 ? loss : 0.0;    /* rounding of a stub that does nothing */
+    if (loss < 0.0)                    /* rounding of a stub that does nothing */
+        return 0.0;
+    return loss > LSTUB__LOSS_MOST ? LSTUB__LOSS_MOST : loss;    /* a NaN stays one */
 }
 
 double lstub__branches_first_notch(const lstub__branch *branches, int32_t count, double z_ref, int32_t *which)

@@ -21,6 +21,8 @@ cplx    lstub__branch_admittance(const lstub__branch *branch, double f);
 /* The lowest notch (least |S21|) above `after`, up to f_max; HUGE_VAL where there is none. */
 double  lstub__branch_notch(const lstub__branch *branch, double z_ref, double after, double f_max);
 
+#define LSTUB__LOSS_MOST 300.0     /* dB, of a lossless notch: a zero, whatever rounding leaves of it           */
+
 /* Several branches at one place: |S21| squared, loss, first notch of all (HUGE_VAL; *which: whose, or -1). */
 cplx    lstub__branches_admittance(const lstub__branch *branches, int32_t count, double f);
 double  lstub__branches_power(const lstub__branch *branches, int32_t count, double z_ref, double f);

@@ -34,7 +34,10 @@ cplx lstub__line_admittance(const lstub__line *line, double f)
     cplx ys = cplx_div(c, root);
     cplx t = cplx_tanh(cplx_scale(cplx_of(-root.im, root.re), w * line->length));
     cplx yl = cplx_of(0.0, w * line->c_end);
-    return cplx_mul(ys, cplx_div(cplx_add(yl, cplx_mul(ys, t)), cplx_add(ys, cplx_mul(yl, t))));
+    cplx down = cplx_add(ys, cplx_mul(yl, t));
+    if (cplx_norm(down) == 0.0)              /* on the very notch of a lossless stub */
+        return cplx_of(LSTUB__SHORT, 0.0);
+    return cplx_mul(ys, cplx_div(cplx_add(yl, cplx_mul(ys, t)), down));
 }
 
 /* ---- notches ----------------------------------------------------------------------------------- */

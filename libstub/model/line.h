@@ -7,6 +7,8 @@
 #define LSTUB__F_MIN 1e6     /* Hz, band that the model answers for */
 #define LSTUB__F_MAX 1e12
 
+#define LSTUB__SHORT 1e30    /* S, admittance of a short circuit */
+
 typedef struct lstub__line {
     double length;             /* m                                                                       */
     double c_constant, c_slope; /* F/m: C'(f) = c_constant + c_slope lambda(f)                            */

@@ -4,8 +4,6 @@
 
 #include <math.h>
 
-#define DEPTH_FLOOR (-300.0)   /* dB, of a lossless notch: a zero, whatever rounding leaves of it */
-
 typedef struct seeing {
     const lstub__branch *branch;
     double z_ref, level;
@@ -50,9 +48,9 @@ static void describe(const lstub__branch *branch, double z_ref, double before, d
     double reach = 0.5 * (f - before);
     LSTUB_INIT(*out);
     out->f = f;
-    out->depth_db = fmax(10.0 * log10(0.5 * s.level), DEPTH_FLOOR);
+    out->depth_db = fmax(10.0 * log10(0.5 * s.level), -LSTUB__LOSS_MOST);
     if (branch->lossless) {
-        out->depth_db = DEPTH_FLOOR;
+        out->depth_db = -LSTUB__LOSS_MOST;
         out->f_series = f;
         out->q = HUGE_VAL;
         return;

@@ -137,6 +137,7 @@ typedef struct walk {          /* the region that a layer lies in, kept while wa
     mix     fill;
     double  per_metre;
     double  antipad;           /* the smaller of the two, 0: none */
+    int     lossless;
 } walk;
 
 static void enter_region(walk *w, const lstub__via *via, int32_t layer, int32_t step, double lambda, region_memory *memory)
@@ -147,8 +148,11 @@ static void enter_region(walk *w, const lstub__via *via, int32_t layer, int32_t 
     int32_t low = w->inner < 0 ? (step > 0 ? via->in.start_layer : via->in.end_layer) : w->inner + step;
     int32_t high = w->outer < 0 ? (step > 0 ? via->in.end_layer : via->in.start_layer) : w->outer - step;
     memset(&w->fill, 0, sizeof w->fill);
-    for (int32_t i = low; step > 0 ? i <= high : i >= high; i += step)
+    w->lossless = 1;
+    for (int32_t i = low; step > 0 ? i <= high : i >= high; i += step) {
         mix_add(&w->fill, &s->layer[i], lambda);
+        w->lossless &= s->layer[i].dielectric.loss_tangent == 0.0;
+    }
     mix_done(&w->fill);
     double a = antipad_at(via, w->inner), b = antipad_at(via, w->outer);
     w->per_metre = region_capacitance(via, a, b, &w->fill, memory);
@@ -244,6 +248,7 @@ static void make_arm(lstub__arm *arm, const lstub__via *via, int index, double l
         if (!inside) {
             enter_region(&w, via, i, step, lambda, memory);
             add_range(arm, w.fill.height, w.fill.in_plane);
+            arm->lossless &= w.lossless;
             inside = 1;
         }
         region_part(part, via, i, &w);

@@ -131,7 +131,7 @@ void lstub__room_limit(lstub__room *room, double longest, const lstub__capabilit
     if (room->low == HUGE_VAL)
         return;
     room->high = fmin(longest, room->full) - room->grow;
-    if (room->low > room->high) {
+    if (room->low > room->high || longest <= 0.0) {
         if (room->reason == LSTUB_REASON_FAILS) {
             room->reason = LSTUB_REASON_LIMIT_TOO_SHORT;
             room->value = room->low + room->grow;

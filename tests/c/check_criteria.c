@@ -122,6 +122,26 @@ START_TEST(notch_below_nyquist_is_no_pass)
 }
 END_TEST
 
+/* A notch right on Nyquist is no pass either, with loss or without. */
+START_TEST(notch_on_nyquist_is_no_pass)
+{
+    for (int lossless = 0; lossless < 2; lossless++) {
+        lstub_via via = board_via(to_c1, 2);
+        board.dielectric.loss_tangent = lossless ? 0 : 0.004;
+        teardown();
+        assert_ok(board_create(&board, NULL, &err), err);
+        for (int i = 0; i < 200; i++) {
+            int32_t connects[2] = {0, copper(1 + i % 6)};
+            via.connects = connects;
+            via.drill = 0.2e-3 + 1e-6 * i;
+            double f1 = margin(&via, signal_of(1e9, 2), criteria_of(1, 0)).f1;
+            lstub_margin m = margin(&via, signal_of(2 * f1, 2), criteria_of(0, 3));
+            ck_assert_msg(!m.pass && m.added_loss_db > 20 && m.loss_margin_db < -17, "notch on Nyquist: pass %d, %g dB", (int)m.pass, m.added_loss_db);
+        }
+    }
+}
+END_TEST
+
 START_TEST(faster_signal_smaller_margin)
 {
     lstub_via via = board_via(to_c4, 2);
@@ -513,6 +533,7 @@ int main(void)
     tcase_add_test(truth, only_what_is_asked);
     tcase_add_test(truth, no_stub_no_limit);
     tcase_add_test(truth, notch_below_nyquist_is_no_pass);
+    tcase_add_test(truth, notch_on_nyquist_is_no_pass);
     tcase_add_test(truth, faster_signal_smaller_margin);
     tcase_add_test(truth, stub_of_25_mil);
     tcase_add_test(truth, longest_stub_turned_back);

@@ -85,6 +85,54 @@ START_TEST(notches_of_radiating_barrels)
 }
 END_TEST
 
+/* At the very notch of a loss-free stub its admittance is infinite: a short, not a hole in the answers. */
+START_TEST(exact_notch_of_a_lossless_stub)
+{
+    teardown();
+    setup_loss(0.0);
+    for (uint64_t i = 0; i < 60; i++) {
+        int32_t connects[2];
+        lstub_via via = random_via(7, i, connects);
+        if (via.return_kind == LSTUB_RETURN_NONE)
+            continue;
+        lstub_model *model = model_on(board.stackup, &via, 1 + (int32_t)(i % 2));
+        lstub_notch notches[32];
+        size_t n = notches_of(model, LSTUB_ALL_STUBS, 300e9, notches, COUNT(notches));
+        for (size_t k = 0; k < n && k < COUNT(notches); k++)
+            for (int step = -1; step <= 1; step++) {
+                double f = notches[k].f * (1 + step * 2.3e-16), s21[2], loss = loss_of(model, notches[k].stub, f);
+                complex_value z = zin_of(model, notches[k].stub, f);
+                ck_assert_int_ge(lstub_model_s21(model, LSTUB_ALL_STUBS, &f, 1, s21, NULL, &err), 0);
+                ck_assert_msg(hypot(s21[0], s21[1]) < 1e-6, "S21 at the notch: %g %g", s21[0], s21[1]);
+                ck_assert_msg(hypot(z.re, z.im) < 1e-4, "Zin at the notch: %g %g ohm", z.re, z.im);
+                ck_assert_msg(loss > 120 && loss <= 400, "loss at the notch: %g dB", loss);
+            }
+        lstub_model_destroy(model);
+    }
+}
+END_TEST
+
+/* Loss-free below the exit, lossy above it: what the field around the exit meets decides. */
+START_TEST(loss_on_the_other_side_of_the_exit)
+{
+    lstub_dielectric lossy = board.dielectric, free = board.dielectric;
+    int32_t connects[] = {0, 4};                 /* exit on C2, a signal layer: one region from C1 to C3 */
+    lstub_via via = board_via(connects, 2);
+    teardown();
+    lossy.loss_tangent = 0.1;
+    free.loss_tangent = 0.0;
+    for (size_t i = 1; i < board.count; i += 2)
+        board.layer[i].dielectric = i < 5 ? &lossy : &free;
+    assert_ok(board_create(&board, NULL, &err), err);
+    lstub_model *model = model_on(board.stackup, &via, LSTUB_FIDELITY_LOADED);
+    lstub_notch notch;
+    ck_assert_uint_ge(notches_of(model, 0, 200e9, &notch, 1), 1);
+    assert_close(notch.depth_db, -loss_of(model, 0, notch.f), 0, 0.01, "identity: depth is |S21| at the notch");
+    compare_with_scan(model, 200e9);
+    lstub_model_destroy(model);
+}
+END_TEST
+
 START_TEST(two_stubs_and_all)
 {
     lstub_via via = board_via(inner, 2);
@@ -223,6 +271,8 @@ int main(void)
     tcase_set_timeout(found, 120);
     tcase_add_loop_test(found, notches_are_the_minima_of_s21, 0, (int)COUNT(loss_tangents));
     tcase_add_test(found, notches_of_radiating_barrels);
+    tcase_add_test(found, exact_notch_of_a_lossless_stub);
+    tcase_add_test(found, loss_on_the_other_side_of_the_exit);
     tcase_add_test(found, two_stubs_and_all);
     tcase_add_test(found, more_notches_than_room);
     tcase_add_test(batches, batch_is_its_parts);

@@ -305,6 +305,28 @@ START_TEST(random_boards)
 }
 END_TEST
 
+/* A fabricator who can do everything exactly: residuals of nothing are allowed, and whatever is drilled passes. */
+START_TEST(random_boards_without_tolerances)
+{
+    static job_set set;
+    lstub_capability c;
+    LSTUB_INIT(c);
+    teardown();
+    board_of(0);
+    for (uint64_t seed = 1; seed <= BOARDS; seed++) {
+        random_jobs(&set, seed, 10);
+        lstub_plan *plan = plan_of(&set, &c);
+        for (size_t i = 0; i < set.count; i++) {
+            lstub_decision d = decision_of(plan, i);
+            check_decision(&set, i, &c, &d);
+            ck_assert_int_eq(d.after.pass, d.action != LSTUB_ACTION_CANNOT);
+        }
+        check_depths(plan, set.count);
+        lstub_plan_destroy(plan);
+    }
+}
+END_TEST
+
 /* The same with a list of allowed depths: each depth is one of them, and their number the fewest. */
 START_TEST(random_boards_with_allowed_depths)
 {
@@ -370,6 +392,7 @@ int main(void)
     tcase_add_checked_fixture(boards, setup, teardown);
     tcase_set_timeout(boards, 240);
     tcase_add_test(boards, random_boards);
+    tcase_add_test(boards, random_boards_without_tolerances);
     tcase_add_test(boards, random_boards_with_allowed_depths);
     tcase_add_test(boards, order_and_copies_do_not_matter);
     suite_add_tcase(suite, boards);

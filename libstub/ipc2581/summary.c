@@ -341,7 +341,7 @@ static int32_t drills_block(page *p, const lstub_board *board, const lstub_plan 
         say(p, "  nothing to drill\n");
         return LSTUB_OK;
     }
-    say(p, "  row side      bit from             not through        target   depth    +/-  stub left   hits\n");
+    say(p, "  row side      bit from             must not cut       target   depth    +/-  stub left   hits\n");
     say(p, "                 mm                                         mm     mil     mm  at most mm\n");
     for (i = 0; i < count && status == LSTUB_OK; i++) {
         lstub_drill_group group;
@@ -363,6 +363,7 @@ static int32_t drills_block(page *p, const lstub_board *board, const lstub_plan 
         integer(p, group.hits, 7);
         end_line(p);
     }
+    say(p, "  depth: from the outer face of that side's copper; stub left: with all tolerances\n");
     say(p, "  Different depths: ");
     count_of(p, totals->depths_bottom, "from the bottom, ");
     count_of(p, totals->depths_top, "from the top: the fewest that serve the holes drilled.\n");

@@ -181,7 +181,9 @@ static int32_t pump(lstub__xml *xml, gzFile file, const char *path)
             return lstub__fail(xml->err, LSTUB_E_MEMORY, "path", -1, "out of memory in the XML parser");
         int got = gzread(file, room, CHUNK), code = Z_OK;
         if (got < CHUNK) {
-            const char *what = gzerror(file, &code);
+            const char *what = gzerror(file, &code);    /* "path: what" */
+            if (strncmp(what, path, strlen(path)) == 0 && what[strlen(path)] == ':')      /* zlib begins with the path */
+                what += strlen(path) + 2;
             if (got < 0 || code == Z_BUF_ERROR)
                 return fail_read(xml, path, code == Z_BUF_ERROR ? "the compressed data end too early: cut off?"
                                             : code == Z_ERRNO   ? "cannot be read (is it a file?)" : what);
@@ -193,7 +195,7 @@ static int32_t pump(lstub__xml *xml, gzFile file, const char *path)
         if (XML_ParseBuffer(xml->parser, got, got == 0) != XML_STATUS_OK)
             return fail_syntax(xml);
         if (got == 0)
-            return LSTUB_OK;
+            return xml->progress != NULL ? tell_progress(xml, file, size, path) : LSTUB_OK;
         int32_t status = check_token(xml);
         if (status == LSTUB_OK && xml->progress != NULL && count % 8 == 0)
             status = tell_progress(xml, file, size, path);

@@ -41,6 +41,11 @@ rules=${LSTUB_RULES:-$rules}
 [ -f "$board" ] || fail "no such board file: '$board'"
 [ -f "$rules" ] || fail "no such rules file: '$rules'"
 mkdir -p -- "$out" || fail "cannot make the folder '$out'"
+for output in plan.csv drill_table.csv "backdrilled_$name"; do    # also where a link leads there
+    for input in "$board" "$rules"; do
+        [ ! "$out/$output" -ef "$input" ] || fail "'$out/$output' is an input, '$input': it would be overwritten"
+    done
+done
 
 sh "$here/install_packages.sh" gcc libc6-dev make cmake libexpat1-dev zlib1g-dev
 

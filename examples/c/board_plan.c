@@ -50,7 +50,7 @@ int main(int argc, char **argv)
     LSTUB_INIT(options);
     options.progress = show_progress;
     options.progress_user = &tenths;
-    if (argc != 4) {
+    if (argc != 4 || argv[3][0] == '\0') {
         fprintf(stderr, "usage: board_plan BOARD.xml[.gz] RULES.txt OUTDIR\n");
         return 1;
     }
@@ -75,6 +75,7 @@ int main(int argc, char **argv)
     }
     must(lstub_board_summary(board, plan, text, needed, &needed, &err), &err);
     printf("%s", text);
+    fflush(stdout);      /* the summary before what goes to stderr next */
 
     fprintf(stderr, "writing %s, %s, %s\n", plan_csv, drill_csv, copy);
     must(lstub_board_write_plan_csv(board, plan, plan_csv, &err), &err);

@@ -11,7 +11,7 @@ local function must(value, message, code)
     return value
 end
 
-if #arg ~= 3 then
+if #arg ~= 3 or arg[3] == "" then
     io.stderr:write("usage: board_plan.lua BOARD.xml[.gz] RULES.txt OUTDIR\n")
     os.exit(1)
 end
@@ -34,6 +34,7 @@ must(board, message, code)
 io.stderr:write(string.format("planning %d holes\n", board:hole_count()))
 local plan = must(board:plan(rules))
 io.write(must(board:summary(plan)))
+io.flush()
 
 io.stderr:write(string.format("writing %s, %s, %s\n", plan_csv, drill_csv, copy))
 must(board:write_plan_csv(plan, plan_csv))

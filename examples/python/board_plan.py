@@ -21,7 +21,7 @@ def show_progress():
 
 
 def main(arguments):
-    if len(arguments) != 3:
+    if len(arguments) != 3 or not arguments[2]:
         print("usage: board_plan.py BOARD.xml[.gz] RULES.txt OUTDIR", file=sys.stderr)
         return 1
     path, rules_path, out = arguments
@@ -37,7 +37,7 @@ def main(arguments):
             print(file=sys.stderr)
         print("planning %d holes" % len(board), file=sys.stderr)
         plan = board.plan()
-        print(board.summary(plan), end="")
+        print(board.summary(plan), end="", flush=True)
         print("writing %s, %s, %s" % (plan_csv, drill_csv, copy), file=sys.stderr)
         board.write_plan_csv(plan, plan_csv)
         board.write_drill_csv(plan, drill_csv)

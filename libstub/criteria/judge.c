@@ -52,7 +52,7 @@ int32_t lstub__demand_make(lstub__demand *demand, const lstub_signal *signal, co
 double lstub__left_over(const lstub__branch *branches, int32_t count, double z_ref, const lstub__demand *demand)
 {
     int32_t which;
-    double f1 = lstub__branches_first_notch(branches, count, z_ref, &which), left = f1 / demand->least_f1 - 1.0;
+    double f1 = lstub__branches_first_notch(branches, count, z_ref, &which), left = fmin(f1 / demand->least_f1 - 1.0, 4.0);
     if (demand->loss_db > 0.0 && f1 > demand->nyquist)
         left = fmin(left, 1.0 - lstub__branches_loss_db(branches, count, z_ref, demand->nyquist) / demand->loss_db);
     return left;

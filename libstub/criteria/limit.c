@@ -4,13 +4,15 @@
 
 #include <math.h>
 
-#define LENGTH_STEP 1e-9    /* m, to which a limit is found: far below any drill */
+#define LENGTH_STEP   1e-9  /* m, to which a limit is found: far below any drill */
+#define COMPILED_STEP 1e-7  /* m, where every length needs a model of its own    */
 
 typedef struct cutting {
     const lstub__site *site;
     const lstub__demand *demand;
     int      arm;
     const lstub__branch *other;
+    int      closed;           /* with the closed form in place of the branches                */
     int32_t *status;           /* of the first branch that could not be made */
     lstub_error *err;
 } cutting;
@@ -18,6 +20,12 @@ typedef struct cutting {
 /* The branch cut to a length and its neighbour; their number, 0 where it could not be made. */
 static int32_t branches_at(const cutting *c, double length, lstub__branch *branches)
 {
+    if (c->closed) {
+        lstub__branch_closed(&branches[0], c->site, c->arm, length);
+        if (c->other != NULL)
+            lstub__branch_closed(&branches[1], c->site, 1 - c->arm, c->other->length);
+        return c->other == NULL ? 1 : 2;
+    }
     if (*c->status == LSTUB_OK)
         *c->status = lstub__branch_make(&branches[0], c->site, c->arm, length, c->err);
     if (*c->status < 0)
@@ -41,22 +49,50 @@ static double left_over(double length, const void *context)
     return left;
 }
 
-/* The answer passes, and a length LENGTH_STEP above it fails; pads make small jumps in the curve. */
+/*
+** Brackets the limit: a length that passes and one that fails. Where lengths are dear, outwards from what the closed form
+** says. Returns 0 when even the shortest fails.
+*/
+static int bracket(cutting *c, double step, double *good, double *bad)
+{
+    double full = *bad;
+    *good = step;
+    if (c->site->fidelity <= LSTUB_FIDELITY_LOADED)
+        return lstub__bracket(left_over, c, good, bad, step);
+    c->closed = 1;
+    double guess = full, low = step;
+    if (left_over(full, c) < 0.0)
+        guess = lstub__bracket(left_over, c, &low, &guess, step) ? low : 0.2 * full;
+    c->closed = 0;
+    double x = fmin(fmax(guess, 10.0 * step), 0.98 * full);
+    if (left_over(x, c) >= 0.0) {
+        for (*good = x; (x *= 1.12) < full && left_over(x, c) >= 0.0;)
+            *good = x;
+        *bad = fmin(x, full);
+    } else {
+        for (*bad = x; (x *= 0.88) > step && !(left_over(x, c) >= 0.0);)
+            *bad = x;
+        *good = fmax(x, step);
+    }
+    return *c->status == LSTUB_OK && lstub__bracket(left_over, c, good, bad, step);
+}
+
+/* The answer passes, and a length a step above it fails; pads make small jumps in the curve. */
 int32_t lstub__longest(const lstub__site *site, int arm, const lstub__branch *other, const lstub__demand *demand, double *length,
                        int32_t *limited_by, lstub_error *err)
 {
     int32_t status = LSTUB_OK;
-    cutting c = {site, demand, arm, other, &status, err};
-    double good = LENGTH_STEP, bad = site->arm[arm].full;
+    cutting c = {site, demand, arm, other, 0, &status, err};
+    double good, bad = site->arm[arm].full, step = site->fidelity <= LSTUB_FIDELITY_LOADED ? LENGTH_STEP : COMPILED_STEP;
     lstub_margin margin;
     lstub__branch branches[2];
     *limited_by = LSTUB_LIMIT_NONE;
     *length = bad;
     if (left_over(bad, &c) >= 0.0 || status < 0)
         return status;
-    if (!lstub__bracket(left_over, &c, &good, &bad, LENGTH_STEP))
+    if (!bracket(&c, step, &good, &bad))
         good = 0.0;
-    int32_t count = branches_at(&c, bad, branches);
+    int32_t count = status < 0 ? 0 : branches_at(&c, bad, branches);
     if (count == 0)
         return status;
     lstub__judge(branches, count, site->z_ref, demand, &margin);

@@ -209,7 +209,7 @@ typedef struct lstub_layer {
     const char *name;       /* 1 to LSTUB_NAME_MAX bytes, no other layer has it                        */
     int32_t     kind;       /* LSTUB_LAYER_...                                                         */
     int32_t     reserved;
-    double      thickness;  /* m, > 0, at most 0.1                                                     */
+    double      thickness;  /* m, > 0, at most 0.1; of copper also 0: a sheet                          */
     double      tol_plus;   /* m, >= 0, at most the thickness                                          */
     double      tol_minus;  /* m, >= 0, less than the thickness                                        */
     const lstub_dielectric *dielectric;  /* of a dielectric layer: needed. Of a copper layer: the resin
@@ -294,7 +294,8 @@ typedef struct lstub_via {
     double  antipad;               /* on every plane crossed that does not connect, m; 0: mixed layers
                                         are no plane here, and planes need an entry in `antipads`      */
     const lstub_on_layer *pads;     size_t pad_count;      /* diameters that replace those above; 0: no pad */
-    const lstub_on_layer *antipads; size_t antipad_count;  /* the same; 0: no plane at the via on this layer */
+    const lstub_on_layer *antipads; size_t antipad_count;  /* the same; 0: no plane at the via on this layer; on
+                                        a plane that connects: the opening that the signal comes through */
     const lstub_on_layer *clear;    size_t clear_count;    /* diameter free of other copper around the axis
                                         (for the drill bit), where known; planes: the antipad at least */
     int32_t nonfunctional_pads;    /* LSTUB_PADS_...                                                   */
@@ -311,6 +312,11 @@ typedef struct lstub_via {
     int32_t reserved;
     double  pin_length;            /* press-fit: least barrel to keep from that side's surface, m; 0: the pin
                                       is soldered and fills the hole, which is then never drilled      */
+    const double *return_xy;       /* m, [2 return_count]: x, y of the return vias about the axis; null:
+                                      evenly spread on the circle of radius return_distance            */
+    double  outside_dk;            /* of what lies beyond the outer copper; 0: 1, air        1 to 1000 */
+    double  lid_distance;          /* m, from the outer copper to a conducting lid; 0: open space      */
+    double  hole_dk;               /* of what fills a drilled hole; 0: 1, air                1 to 1000 */
 } lstub_via;
 
 typedef struct lstub_stub {        /* a piece of barrel beyond the outermost layers that connect        */
@@ -339,10 +345,14 @@ LSTUB_API int32_t lstub_via_stubs(const lstub_stackup *stackup, const lstub_via 
 
 /* ---- model: the electrical behaviour of one geometry, compiled once ------------------------------ */
 
-#define LSTUB_FIDELITY_DEFAULT 0   /* the most accurate one of this version: now LOADED                */
+#define LSTUB_FIDELITY_DEFAULT 0   /* the most accurate one of this version: CAVITY                    */
 #define LSTUB_FIDELITY_BULK    1   /* quarter wave in the laminate's through-plane Dk, coaxial impedance */
 #define LSTUB_FIDELITY_LOADED  2   /* uniform line: L' from the returns, C' from each cavity's via-plate
                                       capacitance, planes and pads; capacitance at the open end        */
+#define LSTUB_FIDELITY_LADDER  3   /* for sweeps: every cavity a line section with the radial wave of its
+                                      plates for inductance and a fitted capacitance                   */
+#define LSTUB_FIDELITY_CAVITY  4   /* radial modes of every plate pair and copper layer, matched at every
+                                      opening: as full-wave as a round barrel gets                     */
 #define LSTUB_ALL_STUBS      (-1)  /* in place of a stub's number: all of them in parallel, the path
                                       between them neglected                                           */
 
@@ -351,6 +361,9 @@ typedef struct lstub_model_options {
     int32_t fidelity;              /* LSTUB_FIDELITY_...                                               */
     int32_t reserved;
     double  z_ref;                 /* ohm, line that the stubs load; of a pair: of one of the two; 0: 50 */
+    int32_t annuli;                /* CAVITY: annuli an opening is cut into at least; 0: 4    2 to 12  */
+    int32_t reserved2;
+    const lstub_allocator *allocator;  /* for what batch calls need while they run; null: malloc       */
 } lstub_model_options;
 
 typedef struct lstub_model lstub_model;
@@ -364,7 +377,8 @@ LSTUB_API void    lstub_model_destroy(lstub_model *model);                      
 LSTUB_API int32_t lstub_model_stub_count(const lstub_model *model);              /* 0, 1 or 2           */
 LSTUB_API int32_t lstub_model_stub(const lstub_model *model, int32_t stub, lstub_stub *out, lstub_error *err);
 
-typedef struct lstub_stub_line {   /* a stub as a line, at 1 GHz                                       */
+typedef struct lstub_stub_line {   /* a stub as a line, at 1 GHz. LADDER and CAVITY, which are no lines: as the
+                                      uniform line of the same first notch that holds the same charge  */
     size_t  size;
     int32_t fidelity;              /* the one that made these numbers                                  */
     int32_t reserved;
@@ -374,21 +388,22 @@ typedef struct lstub_stub_line {   /* a stub as a line, at 1 GHz                
     double  inductance;            /* L', H/m                                                          */
     double  capacitance;           /* C', F/m                                                          */
     double  end_capacitance;       /* at the open end, F                                               */
-    double  stated_error;          /* largest error of the first notch found against full-wave data for
-                                      this fidelity, relative; see docs/theory.md                      */
-    double  f_range;               /* Hz, top of the stated range: an antipad radius or a plate spacing is
-                                      a tenth of the wavelength in the laminate                        */
+    double  stated_error;          /* of the first notch, relative: the largest found against full-wave data
+                                      for this fidelity, see docs/theory.md; CAVITY: as lstub_notch.error */
+    double  f_range;               /* Hz, top of the stated range. BULK, LOADED: an antipad radius or a plate
+                                      spacing is a tenth of the wavelength in the laminate; else 110e9 */
 } lstub_stub_line;
 
 LSTUB_API int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub_stub_line *out, lstub_error *err);
 
 /*
 ** Input impedance of a stub where it hangs on the signal path, ohm.
-** In   freq[n] Hz, 1e6 to 1e12; stub: number or LSTUB_ALL_STUBS.
+** In   freq[n] Hz, 1e6 to 1e12, LADDER and CAVITY to 200e9; stub: number or LSTUB_ALL_STUBS.
 ** Out  zin[2 n]; status[n] or null.
 ** Ret  LSTUB_W_RANGE above f_range of the line: an antipad radius or a plate spacing is more than a tenth
 **      of the wavelength in the laminate.
-** Source  Zin = Zs coth(gamma L) with the end load, Pozar; L' and C' as in docs/theory.md.
+** Source  BULK, LOADED: Zin = Zs coth(gamma L) with the end load, Pozar; all else: docs/theory.md. A stub that hangs on a
+**         layer without plane is fed through a thin plane there of the nearest plane's antipad.
 */
 LSTUB_API int32_t lstub_model_zin(const lstub_model *model, int32_t stub, const double *freq, size_t n,
                                   double *zin, int32_t *status, lstub_error *err);
@@ -408,11 +423,13 @@ typedef struct lstub_notch {
     double  depth_db;              /* 20 log10 |S21| at f, negative; -inf never: -300 at least         */
     double  q;                     /* f over the width of the notch 3 dB above its floor; NaN where the
                                       notch is not that deep, +inf without loss                        */
+    double  error;                 /* of f, relative: CAVITY estimates it for each notch from a second
+                                      model of fewer annuli; others: stated_error of the line          */
 } lstub_notch;
 
 /*
-** All notches of one stub, or of all, from 1e6 Hz up to f_max (to 1e12), in rising order: the roots of the
-** reactance found by bracketing, not multiples of the first. More than `capacity`: LSTUB_W_CAPACITY, the
+** All notches of one stub, or of all, from 1e6 Hz up to f_max (to 1e12), in rising order: minima of |S21| found by
+** bracketing, not multiples of the first. LADDER and CAVITY find none above 200e9. More than `capacity`: LSTUB_W_CAPACITY, the
 ** lowest are given, *count says how many there are. None: *count = 0, LSTUB_OK.
 */
 LSTUB_API int32_t lstub_model_notches(const lstub_model *model, int32_t stub, double f_max, lstub_notch *notches,
@@ -455,7 +472,8 @@ typedef struct lstub_margin {
     int32_t pass;                  /* 1: every criterion asked for is met                              */
     int32_t limited_by;            /* LSTUB_LIMIT_..., the criterion with the least margin             */
     double  nyquist;               /* Hz                                                               */
-    double  f1;                    /* first notch, Hz; +inf without a stub or notch below 1e12 Hz      */
+    double  f1;                    /* first notch, Hz; +inf without a stub or a notch where the fidelity
+                                      looks for one                                                    */
     double  notch_over_nyquist;    /* f1 / nyquist                                                     */
     double  notch_margin;          /* f1 - limit, Hz; NaN if not asked                                 */
     double  added_loss_db;         /* at Nyquist                                                       */
@@ -480,7 +498,7 @@ typedef struct lstub_stub_limit {
 
 /*
 ** Longest tolerable stub: the barrel on `side`, drilled back as little as the criteria allow, the other side
-** as it is. Found by bracketing on drilled geometries, to 1 nm. A via without a stub there: LSTUB_E_NONE.
+** as it is. Found by bracketing on drilled geometries, to 1 nm (LADDER, CAVITY: 0.1 um). A via without a stub there: LSTUB_E_NONE.
 ** Valid as the model is; the criteria are taken to get no better as the stub grows.
 */
 LSTUB_API int32_t lstub_longest_stub(const lstub_stackup *stackup, const lstub_via *via, int32_t side,

@@ -1,26 +1,131 @@
 #include "model/branch.h"
 
+#include "model/ladder.h"
+#include "model/notch_search.h"
+#include "num/root.h"
+
 #include <math.h>
 
-int32_t lstub__branch_make(lstub__branch *branch, const lstub__site *site, int arm, double length, lstub_error *err)
+#define CAVITY_RANGE 110e9    /* Hz, top of the stated range of the cavity model                            */
+#define CAVITY_TOP   200e9    /* Hz, where it still answers, and looks for a first notch                    */
+#define LADDER_ERROR 0.036    /* of the first notch on the full-wave cells, docs/theory.md                  */
+#define LADDER_WIDE  0.13     /* outside lstub__ladder_valid, on random cells against the cavity model      */
+#define COARSE       2        /* annuli of the second model that says how far the first one may be off      */
+
+static int32_t compile(const lstub__branch *branch, const lstub__site *site, int annuli, lstub__cavity **out, lstub_error *err)
 {
-    (void)err;
+    lstub__cav_options options = {annuli, 0, CAVITY_TOP};
+    int failed = lstub__cavity_compile(&branch->barrel->shape, &options, site->alloc.allocate, site->alloc.release, site->alloc.user, out);
+    if (failed == 0)
+        return LSTUB_OK;
+    if (failed == -1)
+        return lstub__fail(err, LSTUB_E_MEMORY, "allocator", -1, "out of memory: a cavity model");
+    return lstub__fail(err, LSTUB_E_UNSUPPORTED, "via", -1, "via: the barrel has more layers, rims or media than the cavity model takes");
+}
+
+void lstub__branch_closed(lstub__branch *branch, const lstub__site *site, int arm, double length)
+{
     branch->fidelity = site->fidelity;
     branch->length = length;
+    branch->barrel = NULL;
+    branch->cavity = branch->coarse = NULL;
     lstub__site_line(site, arm, length, &branch->line);
     branch->lossless = branch->line.lossless;
     branch->f_range = branch->line.f_range;
+    branch->f_top = LSTUB__F_MAX;
     branch->stated_error = branch->line.stated_error;
-    return LSTUB_OK;
 }
 
-void lstub__branch_done(lstub__branch *branch) { (void)branch; }
+int32_t lstub__branch_make(lstub__branch *branch, const lstub__site *site, int arm, double length, lstub_error *err)
+{
+    int32_t status;
+    lstub__branch_closed(branch, site, arm, length);
+    if (site->fidelity <= LSTUB_FIDELITY_LOADED)
+        return LSTUB_OK;
+    if ((status = lstub__barrel_make(&branch->barrel, site, arm, length, err)) < 0)
+        return status;
+    branch->f_range = CAVITY_RANGE;
+    branch->f_top = CAVITY_TOP;
+    branch->lossless = branch->lossless && site->via.in.return_kind == LSTUB_RETURN_WALL && site->via.in.lid_distance > 0.0;
+    if (site->fidelity == LSTUB_FIDELITY_LADDER) {
+        branch->stated_error = lstub__ladder_valid(&branch->barrel->shape) ? LADDER_ERROR : LADDER_WIDE;
+        return LSTUB_OK;
+    }
+    branch->stated_error = NAN;
+    status = compile(branch, site, site->annuli, &branch->cavity, err);
+    if (status == LSTUB_OK) {
+        cplx eps[LSTUB__CAV_MEDIA];
+        lstub__barrel_media(branch->barrel, 1e9, eps);
+        branch->f_top = fmin(branch->f_top, lstub__cavity_limit(branch->cavity, eps));
+    } else {
+        lstub__branch_done(branch);
+    }
+    return status;
+}
 
-cplx lstub__branch_admittance(const lstub__branch *branch, double f) { return lstub__line_admittance(&branch->line, f); }
+int32_t lstub__branch_estimate(lstub__branch *branch, const lstub__site *site, lstub_error *err)
+{
+    return branch->cavity == NULL ? LSTUB_OK : compile(branch, site, COARSE, &branch->coarse, err);
+}
+
+void lstub__branch_done(lstub__branch *branch)
+{
+    lstub__cavity_destroy(branch->coarse);
+    lstub__cavity_destroy(branch->cavity);
+    lstub__barrel_free(branch->barrel);
+    branch->cavity = branch->coarse = NULL;
+    branch->barrel = NULL;
+}
+
+static cplx impedance(const void *model, double f)
+{
+    const lstub__branch *branch = model;
+    cplx eps[LSTUB__CAV_MEDIA];
+    lstub__barrel_media(branch->barrel, f, eps);
+    return branch->cavity != NULL ? lstub__cavity_zin(branch->cavity, f, eps) : lstub__ladder_zin(&branch->barrel->shape, f, eps);
+}
+
+cplx lstub__branch_admittance(const lstub__branch *branch, double f)
+{
+    if (branch->barrel == NULL)
+        return lstub__line_admittance(&branch->line, f);
+    cplx z = impedance(branch, f);
+    return cplx_norm(z) == 0.0 ? cplx_of(LSTUB__SHORT, 0.0) : cplx_div(cplx_of(1.0, 0.0), z);
+}
 
 double lstub__branch_notch(const lstub__branch *branch, double z_ref, double after, double f_max)
 {
-    return lstub__line_notch(&branch->line, z_ref, after, f_max);
+    if (branch->barrel == NULL)
+        return lstub__line_notch(&branch->line, z_ref, after, f_max);
+    double top = fmin(f_max, branch->f_top), expected = lstub__line_notch(&branch->line, z_ref, 0.0, LSTUB__F_MAX);
+    double low = fmax(after * (1.0 + 1e-6), 1e8);
+    if (low >= top)
+        return HUGE_VAL;
+    return lstub__notch_search(impedance, branch, z_ref, low, top, fmin(0.1 * expected, 5e9));
+}
+
+typedef struct coarse_view {
+    lstub__branch branch;       /* with the coarse model in place of the fine one */
+    double z_ref;
+} coarse_view;
+
+static double coarse_power(double f, const void *context)
+{
+    const coarse_view *c = context;
+    return lstub__branches_power(&c->branch, 1, c->z_ref, f);
+}
+
+/* Half of what the coarse model is off, and 2e-4 for what both share: covers 98 of 100 random cells (docs/theory.md). */
+double lstub__branch_notch_error(const lstub__branch *branch, double z_ref, double f)
+{
+    const double reach = 0.05;
+    if (branch->coarse == NULL)
+        return branch->stated_error;
+    coarse_view c = {*branch, z_ref};
+    c.branch.cavity = branch->coarse;
+    double low = f * (1.0 - reach), high = f * (1.0 + reach), found = lstub__dip(coarse_power, &c, low, high);
+    int inside = found > low * (1.0 + 1e-3) && found < high * (1.0 - 1e-3);
+    return (inside ? 0.5 * fabs(found / f - 1.0) : reach) + 2e-4;
 }
 
 /* ---- several ----------------------------------------------------------------------------------- */
@@ -68,7 +173,7 @@ int32_t lstub__branches_make(lstub__branch *branches, int32_t *count, const lstu
     const double length[2] = {top, bottom};
     *count = 0;
     for (int arm = 0; arm < 2; arm++) {
-        if (length[arm] <= 0.0)
+        if (length[arm] <= LSTUB__SLACK)
             continue;
         int32_t status = lstub__branch_make(&branches[*count], site, arm, length[arm], err);
         if (status < 0) {

@@ -14,6 +14,7 @@ int32_t lstub_model_create(const lstub_stackup *stackup, const lstub_via *via, c
         return LSTUB_E_NULL;
     if ((status = lstub__allocator(allocator, &alloc, err)) < 0 || (status = lstub__site_make(&site, stackup, via, options, err)) < 0)
         return status;
+    site.alloc = alloc;
     lstub_model *m = lstub__new(&alloc, 1, sizeof *m, err);
     if (m == NULL)
         return LSTUB_E_MEMORY;
@@ -21,7 +22,10 @@ int32_t lstub_model_create(const lstub_stackup *stackup, const lstub_via *via, c
     m->fidelity = site.fidelity;
     m->z_ref = site.z_ref;
     status = lstub__branches_make(m->branch, &m->count, &site, site.arm[0].length, site.arm[1].length, err);
+    for (int32_t i = 0; status == LSTUB_OK && i < m->count; i++)
+        status = lstub__branch_estimate(&m->branch[i], &site, err);
     if (status < 0) {
+        lstub__branches_done(m->branch, m->count);
         lstub__free(&alloc, m);
         return status;
     }
@@ -85,13 +89,18 @@ int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub_stub_line
     const lstub__line *line = &branch->line;
     double f1 = lstub__branch_notch(branch, model->z_ref, 0.0, LSTUB__F_MAX), root = LSTUB_C0 / (4.0 * branch->length * f1);
     ours.fidelity = model->fidelity;
-    ours.inductance = lstub__line_inductance(line, 1e9).re;
-    ours.capacitance = lstub__line_capacitance(line, 1e9).re;
-    ours.end_capacitance = line->c_end;
+    if (branch->barrel == NULL) {
+        ours.inductance = lstub__line_inductance(line, 1e9).re;
+        ours.capacitance = lstub__line_capacitance(line, 1e9).re;
+        ours.end_capacitance = line->c_end;
+    } else {                     /* the uniform line of the same first notch and the same charge at 100 MHz */
+        ours.capacitance = lstub__branch_admittance(branch, 1e8).im / (2.0 * LSTUB_PI * 1e8 * branch->length);
+        ours.inductance = root * root / (LSTUB_C0 * ours.capacitance * LSTUB_C0);
+    }
     ours.impedance = sqrt(ours.inductance / ours.capacitance);
     ours.dk_line = LSTUB_C0 * ours.inductance * LSTUB_C0 * ours.capacitance;
     ours.dk_effective = root * root;
-    ours.stated_error = branch->stated_error;
+    ours.stated_error = lstub__branch_notch_error(branch, model->z_ref, f1);
     ours.f_range = branch->f_range;
     return lstub__give(&ours, sizeof ours, out, sizeof ours, "out", err);
 }
@@ -133,7 +142,7 @@ static double range_of(const lstub__branch *branches, int32_t count)
 static int32_t at_frequencies(const lstub_model *model, int32_t stub, const double *freq, size_t n, evaluate *what, int width,
                               int needs_stub, double *out, int32_t *status, lstub_error *err)
 {
-    static const lstub__range BAND = {LSTUB__F_MIN, LSTUB__F_MAX, 0, "Hz"};
+    lstub__range band = {LSTUB__F_MIN, LSTUB__F_MAX, 0, "Hz"};
     const lstub__branch *branches = NULL;
     int32_t count, result = chosen(model, stub, 1, &branches, &count, err);
     if (result < 0)
@@ -144,10 +153,12 @@ static int32_t at_frequencies(const lstub_model *model, int32_t stub, const doub
         return LSTUB_E_NULL;
     lstub__batch batch = {0, 0};
     double top = range_of(branches, count);
+    for (int32_t i = 0; i < count; i++)
+        band.high = fmin(band.high, branches[i].f_top);
     for (size_t i = 0; i < n; i++) {
         lstub_error item;
         LSTUB_INIT(item);
-        int32_t one = lstub__check(freq[i], &BAND, "freq", &item);
+        int32_t one = lstub__check(freq[i], &band, "freq", &item);
         if (one < 0) {
             for (int k = 0; k < width; k++)
                 out[i * (size_t)width + (size_t)k] = NAN;

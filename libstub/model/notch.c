@@ -48,6 +48,7 @@ static void describe(const lstub__branch *branch, double z_ref, double before, d
     double reach = 0.5 * (f - before);
     LSTUB_INIT(*out);
     out->f = f;
+    out->error = lstub__branch_notch_error(branch, z_ref, f);
     out->depth_db = fmax(10.0 * log10(0.5 * s.level), -LSTUB__LOSS_MOST);
     if (branch->lossless) {
         out->depth_db = -LSTUB__LOSS_MOST;

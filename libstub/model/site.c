@@ -17,13 +17,18 @@ int32_t lstub__options_take(lstub_model_options *ours, const lstub_model_options
     else if ((status = lstub__take(ours, sizeof *ours, theirs, sizeof *ours, "options", err)) < 0)
         return status;
     if (ours->fidelity == LSTUB_FIDELITY_DEFAULT)
-        ours->fidelity = LSTUB_FIDELITY_LOADED;
+        ours->fidelity = LSTUB_FIDELITY_CAVITY;
+    if (ours->annuli == 0)
+        ours->annuli = 4;
     if (ours->z_ref == 0.0)
         ours->z_ref = 50.0;
-    if (ours->fidelity < LSTUB_FIDELITY_BULK || ours->fidelity > LSTUB_FIDELITY_LOADED)
+    if (ours->fidelity < LSTUB_FIDELITY_BULK || ours->fidelity > LSTUB_FIDELITY_CAVITY)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "fidelity", -1, "fidelity = %ld: must be one of LSTUB_FIDELITY_...", (long)ours->fidelity);
-    if (ours->reserved != 0)
-        return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)ours->reserved);
+    if (ours->annuli < 2 || ours->annuli > 12)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "annuli", -1, "annuli = %ld: must be >= 2 and <= 12", (long)ours->annuli);
+    if (ours->reserved != 0 || ours->reserved2 != 0)
+        return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld, reserved2 = %ld: must be 0", (long)ours->reserved,
+                           (long)ours->reserved2);
     return lstub__check(ours->z_ref, &Z_REF, "z_ref", err);
 }
 
@@ -55,7 +60,7 @@ static void mix_done(mix *m)
 ** Antipad that a plane with round holes would need to act like one slot around both barrels of a pair in odd mode:
 ** fit (0.2 %) to static two-dimensional solutions of such a slot, valid for pitch/(antipad + 0.44 h) > 0.8.
 */
-static double slot_antipad(const lstub_via *via, double antipad, double height)
+double lstub__slot_antipad(const lstub_via *via, double antipad, double height)
 {
     double d = log(2.0) / LSTUB_PI * height, r = 0.5 * antipad + d, al = 0.5 * via->drill / r, t = 0.5 * via->pair_pitch / r;
     double equal = r * (1.118 - 0.040 * al * al - (1.883 - 0.559 * al * al) * exp(-3.174 * t)) - d;
@@ -66,7 +71,7 @@ static double seen_antipad(const lstub__via *via, double antipad, double height)
 {
     if (via->in.pair_kind != LSTUB_PAIR_SHARED)
         return antipad;
-    double slot = slot_antipad(&via->in, antipad, height);
+    double slot = lstub__slot_antipad(&via->in, antipad, height);
     return slot > 1.02 * via->in.drill ? slot : 1.02 * via->in.drill;
 }
 
@@ -173,10 +178,9 @@ static void plane_part(lstub__part *part, const lstub__via *via, int32_t index, 
 {
     const lstub__layer *layer = &via->stackup->layer[index];
     double antipad = seen_antipad(via, part->plane, layer->thickness), pad = lstub__via_pad(via, index);
-    mix own;
-    memset(&own, 0, sizeof own);
-    mix_add(&own, layer, lambda);
-    mix_done(&own);
+    double ratio = layer->dielectric.in_plane_ratio;
+    mix own = {0.0, ratio * layer->eps.constant, ratio * layer->eps.slope, 0.0, 0.0};
+    own.in_plane = own.constant + own.slope * lambda;
     double c = 2.0 * LSTUB_PI * LSTUB_EPS0 * own.in_plane / log(antipad / via->in.drill);
     part->c_constant = c * own.constant / own.in_plane;
     part->c_slope = c * own.slope / own.in_plane;
@@ -268,7 +272,9 @@ static void find_inductance(lstub__site *site, double lambda)
     if (in->pair_kind != LSTUB_PAIR_NONE) {
         lstub_twin_rod(in->drill, in->pair_pitch, 1.0, &site->inductance, NULL, NULL);
     } else if (in->return_kind == LSTUB_RETURN_VIAS) {
-        lstub_return_inductance(in->drill, in->return_count, in->return_distance, in->return_drill, &site->inductance, NULL);
+        double s = 2.0 * in->return_distance;     /* as lstub_return_inductance; given places need no circle */
+        site->inductance = LSTUB_MU0 / (2.0 * LSTUB_PI)
+                           * (log(s / in->drill) + log(s / (in->return_count * in->return_drill)) / in->return_count);
     } else if (in->return_kind == LSTUB_RETURN_WALL) {
         site->inductance = LSTUB_MU0 / (2.0 * LSTUB_PI) * log(2.0 * in->return_distance / in->drill);
     } else {
@@ -304,10 +310,13 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
         return status;
     site->fidelity = ours.fidelity;
     site->z_ref = ours.z_ref;
+    site->annuli = ours.annuli;
+    site->bit = site->via.in.drill + 0.2e-3;    /* common practice, no source */
+    if ((status = lstub__allocator(ours.allocator, &site->alloc, err)) < 0)
+        return status;
     site->bulk_antipad = smallest_antipad(&site->via);
     if (site->bulk_antipad == 0.0)
-        return lstub__fail(err, LSTUB_E_UNSUPPORTED, "antipad", -1, "antipad: the barrel passes no plane; fidelities bulk and loaded "
-                           "need one to know its capacitance");
+        return lstub__fail(err, LSTUB_E_UNSUPPORTED, "antipad", -1, "antipad: the barrel passes no plane: its capacitance is not known");
     double lambda = lstub__wideband_lambda(1e9).re;
     region_memory memory;
     memset(&memory, 0, sizeof memory);

@@ -25,8 +25,10 @@ typedef struct lstub__arm {       /* the barrel on one side of the layers that c
 
 typedef struct lstub__site {
     lstub__via via;
-    int32_t fidelity;
+    lstub_allocator alloc;         /* of what its branches need                                           */
+    int32_t fidelity, annuli;
     double  z_ref;
+    double  bit;                   /* m, diameter of a drill that is only thought of                      */
     double  inductance, radial_dk; /* as in lstub__line                                                   */
     double  bulk_antipad;          /* of the bulk fidelity's coaxial impedance, m                         */
     lstub__arm arm[2];             /* top, bottom                                                         */
@@ -37,6 +39,9 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
                          const lstub_model_options *options, lstub_error *err);
 /* The stub on a side cut to `length` (0 < length <= full; full: not drilled). */
 void    lstub__site_line(const lstub__site *site, int arm, double length, lstub__line *line);
+
+/* Round antipad that acts like a slot around the pair in odd mode; height: of the space beside the plane. */
+double  lstub__slot_antipad(const lstub_via *via, double antipad, double height);
 
 static inline int     lstub__arm_of(int32_t side) { return side == LSTUB_SIDE_TOP ? 0 : 1; }
 static inline int32_t lstub__side_of(int arm) { return arm == 0 ? LSTUB_SIDE_TOP : LSTUB_SIDE_BOTTOM; }

@@ -13,7 +13,31 @@ static inline cplx cplx_add(cplx a, cplx b) { return cplx_of(a.re + b.re, a.im +
 static inline cplx cplx_sub(cplx a, cplx b) { return cplx_of(a.re - b.re, a.im - b.im); }
 static inline cplx cplx_mul(cplx a, cplx b) { return cplx_of(a.re * b.re - a.im * b.im, a.re * b.im + a.im * b.re); }
 static inline cplx cplx_scale(cplx a, double s) { return cplx_of(a.re * s, a.im * s); }
-static inline double cplx_norm(cplx a) { return a.re * a.re + a.im * a.im; }
+static inline cplx cplx_neg(cplx a) { return cplx_of(-a.re, -a.im); }
+static inline cplx cplx_conj(cplx a) { return cplx_of(a.re, -a.im); }
+static inline cplx cplx_fma(cplx a, cplx b, cplx c)    /* a + b c */
+{
+    return cplx_of(a.re + b.re * c.re - b.im * c.im, a.im + b.re * c.im + b.im * c.re);
+}
+static inline cplx cplx_fms(cplx a, cplx b, cplx c)    /* a - b c */
+{
+    return cplx_of(a.re - b.re * c.re + b.im * c.im, a.im - b.re * c.im - b.im * c.re);
+}
+static inline double cplx_norm(cplx a) { return a.re * a.re + a.im * a.im; }    /* |a|^2 */
+static inline double cplx_abs(cplx a) { return hypot(a.re, a.im); }
+
+/* Sooner than cplx_div, for numbers whose square neither over- nor underflows. */
+static inline cplx cplx_inv(cplx a)
+{
+    double d = 1.0 / cplx_norm(a);
+    return cplx_of(a.re * d, -a.im * d);
+}
+static inline cplx cplx_exp(cplx a)
+{
+    double e = exp(a.re);
+    return cplx_of(e * cos(a.im), e * sin(a.im));
+}
+static inline cplx cplx_log(cplx a) { return cplx_of(0.5 * log(cplx_norm(a)), atan2(a.im, a.re)); }
 
 /* Smith's division: no overflow in the middle. */
 static inline cplx cplx_div(cplx a, cplx b)

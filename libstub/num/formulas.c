@@ -208,7 +208,10 @@ int32_t lstub_plate_capacitance(double drill, double antipad, double spacing, do
     double sum = spacing * spacing * dk_in_plane / (8.0 * dk_through_plane);
     for (int m = 1; m * step * (b - a) < 36.0; m += 2) {
         double kappa = m * step;
-        sum -= lstub__k0_scaled(kappa * b) / lstub__k0_scaled(kappa * a) * exp(-kappa * (b - a)) / (kappa * kappa);
+        double i0, k0_a, k0_b;          /* scaled by exp(x) */
+        lstub__bessel_ik0(kappa * a, &i0, &k0_a);
+        lstub__bessel_ik0(kappa * b, &i0, &k0_b);
+        sum -= k0_b / k0_a * exp(-kappa * (b - a)) / (kappa * kappa);
     }
     *capacitance = 8.0 * LSTUB_PI * LSTUB_EPS0 * dk_through_plane / (spacing * log(b / a)) * sum;
     return LSTUB_OK;

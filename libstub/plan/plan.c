@@ -29,7 +29,7 @@ static uint64_t mix_in(uint64_t hash, const void *data, size_t bytes)
     return hash;
 }
 
-#define ARRAYS 5                   /* that a via points to */
+#define ARRAYS 6                   /* that a via points to */
 
 typedef struct array { const void *data; size_t bytes; } array;
 
@@ -39,7 +39,8 @@ static void arrays_of(const lstub_via *via, array *out)
                     {via->antipads, via->antipad_count * sizeof *via->antipads},
                     {via->clear, via->clear_count * sizeof *via->clear},
                     {via->connects, via->connect_count * sizeof *via->connects},
-                    {via->backdrills, via->backdrill_count * sizeof *via->backdrills}};
+                    {via->backdrills, via->backdrill_count * sizeof *via->backdrills},
+                    {via->return_xy, via->return_count < 1 ? 0 : 2 * (size_t)via->return_count * sizeof *via->return_xy}};
     memcpy(out, all, sizeof all);
 }
 
@@ -52,6 +53,7 @@ static void make_key(key *k, const lstub_via *via, const lstub_job *job)
     k->via.pads = k->via.antipads = k->via.clear = NULL;
     k->via.connects = NULL;
     k->via.backdrills = NULL;
+    k->via.return_xy = NULL;
     k->arrays = via;
     if (job->signal != NULL)       /* wrong sizes come out when the case is decided */
         lstub__take(&k->signal, sizeof k->signal, job->signal, sizeof k->signal, "signal", NULL);

@@ -4,7 +4,7 @@
 #include <stdio.h>
 #include <string.h>
 
-static const lstub__range THICKNESS = {0.0, 0.1, 1, "m"};
+static const lstub__range THICKNESS = {0.0, 0.1, 1, "m"}, COPPER_THICKNESS = {0.0, 0.1, 0, "m"};
 
 /* ---- making one -------------------------------------------------------------------------------- */
 
@@ -34,14 +34,14 @@ static int32_t check_name(const char *name, lstub_error *err)
 
 static int32_t take_thickness(lstub__layer *layer, const lstub_layer *in, lstub_error *err)
 {
-    int32_t status = lstub__check(in->thickness, &THICKNESS, "thickness", err);
+    int32_t status = lstub__check(in->thickness, lstub__is_copper(in->kind) ? &COPPER_THICKNESS : &THICKNESS, "thickness", err);
     if (status < 0)
         return status;
     lstub__range tolerance = {0.0, in->thickness, 0, "m"};
     if ((status = lstub__check(in->tol_plus, &tolerance, "tol_plus", err)) < 0
         || (status = lstub__check(in->tol_minus, &tolerance, "tol_minus", err)) < 0)
         return status;
-    if (in->tol_minus >= in->thickness)
+    if (in->tol_minus > 0.0 && in->tol_minus >= in->thickness)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "tol_minus", -1, "tol_minus = %.9g m: must be < thickness = %.9g m",
                            in->tol_minus, in->thickness);
     layer->thickness = in->thickness;

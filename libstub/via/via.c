@@ -41,10 +41,12 @@ double lstub__via_pad(const lstub__via *via, int32_t layer)
 double lstub__via_antipad(const lstub__via *via, int32_t layer)
 {
     int32_t kind = via->stackup->layer[layer].kind;
-    if (kind == LSTUB_LAYER_SIGNAL || lstub__via_connects(via, layer))
+    if (kind == LSTUB_LAYER_SIGNAL)
         return 0.0;
     const lstub_on_layer *own = entry(via->in.antipads, via->in.antipad_count, layer);
-    return own != NULL ? own->value : via->in.antipad;
+    if (own != NULL)
+        return own->value;
+    return lstub__via_connects(via, layer) ? 0.0 : via->in.antipad;
 }
 
 double lstub__via_clear(const lstub__via *via, int32_t layer)
@@ -85,7 +87,7 @@ int32_t lstub__via_counts(const lstub_via *in, lstub_error *err)
     const struct { size_t count, most; const char *field; } list[] = {
         {in->pad_count, LSTUB_LAYERS_MAX, "pad_count"},         {in->antipad_count, LSTUB_LAYERS_MAX, "antipad_count"},
         {in->clear_count, LSTUB_LAYERS_MAX, "clear_count"},     {in->connect_count, LSTUB_LAYERS_MAX, "connect_count"},
-        {in->backdrill_count, 2, "backdrill_count"}};
+        {in->backdrill_count, 2, "backdrill_count"},      {in->return_count < 0 ? 0 : (size_t)in->return_count, 1000, "return_count"}};
     for (size_t i = 0; i < sizeof list / sizeof list[0]; i++)
         if (list[i].count > list[i].most)
             return lstub__fail(err, LSTUB_E_ARGUMENT, list[i].field, -1, "%s = %lu: must be <= %lu", list[i].field,
@@ -179,6 +181,33 @@ static int32_t check_layer(const lstub__via *via, int32_t layer, lstub_error *er
     return LSTUB_OK;
 }
 
+/* Return vias at given places touch neither the barrel nor each other. */
+static int32_t check_places(const lstub_via *in, lstub_error *err)
+{
+    for (int32_t i = 0; i < in->return_count; i++) {
+        double x = in->return_xy[2 * i], y = in->return_xy[2 * i + 1];
+        if (!(fabs(x) <= 1.0 && fabs(y) <= 1.0))
+            return lstub__fail(err, LSTUB_E_ARGUMENT, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: must be >= -1 and <= 1 m", (long)i, x, y);
+        if (hypot(x, y) <= 0.5 * (in->drill + in->return_drill))
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: touches the barrel of %.9g m",
+                               (long)i, x, y, in->drill);
+        for (int32_t j = 0; j < i; j++)
+            if (hypot(x - in->return_xy[2 * j], y - in->return_xy[2 * j + 1]) <= in->return_drill)
+                return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: touches return via %ld",
+                                   (long)i, x, y, (long)j);
+    }
+    return LSTUB_OK;
+}
+
+/* Their mean distance, as the closed forms count it: the geometric mean. */
+static double mean_distance(const lstub_via *in)
+{
+    double sum = 0.0;
+    for (int32_t i = 0; i < in->return_count; i++)
+        sum += log(hypot(in->return_xy[2 * i], in->return_xy[2 * i + 1]));
+    return exp(sum / in->return_count);
+}
+
 static int32_t take_returns(lstub__via *via, lstub_error *err)
 {
     lstub_via *in = &via->in;
@@ -189,6 +218,19 @@ static int32_t take_returns(lstub__via *via, lstub_error *err)
                            (long)in->return_kind);
     if (in->return_drill == 0.0)
         in->return_drill = in->drill;
+    if (in->return_xy != NULL && in->return_kind != LSTUB_RETURN_VIAS)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", -1, "return_xy: must be null without LSTUB_RETURN_VIAS");
+    if (in->return_xy != NULL) {
+        lstub__range drill = {0.0, 0.01, 1, "m"};
+        if ((status = lstub__check(in->return_drill, &drill, "return_drill", err)) < 0)
+            return status;
+        if (in->return_count < 1 || in->return_count > 1000)
+            return lstub__fail(err, LSTUB_E_ARGUMENT, "return_count", -1, "return_count = %ld: must be >= 1 and <= 1000", (long)in->return_count);
+        if ((status = check_places(in, err)) < 0)
+            return status;
+        in->return_distance = mean_distance(in);
+        return LSTUB_OK;
+    }
     if (in->return_kind != LSTUB_RETURN_NONE && (status = lstub__check(in->return_distance, &DISTANCE, "return_distance", err)) < 0)
         return status;
     if (in->return_kind == LSTUB_RETURN_WALL && in->return_distance <= 0.5 * in->drill)
@@ -200,6 +242,19 @@ static int32_t take_returns(lstub__via *via, lstub_error *err)
     if (status < 0)
         lstub__fail_where(err, -1, "returns");
     return status;
+}
+
+static int32_t take_surroundings(lstub_via *in, lstub_error *err)
+{
+    static const lstub__range DK = {1.0, 1000.0, 0, ""};
+    int32_t status;
+    if (in->outside_dk == 0.0)
+        in->outside_dk = 1.0;
+    if (in->hole_dk == 0.0)
+        in->hole_dk = 1.0;
+    if ((status = lstub__check(in->outside_dk, &DK, "outside_dk", err)) < 0 || (status = lstub__check(in->hole_dk, &DK, "hole_dk", err)) < 0)
+        return status;
+    return lstub__check(in->lid_distance, &SIZE_OR_NONE, "lid_distance", err);
 }
 
 static int32_t check_pair(const lstub_via *in, lstub_error *err)
@@ -303,7 +358,8 @@ int32_t lstub__via_take(lstub__via *via, const lstub_stackup *stackup, const lst
         || (status = check_list(via, in->clear, in->clear_count, "clear", err)) < 0
         || (status = take_returns(via, err)) < 0
         || (status = check_pair(in, err)) < 0
-        || (status = check_pin(in, err)) < 0)
+        || (status = check_pin(in, err)) < 0
+        || (status = take_surroundings(in, err)) < 0)
         return status;
     for (int32_t i = in->start_layer; i <= in->end_layer; i++)
         if (lstub__is_copper(stackup->layer[i].kind) && (status = check_layer(via, i, err)) < 0)

@@ -17,7 +17,7 @@ int32_t lstub__via_take(lstub__via *via, const lstub_stackup *stackup, const lst
 /* Whether the counts of a via's arrays can be true. */
 int32_t lstub__via_counts(const lstub_via *in, lstub_error *err);
 
-/* Diameters on a copper layer of the span; 0: none. A layer that connects has no antipad. */
+/* Diameters on a copper layer of the span; 0: none. */
 double lstub__via_pad(const lstub__via *via, int32_t layer);
 double lstub__via_antipad(const lstub__via *via, int32_t layer);
 double lstub__via_clear(const lstub__via *via, int32_t layer);   /* -1: not known */

@@ -1,0 +1,100 @@
+/*
+** The cavity model of one piece of barrel: radial modes in every slab between two levels, matched on annuli.
+**
+** A barrel is described from the copper layer it hangs on downwards (mirror it for a stub at the top). All lengths
+** are radii and heights in metres; permittivities are given per frequency, one complex number a medium, so that
+** the compiled model does not depend on the law of dispersion; in-plane over through-plane is fixed.
+*/
+#ifndef LSTUB_CAVITY_H
+#define LSTUB_CAVITY_H
+
+#include <stddef.h>
+
+#include "num/cplx.h"
+
+#define LSTUB__CAV_CELLS    24      /* most annuli of one aperture                                      */
+#define LSTUB__CAV_POINTS   42      /* most rims of annuli, refined                                     */
+#define LSTUB__CAV_MEDIA    64
+#define LSTUB__CAV_VIAS     16      /* most return vias at given positions                              */
+
+typedef struct lstub__cav_medium {
+    double dk;                      /* through-plane, at the reference: sets ranges only; > 0           */
+    double ratio;                   /* in-plane over through-plane                                      */
+} lstub__cav_medium;
+
+typedef struct lstub__cav_copper {
+    double thickness;               /* >= 0                                                             */
+    double antipad;                 /* radius; 0: no plane at the via on this layer                     */
+    double pad;                     /* radius; 0: none                                                  */
+    int    medium;                  /* what fills the layer where there is no copper                    */
+} lstub__cav_copper;
+
+typedef struct lstub__cav_layer {
+    double thickness;
+    int    medium;
+} lstub__cav_layer;
+
+typedef struct lstub__cav_via { double x, y, radius; } lstub__cav_via;
+
+typedef struct lstub__cav_returns {     /* what answers the barrel's radial wave                             */
+    const lstub__cav_via *via;          /* about the barrel's axis                                           */
+    int    vias;
+    int    even;                        /* > 0: via[0] alone is given, on the x axis, and stands for so many */
+    double pitch, sign;                 /* an equal barrel at (pitch, 0), driven with this sign; pitch 0: none */
+} lstub__cav_returns;
+
+#define LSTUB__CAV_OPEN 0           /* plate pairs without edge: the radial wave leaves                 */
+#define LSTUB__CAV_WALL 1           /* closed wall                                                      */
+#define LSTUB__CAV_RING 2           /* return vias, a partner                                           */
+
+#define LSTUB__CAV_HALFSPACE 0
+#define LSTUB__CAV_LID       1
+
+typedef struct lstub__cav_barrel {
+    double radius;
+    const lstub__cav_copper *copper;    /* [0]: the layer the stub hangs on; its lower face is z = 0     */
+    const lstub__cav_layer  *layer;     /* layer[k] lies between copper[k] and copper[k + 1]             */
+    int    layers;                      /* copper has one more                                           */
+    int    media;
+    const lstub__cav_medium *medium;
+    int    outer;                       /* LSTUB__CAV_OPEN ...                                           */
+    double wall;                        /* radius                                                        */
+    lstub__cav_returns returns;
+    double end;                         /* depth where a drilled barrel ends; 0: at the last lower face  */
+    double hole;                        /* radius of the drilled hole                                    */
+    int    fill;                        /* medium in it                                                  */
+    int    below;                       /* LSTUB__CAV_HALFSPACE ...                                      */
+    int    below_medium;
+    double lid;                         /* height of the space under a lid                               */
+    double tap;                         /* depth where a trace leaves between two planes; 0: none        */
+    double tap_pad;                     /* radius of the pad there, 0: none                              */
+} lstub__cav_barrel;
+
+typedef struct lstub__cav_options {
+    int    cells;                   /* annuli per aperture; 0: 4                                        */
+    int    refine;                  /* parts of an annulus that shape its field; 0: 2                   */
+    double f_max;                   /* Hz, highest frequency wanted; 0: 110e9                           */
+} lstub__cav_options;
+
+typedef struct lstub__cavity lstub__cavity;
+
+/* 0, or: -1 no memory, -2 beyond what the arrays hold (see the limits above). Geometry is checked by the caller. */
+int  lstub__cavity_compile(const lstub__cav_barrel *barrel, const lstub__cav_options *options,
+                           void *(*allocate)(void *, size_t), void (*release)(void *, void *), void *user,
+                           lstub__cavity **out);
+void lstub__cavity_destroy(lstub__cavity *cavity);         /* null is allowed */
+size_t lstub__cavity_bytes(const lstub__cavity *cavity);
+
+/* Highest frequency at which the series of the compiled model hold, Hz: 1.1 times f_max, less where a slab is thicker than
+** 0.7 wavelengths. Above it results are wrong without any sign: the caller must compare. */
+double lstub__cavity_limit(const lstub__cavity *cavity, const cplx *eps);
+
+/* Input impedance of the TEM wave in the opening of copper[0], at z = 0. eps[media]: complex, through-plane. */
+cplx lstub__cavity_zin(const lstub__cavity *cavity, double freq, const cplx *eps);
+
+/* With a trace at `tap`: z[0] as above, z[1] = volts on the trace per ampere into the opening, no current in the trace, z[2] =
+** volts per ampere into the trace (with the self term of a uniform sheet current, to be taken off). A stub notches the
+** path where z[1] passes zero. */
+void lstub__cavity_ports(const lstub__cavity *cavity, double freq, const cplx *eps, cplx z[3]);
+
+#endif

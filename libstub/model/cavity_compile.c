@@ -1,0 +1,549 @@
+/*
+** From slabs and faces to a compiled model: modal sums once per kind of slab, the static shape of the field within each
+** annulus, and everything packed into one block of memory.
+*/
+#include "model/cavity_model.h"
+#include "num/dense.h"
+
+#include <string.h>
+
+#define Q_STEP 0.02        /* relative change of the fill's permittivity for its derivative */
+
+typedef struct work {
+    const lstub__cav_barrel *barrel;
+    void *(*allocate)(void *, size_t);
+    void  (*release)(void *, void *);
+    void   *user;
+    cav_mesh   *mesh;
+    cav_face   *face;
+    int         kind[CAV_SLABS];            /* of each slab: number of its modal sums                        */
+    int         kinds;
+    int         sample[CAV_SLABS];          /* a slab of that kind                                           */
+    cav_series *series, *series_q;
+    double     *combined;                   /* [kinds][2 points] rims of both faces in rising order          */
+    int        *place;                      /* [kinds][2 points] where top's, then bottom's rims are in it   */
+    int         rims[CAV_SLABS + 4];        /* of each face: number of its set of rims                       */
+    int         rim_sets;
+    double      k_max;
+} work;
+
+#define WIDE (2 * LSTUB__CAV_POINTS)
+
+static void *get(const work *w, size_t bytes) { return w->allocate(w->user, bytes); }
+static void put(const work *w, void *p) { if (p != NULL) w->release(w->user, p); }
+
+/* ---- which slabs are alike ---------------------------------------------------------------------- */
+
+static void number_rims(work *w)
+{
+    int f, g;
+
+    w->rim_sets = 0;
+    for (f = 0; f < w->mesh->faces; f++) {
+        const cav_face *a = &w->face[f];
+        w->rims[f] = -1;
+        for (g = 0; g < f && w->rims[f] < 0; g++) {
+            const cav_face *b = &w->face[g];
+            if (a->points == b->points && a->refine == b->refine && a->shaped == b->shaped && a->plain == b->plain
+                && memcmp(a->x, b->x, (size_t)a->points * sizeof a->x[0]) == 0) w->rims[f] = w->rims[g];
+        }
+        if (w->rims[f] < 0) w->rims[f] = w->rim_sets++;
+    }
+}
+
+static int rims_of(const work *w, int face) { return face < 0 ? -1 : w->rims[face]; }
+
+static int alike(const work *w, const cav_slab *a, const cav_slab *b)
+{
+    /* heights are differences of depths: equal to rounding */
+    return fabs(a->h - b->h) <= 1e-13 * a->h + 1e-18 && a->r_in == b->r_in && a->r_out == b->r_out
+        && (a->outer == LSTUB__CAV_WALL) == (b->outer == LSTUB__CAV_WALL) && a->medium == b->medium && a->fill == b->fill
+        && rims_of(w, a->top) == rims_of(w, b->top) && rims_of(w, a->bottom) == rims_of(w, b->bottom);
+}
+
+static void number_slabs(work *w)
+{
+    int i, k;
+
+    w->kinds = 0;
+    for (i = 0; i < w->mesh->slabs; i++) {
+        const cav_slab *s = &w->mesh->slab[i];
+        for (k = 0; k < w->kinds; k++) if (alike(w, s, &w->mesh->slab[w->sample[k]])) break;
+        if (k == w->kinds) w->sample[w->kinds++] = i;
+        else w->mesh->slab[i].h = w->mesh->slab[w->sample[k]].h;
+        w->kind[i] = k;
+    }
+}
+
+/* ---- modal sums --------------------------------------------------------------------------------- */
+
+static int combine(const work *w, const cav_slab *s, double *x, int *place)
+{
+    const cav_face *a = &w->face[s->top], *b = s->bottom >= 0 ? &w->face[s->bottom] : NULL;
+    int i = 0, j = 0, n = 0, nb;
+
+    if (b == NULL || w->rims[s->top] == w->rims[s->bottom]) {
+        for (i = 0; i < a->points; i++) { x[i] = a->x[i]; place[i] = place[LSTUB__CAV_POINTS + i] = i; }
+        return a->points;
+    }
+    nb = b->points;
+    while (i < a->points || j < nb) {
+        int from_a = j == nb || (i < a->points && a->x[i] <= b->x[j]);
+        double value = from_a ? a->x[i] : b->x[j];
+        if (n == 0 || value > x[n - 1]) x[n++] = value;     /* a rim on both faces counts once */
+        if (from_a) place[i++] = n - 1; else place[LSTUB__CAV_POINTS + j++] = n - 1;
+    }
+    return n;
+}
+
+static double *series_memory(const work *w, cav_series *s, int points)
+{
+    size_t block;
+
+    s->points = points;
+    s->pairs = points * (points + 1) / 2;
+    block = (size_t)s->pairs * (size_t)(s->degree + 1);
+    s->even = get(w, 2 * block * sizeof *s->even);
+    s->odd = s->even != NULL ? s->even + block : NULL;
+    return s->even;
+}
+
+static int sum_modes(work *w)
+{
+    double log_x[WIDE], *scratch = get(w, cav_modes_scratch(WIDE) * sizeof *scratch);
+    int k, p;
+
+    if (scratch == NULL) return -1;
+    for (k = 0; k < w->kinds; k++) {
+        const cav_slab *s = &w->mesh->slab[w->sample[k]];
+        const lstub__cav_medium *m = &w->barrel->medium[s->medium];
+        double *x = w->combined + (size_t)k * WIDE, q = s->fill >= 0 ? w->barrel->medium[s->fill].dk / m->dk : 1.0;
+        int points = combine(w, s, x, w->place + (size_t)k * WIDE);
+
+        for (p = 0; p < points; p++) log_x[p] = log(x[p]);
+        cav_modes_plan(s, m->ratio, 1.2 * m->dk * w->k_max * w->k_max, &w->series[k]);
+        if (series_memory(w, &w->series[k], points) == NULL) { put(w, scratch); return -1; }
+        cav_modes_sum(s, m->ratio, q, x, log_x, points, &w->series[k], scratch);
+        if (s->fill < 0) continue;
+        w->series_q[k] = w->series[k];
+        if (series_memory(w, &w->series_q[k], points) == NULL) { put(w, scratch); return -1; }
+        cav_modes_sum(s, m->ratio, q * (1.0 + Q_STEP), x, log_x, points, &w->series_q[k], scratch);
+    }
+    put(w, scratch);
+    return 0;
+}
+
+/* ---- static shapes ------------------------------------------------------------------------------ */
+
+static double at_zero(const cav_series *s, const double *series, int pair)
+{
+    double sum = 0.0;
+    int k;
+
+    for (k = 0; k <= s->degree; k++) sum += (k & 1 ? -1.0 : 1.0) * series[k * s->pairs + pair];
+    return sum;
+}
+
+static int pair_of(int p, int q) { return p <= q ? q * (q + 1) / 2 + p : p * (p + 1) / 2 + q; }
+
+/* Static admittances of the annuli of `face` into a slab whose other face is shorted, or, twin, carries the same field. */
+static void add_side(const work *w, int slab, int face, int twin, double *b, double *f)
+{
+    const cav_slab *s = &w->mesh->slab[slab];
+    const cav_face *own = &w->face[face];
+    const cav_series *e = &w->series[w->kind[slab]];
+    int n = own->points - 1, i, j, points = own->points;
+    const int *place = w->place + (size_t)w->kind[slab] * WIDE + (s->top == face ? 0 : LSTUB__CAV_POINTS);
+    double scale = w->barrel->medium[s->medium].dk / s->h;
+
+    for (i = 0; i < points; i++) {
+        for (j = 0; j <= i; j++) {
+            int pair = pair_of(place[i], place[j]);
+            f[i * points + j] = f[j * points + i] = scale * (twin ? 4.0 * at_zero(e, e->odd, pair) : at_zero(e, e->odd, pair) + at_zero(e, e->even, pair));
+        }
+    }
+    for (i = 0; i < n; i++) {
+        for (j = 0; j < n; j++) {
+            double d = f[(i + 1) * points + j + 1] - f[(i + 1) * points + j] - f[i * points + j + 1] + f[i * points + j];
+            b[i * n + j] += d / ((own->log_x[i + 1] - own->log_x[i]) * (own->log_x[j + 1] - own->log_x[j]));
+        }
+    }
+}
+
+static void add_half_space(const work *w, const cav_face *face, double *b)
+{
+    double c[2 * LSTUB__CAV_POINTS], out[4 * LSTUB__CAV_POINTS * LSTUB__CAV_POINTS];
+    cav_face fine = *face;
+    int n = face->points - 1, i;
+
+    fine.cells = n;
+    fine.refine = 1;
+    for (i = 0; i < n; i++) {
+        c[2 * i + 1] = 1.0 / (face->log_x[i + 1] - face->log_x[i]);
+        c[2 * i] = -c[2 * i + 1];
+    }
+    cav_half_space(&fine, c, out);
+    for (i = 0; i < n * n; i++) b[i] += w->barrel->medium[w->barrel->below_medium].dk * out[i];
+}
+
+/*
+** The static field of a face, its neighbours shorted: B v = lambda 1, sum v = 1. Only the shape within a cell is used: how
+** the field rises towards a rim.
+*/
+static void shape_face(const work *w, int face, int above, int copper, int below)
+{
+    double b[(LSTUB__CAV_POINTS - 1) * (LSTUB__CAV_POINTS - 1)], v[LSTUB__CAV_POINTS], sum = 0.0, total;
+    double f[LSTUB__CAV_POINTS * LSTUB__CAV_POINTS];
+    const cav_mesh *mesh = w->mesh;
+    cav_face *a = &w->face[face];
+    int n = a->points - 1, i, k, first = above, second = below;
+
+    if (a->refine == 1 || a->shaped == 0) return;
+    memset(b, 0, sizeof b);
+    /* alike from above and below must come out alike to the last bit: sum in the order of kinds */
+    if (second >= 0 && w->kind[second] < w->kind[first]) { first = below; second = above; }
+    add_side(w, first, first == above ? mesh->slab[first].bottom : mesh->slab[first].top, 0, b, f);
+    if (second >= 0) add_side(w, second, second == above ? mesh->slab[second].bottom : mesh->slab[second].top, 0, b, f);
+    else add_half_space(w, a, b);
+    if (copper >= 0) add_side(w, copper, face, 1, b, f);
+    for (i = 0; i < n; i++) v[i] = 1.0;
+    if (lstub__rsolve(b, n, n, v, 1, 1) != 0) return;       /* keeps the plain 1/rho */
+    for (i = 0; i < n; i++) sum += v[i];
+    total = a->log_x[n] - a->log_x[0];
+    for (i = 0; i < a->shaped * a->refine; i++) {
+        double least = 0.1 * (a->log_x[i + 1] - a->log_x[i]) / total, value = v[i] / sum;
+        a->share[i] = value > least ? value : least;        /* NaN: least */
+    }
+    for (i = 0; i < a->shaped * a->refine; i += a->refine) {
+        for (sum = 0.0, k = 0; k < a->refine; k++) sum += a->share[i + k];
+        for (k = 0; k < a->refine; k++) {
+            double plain = (a->log_x[i + k + 1] - a->log_x[i + k]) / (a->log_x[i + a->refine] - a->log_x[i]);
+            a->share[i + k] = a->plain * plain + (1.0 - a->plain) * a->share[i + k] / sum;
+        }
+    }
+}
+
+/* Both faces of a copper layer take one shape, so that a thin layer can pass the field on as it is. */
+static void shape_faces(const work *w)
+{
+    const cav_mesh *mesh = w->mesh;
+    int i;
+
+    shape_face(w, mesh->feed_face, CAV_FEED - 1, -1, CAV_FEED);
+    for (i = CAV_FEED; i < mesh->slabs; i++) {
+        int face = mesh->slab[i].bottom, next = i + 1 < mesh->slabs ? i + 1 : -1, other, after;
+        if (face < 0) continue;
+        other = next >= 0 && mesh->slab[next].copper ? mesh->slab[next].bottom : -1;
+        if (other < 0 || w->rims[other] != w->rims[face]) { shape_face(w, face, i, -1, next); continue; }
+        after = next + 1 < mesh->slabs ? next + 1 : -1;
+        shape_face(w, face, i, next, after);
+        w->face[other].plain = w->face[face].plain;
+        memcpy(w->face[other].share, w->face[face].share, sizeof w->face[face].share);
+        i = next;                               /* its lower face is done */
+    }
+}
+
+void cav_cell_coefficients(const cav_face *face, double *c)
+{
+    int r = face->refine, i, k;
+
+    for (i = 0; i < face->cells; i++) {
+        double before = 0.0;
+        for (k = 0; k <= r; k++) {
+            int at = i * r + k;
+            double s = k < r ? face->share[at] / (face->log_x[at + 1] - face->log_x[at]) : 0.0;
+            *c++ = before - s;
+            before = s;
+        }
+    }
+}
+
+/* ---- packing ------------------------------------------------------------------------------------ */
+
+typedef struct pack { char *base; size_t at; } pack;        /* base null: only counts */
+
+static void *take(pack *p, size_t bytes)
+{
+    void *out = p->base != NULL ? p->base + p->at : NULL;
+
+    p->at += (bytes + 15) & ~(size_t)15;
+    return out;
+}
+
+/* Sum over the rims of cell i of one face and cell j of the other. */
+static double reaction(const double *series, const int *pi, const double *ci, int ri, const int *pj, const double *cj,
+                       int rj)
+{
+    double sum = 0.0;
+    int p, q;
+
+    for (p = 0; p <= ri; p++) {
+        double part = 0.0;
+        for (q = 0; q <= rj; q++) part += cj[q] * series[pair_of(pi[p], pj[q])];
+        sum += ci[p] * part;
+    }
+    return sum;
+}
+
+/* One coefficient's worth of a kernel. Alike: even, odd triangles. Otherwise top and bottom triangles, cross block. */
+static void contract(const cav_series *s, int k, const int *place, const cav_opening *a, const cav_opening *b, int same,
+                     double *out)
+{
+    const double *even = s->even + (size_t)k * (size_t)s->pairs, *odd = s->odd + (size_t)k * (size_t)s->pairs;
+    int i, j, pass;
+
+    for (pass = 0; pass < 2; pass++) {
+        const cav_opening *o = same || pass == 0 ? a : b;
+        const int *at = same || pass == 0 ? place : place + LSTUB__CAV_POINTS;
+        int r;
+        if (o == NULL) break;
+        r = o->refine;
+        for (i = 0; i < o->cells; i++) {
+            for (j = 0; j <= i; j++) {
+                const double *ci = o->c + i * (r + 1), *cj = o->c + j * (r + 1);
+                double e = reaction(same && pass ? odd : even, at + i * r, ci, r, at + j * r, cj, r);
+                if (!same) e += reaction(odd, at + i * r, ci, r, at + j * r, cj, r);
+                *out++ = e;
+            }
+        }
+    }
+    if (same || b == NULL) return;
+    for (i = 0; i < a->cells; i++) {
+        for (j = 0; j < b->cells; j++) {
+            const double *ci = a->c + i * (a->refine + 1), *cj = b->c + j * (b->refine + 1);
+            const int *pi = place + i * a->refine, *pj = place + LSTUB__CAV_POINTS + j * b->refine;
+            *out++ = reaction(even, pi, ci, a->refine, pj, cj, b->refine)
+                   - reaction(odd, pi, ci, a->refine, pj, cj, b->refine);
+        }
+    }
+}
+
+/* Chebyshev terms that matter: what is dropped is below 1e-14 of the first. */
+static int shorten(const double *coef, int degree, int entries)
+{
+    double most = 0.0;
+    int e;
+
+    for (e = 0; e < entries; e++) if (fabs(coef[e]) > most) most = fabs(coef[e]);
+    for (; degree > 1; degree--) {
+        for (e = 0; e < entries; e++) if (fabs(coef[degree * entries + e]) > 1e-14 * most) return degree;
+    }
+    return degree;
+}
+
+static int entries_of(int same, int na, int nb)
+{
+    return same ? na * (na + 1) : na * (na + 1) / 2 + nb * (nb + 1) / 2 + na * nb;
+}
+
+typedef struct plan {               /* numbering of what the model holds */
+    int opening[CAV_SLABS + 4];     /* of each face                      */
+    int first_face[CAV_SLABS + 4];  /* of each opening                   */
+    int openings;
+    int kernel[CAV_SLABS];          /* of each slab                      */
+    int first_slab[CAV_SLABS];      /* of each kernel                    */
+    int kernels;
+} plan;
+
+static void number_openings(const work *w, plan *n)
+{
+    int f, g, i, k;
+
+    n->openings = 0;
+    for (f = 0; f < w->mesh->faces; f++) {
+        const cav_face *a = &w->face[f];
+        for (g = 0; g < n->openings; g++) {
+            const cav_face *b = &w->face[n->first_face[g]];
+            if (w->rims[f] == w->rims[n->first_face[g]] && memcmp(a->share, b->share, (size_t)(a->points - 1) * sizeof(double)) == 0)
+                break;
+        }
+        if (g == n->openings) n->first_face[n->openings++] = f;
+        n->opening[f] = g;
+    }
+    n->kernels = 0;
+    for (i = 0; i < w->mesh->slabs; i++) {
+        const cav_slab *s = &w->mesh->slab[i];
+        for (k = 0; k < n->kernels; k++) {
+            const cav_slab *t = &w->mesh->slab[n->first_slab[k]];
+            if (w->kind[i] == w->kind[n->first_slab[k]] && n->opening[s->top] == n->opening[t->top]
+                && (s->bottom < 0 ? -1 : n->opening[s->bottom]) == (t->bottom < 0 ? -1 : n->opening[t->bottom])) break;
+        }
+        if (k == n->kernels) n->first_slab[n->kernels++] = i;
+        n->kernel[i] = k;
+    }
+}
+
+static void pack_openings(const work *w, const plan *n, pack *p, cav_opening *list)
+{
+    int g, i, a, b;
+
+    for (g = 0; g < n->openings; g++) {
+        const cav_face *f = &w->face[n->first_face[g]];
+        size_t points = (size_t)f->points, cells = (size_t)f->cells;
+        double *x = take(p, points * sizeof *x), *log_x = take(p, points * sizeof *x);
+        double *c = take(p, cells * (size_t)(f->refine + 1) * sizeof *c), *self = take(p, cells * sizeof *self);
+
+        if (list == NULL) continue;
+        memcpy(x, f->x, points * sizeof *x);
+        memcpy(log_x, f->log_x, points * sizeof *x);
+        cav_cell_coefficients(f, c);
+        for (i = 0; i < f->cells; i++) {
+            const double *ci = c + i * (f->refine + 1);
+            double sum = 0.0;
+            for (a = 0; a <= f->refine; a++)
+                for (b = 0; b <= f->refine; b++)    /* measured from the cell's first rim: smaller numbers */
+                    sum += ci[a] * ci[b] * (log_x[i * f->refine + (a < b ? a : b)] - log_x[i * f->refine]);
+            self[i] = sum;
+        }
+        list[g].points = f->points; list[g].cells = f->cells; list[g].refine = f->refine;
+        list[g].same_rims = w->rims[n->first_face[g]];
+        list[g].x = x; list[g].log_x = log_x; list[g].c = c; list[g].log_self = self;
+    }
+}
+
+static void pack_kernels(const work *w, const plan *n, pack *p, const cav_opening *openings, cav_kernel *list)
+{
+    int k, d, e;
+
+    for (k = 0; k < n->kernels; k++) {
+        const cav_slab *s = &w->mesh->slab[n->first_slab[k]];
+        int kind = w->kind[n->first_slab[k]], top = n->opening[s->top], bottom = s->bottom < 0 ? -1 : n->opening[s->bottom];
+        const cav_series *series = &w->series[kind];
+        int na = w->face[s->top].cells, nb = s->bottom < 0 ? 0 : w->face[s->bottom].cells;
+        int same = top == bottom, entries = entries_of(same, na, nb), degree = series->degree;
+        size_t count = (size_t)entries * (size_t)(degree + 1);
+        double *coef = take(p, count * sizeof *coef), *coef_q = s->fill >= 0 ? take(p, count * sizeof *coef) : NULL;
+        const int *place = w->place + (size_t)kind * WIDE;
+        double q = s->fill >= 0 ? w->barrel->medium[s->fill].dk / w->barrel->medium[s->medium].dk : 1.0;
+
+        if (list == NULL) continue;
+        for (d = 0; d <= degree; d++) {
+            const cav_opening *b = bottom < 0 ? NULL : &openings[bottom];
+            contract(series, d, place, &openings[top], b, same, coef + d * entries);
+            if (coef_q == NULL) continue;
+            contract(&w->series_q[kind], d, place, &openings[top], b, same, coef_q + d * entries);
+            for (e = d * entries; e < (d + 1) * entries; e++) coef_q[e] = (coef_q[e] - coef[e]) / (Q_STEP * q);
+        }
+        list[k].same = same; list[k].degree = shorten(coef, degree, entries); list[k].first = series->first;
+        list[k].entries = entries; list[k].u_max = series->u_max; list[k].q = q;
+        list[k].coef = coef; list[k].coef_q = coef_q;
+    }
+}
+
+static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
+{
+    const cav_mesh *mesh = w->mesh;
+    cav_slab *slab;
+    cav_opening *opening;
+    cav_kernel *kernel;
+    lstub__cav_via *via;
+    double *half = NULL;
+    int i;
+
+    take(p, sizeof *m);
+    slab = take(p, (size_t)mesh->slabs * sizeof *slab);
+    opening = take(p, (size_t)n->openings * sizeof *opening);
+    kernel = take(p, (size_t)n->kernels * sizeof *kernel);
+    via = take(p, (size_t)w->barrel->returns.vias * sizeof *via);
+    if (mesh->half_face >= 0) {
+        size_t cells = (size_t)w->face[mesh->half_face].cells;
+        half = take(p, 4 * cells * cells * sizeof *half);
+    }
+    pack_openings(w, n, p, opening);
+    pack_kernels(w, n, p, opening, kernel);
+    if (m == NULL) return;
+    for (i = 0; i < mesh->slabs; i++) {
+        slab[i] = mesh->slab[i];
+        slab[i].top = n->opening[slab[i].top];
+        if (slab[i].bottom >= 0) slab[i].bottom = n->opening[slab[i].bottom];
+        slab[i].kernel = n->kernel[i];
+    }
+    if (w->barrel->returns.vias > 0) memcpy(via, w->barrel->returns.via, (size_t)w->barrel->returns.vias * sizeof *via);
+    if (half != NULL) cav_half_space(&w->face[mesh->half_face], opening[n->opening[mesh->half_face]].c, half);
+    m->slabs = mesh->slabs; m->openings = n->openings; m->kernels = n->kernels; m->media = w->barrel->media;
+    m->returns = w->barrel->returns; m->returns.via = via; m->outer = w->barrel->outer; m->rim_sets = w->rim_sets;
+    m->half_opening = mesh->half_face >= 0 ? n->opening[mesh->half_face] : -1;
+    m->half_medium = w->barrel->below_medium;
+    m->port_log = w->face[mesh->tem_face].log_x[1] - w->face[mesh->tem_face].log_x[0];
+    m->port_medium = w->barrel->copper[0].medium;
+    m->feed_length = mesh->feed_height * CAV_FEED;
+    m->slab = slab; m->opening = opening; m->kernel = kernel; m->half = half;
+    for (i = 0; i < m->media; i++) m->ratio[i] = w->barrel->medium[i].ratio;
+}
+
+static int build(work *w, lstub__cavity **out)
+{
+    plan n;
+    pack p = { NULL, 0 };
+    int failed;
+
+    number_rims(w);
+    number_slabs(w);
+    w->series = get(w, (size_t)w->kinds * sizeof *w->series);
+    w->series_q = get(w, (size_t)w->kinds * sizeof *w->series_q);
+    w->combined = get(w, (size_t)w->kinds * WIDE * sizeof *w->combined);
+    w->place = get(w, (size_t)w->kinds * WIDE * sizeof *w->place);
+    if (w->series != NULL) memset(w->series, 0, (size_t)w->kinds * sizeof *w->series);
+    if (w->series_q != NULL) memset(w->series_q, 0, (size_t)w->kinds * sizeof *w->series_q);
+    if (w->series == NULL || w->series_q == NULL || w->combined == NULL || w->place == NULL) return -1;
+    failed = sum_modes(w);
+    if (failed) return failed;
+    shape_faces(w);
+    number_openings(w, &n);
+    pack_model(w, &n, &p, NULL);
+    p.base = get(w, p.at);
+    if (p.base == NULL) return -1;
+    *out = (lstub__cavity *)(void *)p.base;
+    (*out)->bytes = p.at;
+    (*out)->release = w->release;
+    (*out)->user = w->user;
+    p.at = 0;
+    pack_model(w, &n, &p, *out);
+    return 0;
+}
+
+int lstub__cavity_compile(const lstub__cav_barrel *barrel, const lstub__cav_options *options,
+                          void *(*allocate)(void *, size_t), void (*release)(void *, void *), void *user,
+                          lstub__cavity **out)
+{
+    static const lstub__cav_options defaults = { 0, 0, 0.0 };
+    const lstub__cav_options *o = options != NULL ? options : &defaults;
+    int cells = o->cells > 0 ? o->cells : 4, refine = o->refine > 0 ? o->refine : 2, failed, k;
+    work *w = allocate(user, sizeof *w);
+    void *scratch = allocate(user, cav_mesh_scratch());
+
+    *out = NULL;
+    if (w != NULL) {
+        memset(w, 0, sizeof *w);
+        w->barrel = barrel; w->allocate = allocate; w->release = release; w->user = user;
+        w->k_max = 2.0 * CAV_PI * (o->f_max > 0.0 ? o->f_max : 110e9) / CAV_C0;
+        w->mesh = get(w, sizeof *w->mesh);
+        w->face = get(w, (CAV_SLABS + 4) * sizeof *w->face);
+    }
+    failed = w == NULL || scratch == NULL || w->mesh == NULL || w->face == NULL ? -1 : 0;
+    if (!failed && ((cells + 3) * refine + 1 > LSTUB__CAV_POINTS || cells + 3 > LSTUB__CAV_CELLS
+                    || barrel->media > LSTUB__CAV_MEDIA || barrel->returns.vias > LSTUB__CAV_VIAS)) failed = -2;
+    if (!failed) {
+        w->mesh->face = w->face;
+        failed = cav_mesh_make(barrel, cells, refine, scratch, w->mesh);
+    }
+    if (!failed) failed = build(w, out);
+    if (w != NULL) {
+        for (k = 0; k < w->kinds && w->series != NULL && w->series_q != NULL; k++) {
+            put(w, w->series[k].even);
+            put(w, w->series_q[k].even);
+        }
+        put(w, w->series); put(w, w->series_q); put(w, w->combined); put(w, w->place);
+        put(w, w->face); put(w, w->mesh);
+        release(user, w);
+    }
+    if (scratch != NULL) release(user, scratch);
+    return failed;
+}
+
+size_t lstub__cavity_bytes(const lstub__cavity *cavity) { return cavity->bytes; }
+
+void lstub__cavity_destroy(lstub__cavity *cavity)
+{
+    if (cavity != NULL) cavity->release(cavity->user, cavity);
+}

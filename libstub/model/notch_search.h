@@ -1,0 +1,15 @@
+/* The next notch of a shunt stub above a frequency, by sampling that refines itself. */
+#ifndef LSTUB_NOTCH_SEARCH_H
+#define LSTUB_NOTCH_SEARCH_H
+
+#include "num/cplx.h"
+
+typedef cplx lstub__zin_at(const void *model, double freq);
+
+/*
+** Lowest minimum of |S21|, S21 = 2 Z/(2 Z + z_ref), in f_low .. f_high: its frequency, HUGE_VAL where there is none, NaN where Z
+** is not finite. `step`: first sampling, Hz: a tenth of the lowest quarter-wave frequency expected, or less.
+*/
+double lstub__notch_search(lstub__zin_at *zin, const void *model, double z_ref, double f_low, double f_high, double step);
+
+#endif

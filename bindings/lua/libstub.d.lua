@@ -327,7 +327,7 @@ function libstub.dielectric_permittivity(dielectric, freq) end
 ---@class libstub.layer
 ---@field name string 1 to 127 bytes, no other layer has it
 ---@field kind "dielectric"|"signal"|"plane"|"mixed" signal: no plane around a barrel; mixed: traces and plane areas
----@field thickness number m, > 0, at most 0.1
+---@field thickness number m, > 0, at most 0.1; of copper also 0: a sheet
 ---@field tol_plus? number m, at most the thickness; default 0
 ---@field tol_minus? number m, less than the thickness; default 0
 ---@field dk? number needed by a dielectric; of a copper layer: the resin between its copper, default that above it
@@ -407,7 +407,8 @@ function stackup:close() end
 ---@field count? integer return vias on a circle, 1 to 1000
 ---@field distance? number radius of that circle, m
 ---@field drill? number of the return vias, m; default that of the via
----@field wall? number instead of these: radius of a closed wall, m
+---@field xy? number[][] instead of count and distance: { { x, y }, ... } of each about the axis of the via, m
+---@field wall? number instead of all these: radius of a closed wall, m
 
 ---@class libstub.pair
 ---@field pitch number axis to axis, m, > drill
@@ -433,13 +434,16 @@ function stackup:close() end
 ---@field pad_end? number m; 0: none
 ---@field antipad? number m, on every plane crossed that does not connect; 0: mixed layers are no plane here, and planes need an entry in antipads
 ---@field pads? table<string|integer, number> diameters that replace those above, by layer; 0: no pad
----@field antipads? table<string|integer, number> the same for antipads; 0: no plane at the via on this layer
+---@field antipads? table<string|integer, number> the same for antipads; 0: no plane at the via on this layer; on a plane that connects: the opening that the signal comes through
 ---@field clear? table<string|integer, number> diameter free of other copper around the axis, by layer, where known
 ---@field nonfunctional_pads? "removed"|"kept" on inner layers that do not connect; default removed
 ---@field returns? libstub.returns default none near: the plate pairs carry the return, and radiate
 ---@field pair? libstub.pair partner barrel
 ---@field backdrills? libstub.backdrill[] at most one a side
 ---@field pin? libstub.pin press-fit pin
+---@field outside_dk? number of what lies beyond the outer copper, 1 to 1000; default 1, air
+---@field lid_distance? number m, from the outer copper to a conducting lid; default 0: open space
+---@field hole_dk? number of what fills a drilled hole, 1 to 1000; default 1, air
 
 ---@class libstub.via
 local via = {}
@@ -470,9 +474,15 @@ function via:check() end
 ---@return libstub.stub[]?, string? message, integer? code
 function via:stubs() end
 
+---bulk: quarter wave in the laminate's through-plane Dk. loaded: uniform line, capacitances of planes and pads in it.
+---ladder, for sweeps: every cavity a line section with the radial wave of its plates. cavity: radial modes of every plate
+---pair and copper layer, matched at every opening.
+---@alias libstub.fidelity "default"|"bulk"|"loaded"|"ladder"|"cavity"
+
 ---@class libstub.model_options
----@field fidelity? "default"|"bulk"|"loaded" default: the most accurate one of this version
+---@field fidelity? libstub.fidelity default: the most accurate one of this version, cavity
 ---@field z_ref? number ohm, line that the stubs load; of a pair: of one of the two; default 50
+---@field annuli? integer cavity: annuli an opening is cut into at least, 2 to 12; default 4
 
 ---Compiles the geometry: once, then many questions. A via without any stub compiles, and loads nothing.
 ---@param options? libstub.model_options
@@ -508,37 +518,38 @@ function model:stub_count() end
 function model:stub(number) end
 
 ---@class libstub.line
----@field fidelity "bulk"|"loaded" the one that made these numbers
+---@field fidelity libstub.fidelity the one that made these numbers
 ---@field dk_effective number (c/(4 L f1))^2 of the first notch: end effects included
 ---@field dk_line number c^2 L' C' of the line without its end
 ---@field impedance number ohm
 ---@field inductance number H/m
 ---@field capacitance number F/m
 ---@field end_capacitance number F
----@field stated_error number largest error of the first notch found against full-wave data, relative
----@field f_range number Hz, top of the stated range: an antipad radius or plate spacing is a tenth of the wavelength
+---@field stated_error number of the first notch, relative: the largest found against full-wave data for this fidelity; cavity: as error of libstub.notch
+---@field f_range number Hz, top of the stated range. bulk, loaded: an antipad radius or plate spacing is a tenth of the wavelength; else 110e9
 
----A stub as a line, at 1 GHz.
+---A stub as a line, at 1 GHz. ladder and cavity, which are no lines: as the uniform line of the same first notch that
+---holds the same charge.
 ---@param number integer from 1
 ---@return libstub.line?, string? message, integer? code E_NONE
 function model:line(number) end
 
----Input impedance of a stub where it hangs on the signal path, ohm: Zin = Zs coth(gamma L) with the end load (Pozar).
----For one frequency: re, im. W_RANGE above f_range of the line, then with a list of statuses, one per frequency.
----@param freq number|number[]|libstub.array Hz, 1e6 to 1e12
+---Input impedance of a stub where it hangs on the signal path, ohm; bulk, loaded: Zin = Zs coth(gamma L) with the end
+---load (Pozar). For one frequency: re, im. W_RANGE above f_range of the line, then with a list of statuses, one per frequency.
+---@param freq number|number[]|libstub.array Hz, 1e6 to 1e12; ladder and cavity: to 200e9
 ---@param options? libstub.stub_option
 ---@return libstub.complex? zin, string? message, integer? code E_ARGUMENT, E_NONE without a stub
 ---@return integer[]? status
 function model:zin(freq, options) end
 
 ---Transmission past the stub on a line of z_ref matched at both ends: 2 Zin/(2 Zin + z_ref). For one frequency: re, im.
----@param freq number|number[]|libstub.array Hz, 1e6 to 1e12
+---@param freq number|number[]|libstub.array Hz, 1e6 to 1e12; ladder and cavity: to 200e9
 ---@param options? libstub.stub_option
 ---@return libstub.complex? s21, string? message, integer? code, integer[]? status
 function model:s21(freq, options) end
 
 ---Loss that the stubs add, dB >= 0: -20 log10 |S21|. For one frequency: a number.
----@param freq number|number[]|libstub.array Hz, 1e6 to 1e12
+---@param freq number|number[]|libstub.array Hz, 1e6 to 1e12; ladder and cavity: to 200e9
 ---@param options? libstub.stub_option
 ---@return libstub.array? loss dB
 ---@return string? message, integer? code, integer[]? status
@@ -550,8 +561,10 @@ function model:added_loss(freq, options) end
 ---@field f_series? number Hz, zero of Im Zin next to it
 ---@field depth_db number 20 log10 |S21| at f, negative, -300 at least
 ---@field q? number f over the width of the notch 3 dB above its floor; absent where it is not that deep
+---@field error number of f, relative: cavity estimates it for each notch from a second model of fewer annuli; others: stated_error of the line
 
----All notches from 1 MHz up to f_max, in rising order: roots of the reactance found by bracketing.
+---All notches from 1 MHz up to f_max, in rising order: minima of |S21| found by bracketing. ladder and
+---cavity find none above 200e9.
 ---@param f_max number Hz, up to 1e12
 ---@param options? libstub.stub_option
 ---@return libstub.notch[]? notches may be empty
@@ -575,7 +588,7 @@ function model:highest_symbol_rate(criteria) end
 function model:close() end
 
 ---@class libstub.first_notches
----@field f1 libstub.array Hz, lowest over the via's stubs; NaN where it has none below 1e12 Hz
+---@field f1 libstub.array Hz, lowest over the via's stubs; NaN where it has none that the fidelity looks for
 ---@field dk_effective libstub.array of that stub
 ---@field length libstub.array of that stub, m
 ---@field status integer[]
@@ -602,7 +615,7 @@ function libstub.first_notch_batch(stackup, vias, options) end
 ---@field pass boolean every criterion asked for is met
 ---@field limited_by "none"|"notch"|"loss" the criterion with the least margin
 ---@field nyquist number Hz
----@field f1 number first notch, Hz; math.huge without a stub or notch below 1e12 Hz
+---@field f1 number first notch, Hz; math.huge without a stub or a notch where the fidelity looks for one
 ---@field notch_over_nyquist number f1/nyquist
 ---@field notch_margin? number f1 - limit, Hz; absent if not asked
 ---@field added_loss_db number at Nyquist
@@ -635,7 +648,8 @@ function libstub.signal_bit_rate(signal) end
 ---@field side? "top"|"bottom" default that of the only stub; needed where the via has two
 
 ---Longest tolerable stub: the barrel on `side`, drilled back as little as the criteria allow, the other side as it is.
----Found by bracketing on drilled geometries, to 1 nm. The criteria are taken to get no better as the stub grows.
+---Found by bracketing on drilled geometries, to 1 nm (ladder, cavity: 0.1 um). The criteria are taken
+---to get no better as the stub grows.
 ---@param via libstub.via
 ---@param signal libstub.signal
 ---@param criteria libstub.criteria

@@ -1,11 +1,10 @@
 /* Signals, criteria, margins and the inverse questions. */
 #include "lslua.h"
 
-#include <limits.h>
 
 static const char *const signal_keys[] = {"symbol_rate", "levels", NULL};
 static const char *const criteria_keys[] = {"notch_over_nyquist", "added_loss_db", NULL};
-static const char *const longest_keys[] = {"side", "fidelity", "z_ref", NULL};
+static const char *const longest_keys[] = {"side", "fidelity", "z_ref", "annuli", NULL};
 
 static const lslua_word limits[] = {
     {"none", LSTUB_LIMIT_NONE}, {"notch", LSTUB_LIMIT_NOTCH}, {"loss", LSTUB_LIMIT_LOSS}, {NULL, 0}
@@ -185,7 +184,7 @@ int lslua_longest_stub(lua_State *L)
     int32_t side = 0, status;
     LSTUB_INIT(err);
     LSTUB_INIT(limit);
-    LSTUB_INIT(options);
+    lslua_model_defaults(L, &options);
     lslua_most(L, 4);
     signal_argument(L, 2, &signal);
     criteria_argument(L, 3, &criteria);
@@ -299,15 +298,6 @@ static const int32_t *sides_argument(lua_State *L, int arg, size_t count, size_t
     return sides;
 }
 
-static int32_t *new_status(lua_State *L, size_t count)
-{
-    int32_t *status = lslua_scratch(L, count, sizeof *status);
-    size_t i;
-    for (i = 0; i < count; i++)
-        status[i] = INT_MIN;
-    return status;
-}
-
 /* longest_stub_batch(stackup, vias, sides, signals, criteria, options): a list of limits with their status. */
 int lslua_longest_stub_batch(lua_State *L)
 {
@@ -329,13 +319,13 @@ int lslua_longest_stub_batch(lua_State *L)
     sides = sides_argument(L, 3, n, &side_stride);
     signals = signals_argument(L, 4, n, &signal_stride);
     criteria = criteria_list_argument(L, 5, n, &criteria_stride);
-    each = new_status(L, n);
+    each = lslua_new_status(L, n);
     out = lslua_scratch(L, n, sizeof *out);
     for (i = 0; i < n; i++)
         LSTUB_INIT(out[i]);
     status = lstub_longest_stub_batch(lslua_stackup(L, 1, 1), vias, sizeof *vias, sides, side_stride, signals,
                                       signal_stride, criteria, criteria_stride, n, &options, out, sizeof *out, each, &err);
-    if (status < 0 && (n == 0 || each[0] == INT_MIN))
+    if (lslua_batch_failed(L, status, each, n))
         return lslua_fail(L, status, &err);
     lua_createtable(L, (int)n, 0);
     for (i = 0; i < n; i++) {
@@ -368,13 +358,13 @@ int lslua_margin_batch(lua_State *L)
     vias = lslua_vias(L, 2, 1, &n);
     signals = signals_argument(L, 3, n, &signal_stride);
     criteria = criteria_list_argument(L, 4, n, &criteria_stride);
-    each = new_status(L, n);
+    each = lslua_new_status(L, n);
     out = lslua_scratch(L, n, sizeof *out);
     for (i = 0; i < n; i++)
         LSTUB_INIT(out[i]);
     status = lstub_margin_batch(lslua_stackup(L, 1, 1), vias, sizeof *vias, signals, signal_stride, criteria,
                                 criteria_stride, n, &options, out, sizeof *out, each, &err);
-    if (status < 0 && (n == 0 || each[0] == INT_MIN))
+    if (lslua_batch_failed(L, status, each, n))
         return lslua_fail(L, status, &err);
     lua_createtable(L, (int)n, 0);
     for (i = 0; i < n; i++) {

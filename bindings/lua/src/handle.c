@@ -44,6 +44,41 @@ static void release(void *user, void *memory)
     f(state, b, b->bytes, 0);
 }
 
+/* Memory of calls, which no object stands for. */
+typedef struct transient {
+    lslua_object    object;
+    lstub_allocator allocator;
+} transient;
+
+static const char transient_key = 0;    /* only its address counts */
+
+static void set_allocator(lua_State *L, lslua_object *object, lstub_allocator *allocator)
+{
+    memset(object, 0, sizeof *object);
+    lua_rawgeti(L, LUA_REGISTRYINDEX, LUA_RIDX_MAINTHREAD);
+    object->main = lua_tothread(L, -1);
+    lua_pop(L, 1);
+    LSTUB_INIT(*allocator);
+    allocator->allocate = allocate;
+    allocator->release = release;
+    allocator->user = object;
+}
+
+const lstub_allocator *lslua_allocator(lua_State *L)
+{
+    transient *t;
+    luaL_checkstack(L, 3, NULL);
+    lua_rawgetp(L, LUA_REGISTRYINDEX, &transient_key);
+    t = lua_touserdata(L, -1);
+    lua_pop(L, 1);
+    if (t == NULL) {
+        t = lua_newuserdatauv(L, sizeof *t, 0);
+        set_allocator(L, &t->object, &t->allocator);
+        lua_rawsetp(L, LUA_REGISTRYINDEX, &transient_key);
+    }
+    return &t->allocator;
+}
+
 void *lslua_scratch(lua_State *L, size_t count, size_t size)
 {
     void *memory;
@@ -57,15 +92,8 @@ void *lslua_scratch(lua_State *L, size_t count, size_t size)
 lslua_object *lslua_new(lua_State *L, const char *type, int values, lstub_allocator *allocator)
 {
     lslua_object *object = lua_newuserdatauv(L, sizeof *object, values);
-    memset(object, 0, sizeof *object);
+    set_allocator(L, object, allocator);
     luaL_setmetatable(L, type);
-    lua_rawgeti(L, LUA_REGISTRYINDEX, LUA_RIDX_MAINTHREAD);
-    object->main = lua_tothread(L, -1);
-    lua_pop(L, 1);
-    LSTUB_INIT(*allocator);
-    allocator->allocate = allocate;
-    allocator->release = release;
-    allocator->user = object;
     return object;
 }
 

@@ -34,6 +34,10 @@ int lslua_fail(lua_State *L, int32_t status, const lstub_error *err);
 int lslua_done(lua_State *L, int results, int32_t status, const lstub_error *err);
 /* Fills err with a failure that this module has found itself. */
 int32_t lslua_refuse(lstub_error *err, int32_t status, const char *format, ...);
+/* Statuses of the items of a batch, pushed: INT_MIN where the library has not put one. */
+int32_t *lslua_new_status(lua_State *L, size_t count);
+/* Whether a batch did not answer any item. Raises where memory was lacking. */
+int lslua_batch_failed(lua_State *L, int32_t status, const int32_t *each, size_t count);
 /* Checks that no argument stands beyond number `most`. */
 void lslua_most(lua_State *L, int most);
 
@@ -58,6 +62,8 @@ typedef struct lslua_object {   /* the userdata of a handle                     
 void *lslua_scratch(lua_State *L, size_t count, size_t size);
 /* Pushes an object without a handle and with its metatable; allocator serves lstub_..._create. */
 lslua_object *lslua_new(lua_State *L, const char *type, int values, lstub_allocator *allocator);
+/* The state's allocator for what a call needs while it runs; lives as long as the state. */
+const lstub_allocator *lslua_allocator(lua_State *L);
 /* Tells the collector about the memory behind a new handle. */
 void lslua_charge(lua_State *L, const lslua_object *object);
 /* The handle of the object at `index`, an argument (arg > 0) or not; raises "closed ...". */
@@ -163,6 +169,7 @@ lstub_via *lslua_vias(lua_State *L, int arg, int stackup, size_t *count);
 
 void lslua_open_model(lua_State *L);
 int lslua_via_model(lua_State *L);
+void lslua_model_defaults(lua_State *L, lstub_model_options *options);
 void lslua_model_options(const lslua_at *at, lstub_model_options *options);
 /* Options of the model at argument `arg`, which may be none. */
 void lslua_model_argument(lua_State *L, int arg, lstub_model_options *options);

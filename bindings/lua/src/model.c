@@ -1,26 +1,33 @@
 /* libstub.model: user value 1 is the list of layer names. */
 #include "lslua.h"
 
-#include <limits.h>
 #include <stdio.h>
 #include <string.h>
 
 static const lslua_word fidelities[] = {
-    {"default", LSTUB_FIDELITY_DEFAULT}, {"bulk", LSTUB_FIDELITY_BULK}, {"loaded", LSTUB_FIDELITY_LOADED}, {NULL, 0}
+    {"default", LSTUB_FIDELITY_DEFAULT}, {"bulk", LSTUB_FIDELITY_BULK}, {"loaded", LSTUB_FIDELITY_LOADED},
+    {"ladder", LSTUB_FIDELITY_LADDER}, {"cavity", LSTUB_FIDELITY_CAVITY}, {NULL, 0}
 };
 
-static const char *const model_keys[] = {"fidelity", "z_ref", NULL};
+static const char *const model_keys[] = {"fidelity", "z_ref", "annuli", NULL};
 static const char *const stub_keys[] = {"stub", NULL};
+
+void lslua_model_defaults(lua_State *L, lstub_model_options *options)
+{
+    LSTUB_INIT(*options);
+    options->allocator = lslua_allocator(L);
+}
 
 void lslua_model_options(const lslua_at *at, lstub_model_options *options)
 {
     lslua_word_field(at, "fidelity", fidelities, &options->fidelity);
     lslua_number(at, "z_ref", &options->z_ref);
+    lslua_integer(at, "annuli", &options->annuli);
 }
 
 void lslua_model_argument(lua_State *L, int arg, lstub_model_options *options)
 {
-    LSTUB_INIT(*options);
+    lslua_model_defaults(L, options);
     if (!lua_isnoneornil(L, arg)) {
         lslua_at at = lslua_options(L, arg, model_keys);
         lslua_model_options(&at, options);
@@ -228,12 +235,13 @@ static void push_notches(lua_State *L, const lstub_notch *notches, size_t count)
     size_t i;
     lua_createtable(L, (int)count, 0);
     for (i = 0; i < count; i++) {
-        lua_createtable(L, 0, 5);
+        lua_createtable(L, 0, 6);
         lslua_set_integer(L, "stub", (int64_t)notches[i].stub + 1);
         lslua_set_number(L, "f", notches[i].f);
         lslua_set_number(L, "f_series", notches[i].f_series);
         lslua_set_number(L, "depth_db", notches[i].depth_db);
         lslua_set_number(L, "q", notches[i].q);
+        lslua_set_number(L, "error", notches[i].error);
         lua_rawseti(L, -2, (lua_Integer)i + 1);
     }
 }
@@ -278,16 +286,14 @@ int lslua_first_notch_batch(lua_State *L)
     const lstub_via *vias;
     double *f1, *dk, *length;
     int32_t *each, status;
-    size_t i, n;
+    size_t n;
     int columns;
     LSTUB_INIT(err);
     lslua_stackup(L, 1, 1);
     lslua_most(L, 3);
     lslua_model_argument(L, 3, &options);
     vias = lslua_vias(L, 2, 1, &n);
-    each = lslua_scratch(L, n, sizeof *each);
-    for (i = 0; i < n; i++)
-        each[i] = INT_MIN;
+    each = lslua_new_status(L, n);
     lua_createtable(L, 0, 4);
     columns = lua_gettop(L);
     f1 = lslua_push_array(L, LSLUA_ARRAY, n);
@@ -297,7 +303,7 @@ int lslua_first_notch_batch(lua_State *L)
     length = lslua_push_array(L, LSLUA_ARRAY, n);
     lua_setfield(L, columns, "length");
     status = lstub_first_notch_batch(lslua_stackup(L, 1, 1), vias, n, sizeof *vias, &options, f1, dk, length, each, &err);
-    if (status < 0 && (n == 0 || each[0] == INT_MIN))
+    if (lslua_batch_failed(L, status, each, n))
         return lslua_fail(L, status, &err);
     lslua_push_status(L, each, n);
     lua_setfield(L, columns, "status");

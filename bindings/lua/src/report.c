@@ -1,6 +1,7 @@
 /* Results and failures on their way to Lua. */
 #include "lslua.h"
 
+#include <limits.h>
 #include <math.h>
 #include <stdarg.h>
 #include <stdio.h>
@@ -12,6 +13,7 @@
 /* C's constants in messages, as Lua writes them. */
 static const char *const translated[][2] = {
     {"side = 1:", "side = 'top':"}, {"side = 2:", "side = 'bottom':"}, {"LSTUB_PAIR_SHARED", "shared = true"},
+    {"return_xy", "returns.xy"},
 };
 
 /* Whether the first `at` characters of text end with `tail`. */
@@ -22,27 +24,18 @@ static int ends_with(const char *text, size_t at, const char *tail)
 }
 
 /*
-** The library counts items and layers from 0, Lua from 1. Its messages write such numbers as "layer 7 'L5'", "item 7"
-** or "connects[7]"; these become "layer 8 'L5'" and so on, whatever stands between quotes stays. Messages about files
+** The library counts items and layers from 0, Lua from 1. Its messages write such numbers as "layer 7 'L5'",
+** "start_layer = 7 'R5'", "item 7" or "connects[7]"; these become "layer 8 'L5'" and so on, whatever stands between quotes stays. Messages about files
 ** name lines, counted from 1 already.
 */
 static int is_counted(const char *text, size_t at, size_t digits)
 {
-    static const char *const before[] = {"layer ", "layers ", "item ", "[", "_layer = "};
-    const char *after = text + at + digits;
+    static const char *const before[] = {"layer ", "item ", "return via ", "["};
     size_t i;
     for (i = 0; i < sizeof before / sizeof before[0]; i++)
         if (ends_with(text, at, before[i]))
             return 1;
-    if (ends_with(text, at, "] = "))      /* connects[1] = 12 'L5': a layer, not a value with a unit */
-        return strncmp(after, " '", 2) == 0 || strncmp(after, ": listed twice", 14) == 0;
-    if (ends_with(text, at, " to ")) {    /* layers 0 to 36 */
-        at -= 4;
-        while (at > 0 && text[at - 1] >= '0' && text[at - 1] <= '9')
-            at--;
-        return ends_with(text, at, "layers ");
-    }
-    return 0;
+    return ends_with(text, at, " = ") && strncmp(text + at + digits, " '", 2) == 0;     /* start_layer = 3 'R2' */
 }
 
 /* The length of the constant at the start of `text`, and its translation; 0: none. */
@@ -125,6 +118,24 @@ int32_t lslua_refuse(lstub_error *err, int32_t status, const char *format, ...)
     err->status = status;
     err->index = COUNTED;
     return status;
+}
+
+int32_t *lslua_new_status(lua_State *L, size_t count)
+{
+    int32_t *status = lslua_scratch(L, count, sizeof *status);
+    size_t i;
+    for (i = 0; i < count; i++)
+        status[i] = INT_MIN;
+    return status;
+}
+
+int lslua_batch_failed(lua_State *L, int32_t status, const int32_t *each, size_t count)
+{
+    size_t i;
+    for (i = 0; i < count; i++)
+        if (each[i] == LSTUB_E_MEMORY)
+            luaL_error(L, "not enough memory");
+    return status < 0 && (count == 0 || each[0] == INT_MIN);
 }
 
 void lslua_most(lua_State *L, int most)

@@ -4,13 +4,15 @@
 #include <stdio.h>
 #include <string.h>
 
-enum { VALUE_STACKUP = 1, VALUE_PADS, VALUE_ANTIPADS, VALUE_CLEAR, VALUE_CONNECTS, VALUE_BACKDRILLS, VALUE_COUNT = 6 };
+enum { VALUE_STACKUP = 1, VALUE_PADS, VALUE_ANTIPADS, VALUE_CLEAR, VALUE_CONNECTS, VALUE_BACKDRILLS, VALUE_RETURNS,
+       VALUE_COUNT = 7 };
 
 static const char *const via_keys[] = {
     "start_layer", "end_layer", "drill", "pad", "pad_start", "pad_inner", "pad_end", "antipad", "pads", "antipads",
-    "clear", "nonfunctional_pads", "connects", "returns", "pair", "backdrills", "pin", NULL
+    "clear", "nonfunctional_pads", "connects", "returns", "pair", "backdrills", "pin", "outside_dk", "lid_distance",
+    "hole_dk", NULL
 };
-static const char *const return_keys[] = {"count", "distance", "drill", "wall", NULL};
+static const char *const return_keys[] = {"count", "distance", "drill", "wall", "xy", NULL};
 static const char *const pair_keys[] = {"pitch", "shared", NULL};
 static const char *const pin_keys[] = {"side", "length", NULL};
 static const char *const backdrill_keys[] = {"side", "depth", "diameter", NULL};
@@ -182,24 +184,65 @@ static void read_backdrills(const reading *r)
     lua_pop(L, 1);
 }
 
+/* { { x, y }, ... } on top of the stack, the places of the return vias. Pops it. */
+static void read_places(const reading *r, lslua_at list)
+{
+    lua_State *L = r->at.L;
+    size_t i, count = (size_t)lua_rawlen(L, list.table);
+    double *to = new_array(L, r->via, VALUE_RETURNS, count, 2 * sizeof *to);
+    r->to->return_xy = to;
+    r->to->return_count = (int32_t)count;
+    list.list = "returns.xy";
+    list.member = NULL;
+    for (i = 0; i < count; i++) {
+        int k, place;
+        list.item = (lua_Integer)i + 1;
+        if (lua_rawgeti(L, list.table, list.item) != LUA_TTABLE)
+            lslua_wrong_type(&list, NULL, "table", -1);
+        place = lua_gettop(L);
+        if (lua_rawlen(L, place) != 2)
+            lslua_complain(&list, NULL, "{ x, y } expected, got %d items", (int)lua_rawlen(L, place));
+        for (k = 0; k < 2; k++) {
+            if (lua_rawgeti(L, place, k + 1) != LUA_TNUMBER)
+                lslua_wrong_type(&list, k == 0 ? "x" : "y", "number", -1);
+            *to++ = (double)lua_tonumber(L, -1);
+        }
+        lua_settop(L, place - 1);
+    }
+    lua_pop(L, 1);
+}
+
+/* Raises where one of the null-ended keys stands beside `key`, which replaces them. */
+static void check_alone(const lslua_at *at, const char *key, const char *const *others)
+{
+    for (; *others != NULL; others++) {
+        if (lslua_field(at, *others))
+            lslua_complain(at, key, "not together with %s", *others);
+        lua_pop(at->L, 1);
+    }
+}
+
 static void read_returns(const reading *r)
 {
-    lslua_at at;
+    static const char *const beside_wall[] = {"count", "distance", "drill", "xy", NULL};
+    static const char *const beside_xy[] = {"count", "distance", NULL};
+    lslua_at at, list;
     lstub_via *to = r->to;
     if (!lslua_table(&r->at, "returns", &at))
         return;
     lslua_check_keys(&at, return_keys);
+    to->return_kind = LSTUB_RETURN_VIAS;
     if (lslua_number(&at, "wall", &to->return_distance)) {
-        double other;
-        if (lslua_number(&at, "count", &other) || lslua_number(&at, "distance", &other) || lslua_number(&at, "drill", &other))
-            lslua_complain(&at, "wall", "not together with count, distance or drill");
+        check_alone(&at, "wall", beside_wall);
         to->return_kind = LSTUB_RETURN_WALL;
+    } else if (lslua_table(&at, "xy", &list)) {
+        check_alone(&at, "xy", beside_xy);
+        read_places(r, list);
     } else {
         lslua_need(&at, "count", lslua_integer(&at, "count", &to->return_count));
         lslua_need(&at, "distance", lslua_number(&at, "distance", &to->return_distance));
-        lslua_number(&at, "drill", &to->return_drill);
-        to->return_kind = LSTUB_RETURN_VIAS;
     }
+    lslua_number(&at, "drill", &to->return_drill);
     lua_pop(at.L, 1);
 }
 
@@ -234,6 +277,9 @@ static int32_t read_via(const reading *r)
     lslua_number(&r->at, "pad_inner", &to->pad_inner);
     lslua_number(&r->at, "pad_end", &to->pad_end);
     lslua_number(&r->at, "antipad", &to->antipad);
+    lslua_number(&r->at, "outside_dk", &to->outside_dk);
+    lslua_number(&r->at, "lid_distance", &to->lid_distance);
+    lslua_number(&r->at, "hole_dk", &to->hole_dk);
     lslua_word_field(&r->at, "nonfunctional_pads", pad_words, &to->nonfunctional_pads);
     read_returns(r);
     read_pair_and_pin(r);
@@ -289,6 +335,7 @@ void lslua_push_via(lua_State *L, const lstub_via *via, int stackup)
     to->clear = copy_array(L, index, VALUE_CLEAR, via->clear, via->clear_count, sizeof *via->clear);
     to->connects = copy_array(L, index, VALUE_CONNECTS, via->connects, via->connect_count, sizeof *via->connects);
     to->backdrills = copy_array(L, index, VALUE_BACKDRILLS, via->backdrills, via->backdrill_count, sizeof *via->backdrills);
+    to->return_xy = copy_array(L, index, VALUE_RETURNS, via->return_xy, (size_t)via->return_count, 2 * sizeof *via->return_xy);
 }
 
 lstub_via *lslua_vias(lua_State *L, int arg, int stackup, size_t *count)
@@ -433,19 +480,42 @@ static void set_map(lua_State *L, const char *key, int names, const lstub_on_lay
     lua_setfield(L, -2, key);
 }
 
+/* Members that are 0 where nothing was said. */
+static void set_given(lua_State *L, const char *key, double value)
+{
+    if (value != 0.0)
+        lslua_set_number(L, key, value);
+}
+
+static void set_places(lua_State *L, const double *xy, int32_t count)
+{
+    int32_t i;
+    lua_createtable(L, count, 0);
+    for (i = 0; i < count; i++) {
+        lua_createtable(L, 2, 0);
+        lua_pushnumber(L, xy[2 * i]);
+        lua_rawseti(L, -2, 1);
+        lua_pushnumber(L, xy[2 * i + 1]);
+        lua_rawseti(L, -2, 2);
+        lua_rawseti(L, -2, (lua_Integer)i + 1);
+    }
+    lua_setfield(L, -2, "xy");
+}
+
 static void set_returns(lua_State *L, const lstub_via *via)
 {
     if (via->return_kind == LSTUB_RETURN_NONE)
         return;
     lua_newtable(L);
-    if (via->return_kind == LSTUB_RETURN_WALL)
+    if (via->return_kind == LSTUB_RETURN_WALL) {
         lslua_set_number(L, "wall", via->return_distance);
-    else {
+    } else if (via->return_xy != NULL) {
+        set_places(L, via->return_xy, via->return_count);
+    } else {
         lslua_set_integer(L, "count", via->return_count);
         lslua_set_number(L, "distance", via->return_distance);
-        if (via->return_drill != 0.0)
-            lslua_set_number(L, "drill", via->return_drill);
     }
+    set_given(L, "drill", via->return_drill);
     lua_setfield(L, -2, "returns");
 }
 
@@ -511,6 +581,9 @@ static int via_options(lua_State *L)
     set_map(L, "clear", names, via->clear, via->clear_count);
     set_returns(L, via);
     set_pair_and_pin(L, via);
+    set_given(L, "outside_dk", via->outside_dk);
+    set_given(L, "lid_distance", via->lid_distance);
+    set_given(L, "hole_dk", via->hole_dk);
     set_lists(L, via, names);
     return 1;
 }

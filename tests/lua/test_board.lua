@@ -196,7 +196,7 @@ os.remove(path)
 local demo = root .. "/examples/data/demo_board.xml.gz"
 rules = assert(ls.rules_load(root .. "/examples/data/demo_rules.txt"))
 board = assert(ls.board_load(demo, { rules = rules }))
-plan = assert(board:plan(rules))
+plan = assert(board:plan(rules, nil, { fidelity = "ladder" }))
 t.equal(#plan, board:hole_count())
 local totals, seen = plan:totals(), {}
 for i = 1, #plan do

@@ -50,18 +50,26 @@ t.check(by == "loss" or by == "notch")
 t.equal(model:margin({ symbol_rate = rate * (1 - 1e-6) }, limits).pass, true)
 t.equal(model:margin({ symbol_rate = rate * (1 + 1e-6) }, limits).pass, false)
 
--- The longest stub: drilled to that length it passes, a little longer it does not.
+-- The longest stub: drilled to that length, with a bit 0.2 mm wider, it passes, and a little longer it does not.
 local limit = ls.longest_stub(via, link, limits)
 t.close(limit.stub_length, via:stubs()[1].length, 1e-14)
 t.close(limit.margin, limit.length - limit.stub_length, 1e-12)
 t.check(limit.length > 0 and limit.length < limit.stub_length and limit.limited_by ~= "none")
+local options
 local function left(length)
-  local drilled = fixture.via(board, { backdrills = { { side = "bottom", depth = limit.stub_length - length, diameter = 0.25e-3 } } })
+  local drilled = fixture.via(board, { backdrills = { { side = "bottom", depth = limit.stub_length - length, diameter = 0.45e-3 } } })
   t.close(drilled:stubs()[1].length, length, 1e-9)
-  return drilled:model():margin(link, limits).pass
+  return drilled:model(options):margin(link, limits).pass
 end
 t.equal(left(limit.length - 2e-9), true)
-t.equal(left(limit.length + 5e-6), false)
+t.equal(left(limit.length + 2e-7), false)
+for _, fidelity in ipairs { "loaded", "ladder" } do
+  options = { fidelity = fidelity }
+  limit = ls.longest_stub(via, link, limits, options)
+  t.equal(left(limit.length - 2e-9), true)
+  t.equal(left(limit.length + (fidelity == "loaded" and 5e-9 or 2e-7)), false)
+end
+limit = ls.longest_stub(via, link, limits)
 t.equal(ls.longest_stub(via, link, limits, { side = "bottom" }).length, limit.length)
 t.check(ls.longest_stub(via, link, limits, { fidelity = "bulk" }).length > limit.length)
 t.equal(ls.longest_stub(via, { symbol_rate = 1e9 }, limits).limited_by, "none")
@@ -72,7 +80,7 @@ t.fails("no stub", ls.E_NONE, ls.longest_stub(fixture.via(board, { connects = { 
 t.raises("the via has two stubs", ls.longest_stub, two, link, limits)
 t.check(ls.longest_stub(two, link, limits, { side = "top" }).length < two:stubs()[1].length + 1e-9)
 t.raises("side: 'left' is not one of: top, bottom", ls.longest_stub, via, link, limits, { side = "left" })
-t.raises("unknown key 'sides'; allowed: side, fidelity, z_ref", ls.longest_stub, via, link, limits, { sides = "top" })
+t.raises("unknown key 'sides'; allowed: side, fidelity, z_ref, annuli", ls.longest_stub, via, link, limits, { sides = "top" })
 t.raises("libstub.via expected, got libstub.model", ls.longest_stub, model, link, limits)
 
 -- Batches: one for all or one each; a failed item does not stop the others.

@@ -104,7 +104,7 @@ end
 do
   local before = collectgarbage("count")
   local most = 0
-  for _ = 1, 3000 do
+  for _ = 1, 500 do
     via:model()
     most = math.max(most, collectgarbage("count"))
   end

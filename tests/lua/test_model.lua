@@ -6,7 +6,7 @@ local fixture = require "fixture"
 
 local board = fixture.stackup()
 local via = fixture.via(board)
-local model = assert(via:model())
+local model = assert(via:model { fidelity = "loaded" })
 t.equal(tostring(model), "libstub.model: 1 stub")
 t.equal(model:stub_count(), 1)
 t.equal(model:stub(1).length, via:stubs()[1].length)
@@ -42,7 +42,7 @@ end
 t.equal(select("#", model:added_loss(1e9)), 1)
 t.equal(model:added_loss(freq[7]), loss[7])
 t.equal(#model:zin {}, 0)
-local heavy = assert(via:model { z_ref = 100 })
+local heavy = assert(via:model { fidelity = "loaded", z_ref = 100 })
 t.check(heavy:added_loss(1e9) > model:added_loss(1e9))
 
 -- Above it: the result, a message, W_RANGE, and which frequencies.
@@ -64,11 +64,79 @@ for i, notch in ipairs(notches) do
   local _, _, here = model:s21(notch.f)
   local r, j = model:s21(notch.f)
   t.close(notch.depth_db, 10 * math.log(r * r + j * j, 10), 1e-6)
+  t.equal(notch.error, line.stated_error)
   t.check(notch.q > 1 and notch.depth_db < -3 and math.abs(notch.f_series / notch.f - 1) < 0.05)
 end
 t.close((299792458.0 / (4 * via:stubs()[1].length * notches[1].f)) ^ 2, line.dk_effective, 1e-3)
 t.equal(#model:notches(ls.ghz(1)), 0)
 t.check(#model:notches(1e12) > 8)
+
+-- The cavity model, the default: its line tells the first notch, every notch its error.
+local cavity = assert(via:model())
+local same = assert(via:model { fidelity = "cavity", annuli = 4 })
+local ladder = assert(via:model { fidelity = "ladder" })
+t.equal(ladder:line(1).fidelity, "ladder")
+for _, m in ipairs { cavity, same } do
+  local own = m:line(1)
+  t.equal(own.fidelity, "cavity")
+  t.equal(own.f_range, 110e9)
+  t.equal(own.end_capacitance, 0.0)
+  t.close(own.dk_line, own.dk_effective, 1e-12)
+  local list = m:notches(ls.ghz(100))
+  t.check(#list >= 1 and list[1].f == cavity:notches(ls.ghz(100))[1].f)
+  t.equal(own.stated_error, list[1].error)
+  t.close((299792458.0 / (4 * m:stub(1).length * list[1].f)) ^ 2, own.dk_effective, 1e-3)
+  for _, notch in ipairs(list) do
+    t.check(notch.error > 0 and notch.error < 0.02, notch.error)
+    local r, j = m:s21(notch.f)
+    t.close(notch.depth_db, 10 * math.log(r * r + j * j, 10), 1e-6)
+  end
+end
+do -- more annuli move the first notch by no more than the error says
+  local f4, f8 = cavity:notches(ls.ghz(50))[1], via:model { annuli = 8 }:notches(ls.ghz(50))[1]
+  t.check(f4.f ~= f8.f)
+  t.close(f4.f, f8.f, f4.error)
+  -- the ladder is another model, and agrees within its stated error
+  local quick = ladder:notches(ls.ghz(50))[1]
+  t.check(quick.f ~= f4.f and quick.f ~= notches[1].f)
+  t.close(quick.f, f4.f, quick.error)
+end
+t.fails("freq = 3e+11 Hz: must be >= 1e+06 and <= 2e+11", ls.E_ARGUMENT, cavity:zin(3e11))
+t.equal(select(4, cavity:s21(1.5e11)), ls.W_RANGE)
+t.fails("annuli = 1: must be >= 2 and <= 12", ls.E_ARGUMENT, via:model { annuli = 1 })
+t.fails("annuli = 13", ls.E_ARGUMENT, via:model { annuli = 13 })
+t.raises("annuli: integer expected, got 4.5", via.model, via, { annuli = 4.5 })
+
+-- What stands around the barrel moves the notch: return vias in place, lids, fills; the closed forms do not see a lid.
+local function first(change, fidelity)
+  return assert(fixture.via(board, change):model { fidelity = fidelity }):notches(ls.ghz(100))[1].f
+end
+local mm = ls.mm(1)
+local ring = { xy = { { mm, 0 }, { 0, mm }, { -mm, 0 }, { 0, -mm } } }
+t.close(first { returns = ring }, first(), 1e-9)             -- the ring of four is the default of the fixture
+t.check(math.abs(first { returns = { xy = { { 0.5 * mm, 0 }, { 0, 2 * mm } } } } / first() - 1) > 1e-4)
+t.check(first { lid_distance = 0.1e-3 } < first())
+t.check(first { outside_dk = 4 } < first())
+t.equal(first({ lid_distance = 0.1e-3 }, "loaded"), first(nil, "loaded"))
+local cut = { { side = "bottom", depth = 0.6e-3, diameter = 0.5e-3 } }
+t.check(first { backdrills = cut, hole_dk = 4 } < first { backdrills = cut })
+
+-- On a plane that connects, `antipads` is the opening that the signal comes through.
+local function on_plane(opening)
+  return first { connects = { "TOP", "GND2" }, antipads = opening and { GND2 = opening } }
+end
+t.check(on_plane(0.6e-3) ~= on_plane(1.0e-3))
+
+-- Copper without thickness: a sheet.
+do
+  local layers = fixture.layers()
+  for _, layer in ipairs(layers) do
+    if layer.kind ~= "dielectric" then layer.thickness, layer.tol_plus, layer.tol_minus = 0, 0, 0 end
+  end
+  local sheets = assert(ls.stackup(layers))
+  local thin = assert(fixture.via(sheets):model()):notches(ls.ghz(100))[1].f
+  t.check(thin > first())                                    -- what is left of the stub is shorter
+end
 
 -- Two stubs, one of them asked for.
 local two = assert(fixture.via(board, { connects = { "SIG1", "SIG2" } }):model())
@@ -98,8 +166,8 @@ t.fails("item 3", ls.E_ARGUMENT, model:s21 { 1e9, 1e9, 0 / 0 })
 t.fails("freq", ls.E_ARGUMENT, model:added_loss(-1))
 t.fails("f_max", ls.E_ARGUMENT, model:notches(-1))
 t.fails("z_ref = -1 ohm", ls.E_ARGUMENT, via:model { z_ref = -1 })
-t.raises("fidelity: 'fine' is not one of: default, bulk, loaded", via.model, via, { fidelity = "fine" })
-t.raises("unknown key 'zref'; allowed: fidelity, z_ref", via.model, via, { zref = 50 })
+t.raises("fidelity: 'fine' is not one of: default, bulk, loaded, ladder, cavity", via.model, via, { fidelity = "fine" })
+t.raises("unknown key 'zref'; allowed: fidelity, z_ref, annuli", via.model, via, { zref = 50 })
 t.raises("unknown key 'stubs'; allowed: stub", model.zin, model, 1e9, { stubs = 1 })
 t.raises("stub: integer expected, got 1.5", model.zin, model, 1e9, { stub = 1.5 })
 t.raises("stub: number of a stub or 'all' expected, got string", model.zin, model, 1e9, { stub = "top" })

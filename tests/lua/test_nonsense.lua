@@ -26,15 +26,15 @@ local plain = {
   math.mininteger, "", "/nowhere/x", "a\0b", print, coroutine.create(print), io.stdout,
 }
 local words = {
-  "top", "bottom", "both", "all", "bulk", "loaded", "plane", "signal", "mixed", "dielectric", "kept", "worst", "rss",
-  "TOP", "SIG1", "GND1", "R1", "BOTTOM",
+  "top", "bottom", "both", "all", "bulk", "loaded", "ladder", "cavity", "plane", "signal", "mixed", "dielectric", "kept",
+  "worst", "rss", "TOP", "SIG1", "GND1", "R1", "BOTTOM",
 }
 local keys = {
   "name", "kind", "thickness", "tol_plus", "tol_minus", "dk", "in_plane_ratio", "loss_tangent", "f_ref", "conductivity",
   "start_layer", "end_layer", "drill", "pad", "pad_inner", "antipad", "pads", "antipads", "clear", "connects", "returns",
-  "pair", "backdrills", "pin", "count", "distance", "wall", "pitch", "shared", "side", "length", "depth", "diameter",
-  "fidelity", "z_ref", "stub", "symbol_rate", "levels", "notch_over_nyquist", "added_loss_db", "via", "signal", "criteria",
-  "sides", "depths", "depth_tolerance", "rules", "progress", "n", "f", "TOP", "SIG1", 1, 2, 3, true,
+  "xy", "outside_dk", "lid_distance", "hole_dk", "pair", "backdrills", "pin", "count", "distance", "wall", "pitch", "shared", "side", "length", "depth", "diameter",
+  "fidelity", "z_ref", "annuli", "stub", "symbol_rate", "levels", "notch_over_nyquist", "added_loss_db", "via",
+  "signal", "criteria", "sides", "depths", "depth_tolerance", "rules", "progress", "n", "f", "TOP", "SIG1", 1, 2, 3, true,
 }
 
 local function pick(list) return list[random(#list)] end

@@ -54,14 +54,25 @@ t.fails("copper layer 9: must be 1 to 8", ls.E_NONE, board:copper(9))
 t.fails("bottom", ls.E_GEOMETRY, board:interval(1e-3, 1e-3))
 t.fails("must be", ls.E_ARGUMENT, board:interval(0, 1))
 
+-- Copper may be a sheet without thickness.
+do
+  local layers = fixture.layers()
+  layers[7].thickness = 0
+  local sheet = assert(ls.stackup(layers))
+  t.equal(sheet:layer("GND2").thickness, 0.0)
+  local top, bottom = sheet:depth("GND2")
+  t.equal(top, bottom)
+end
+
 -- Layers in error are named as Lua counts them.
 local function with(i, key, value)
   local layers = fixture.layers()
   if key then layers[i][key] = value else layers[i] = value end
   return layers
 end
-t.fails("layer 7 'GND2': thickness = -0.0001 m: must be > 0", ls.E_ARGUMENT, ls.stackup(with(7, "thickness", -1e-4)))
-t.fails("nan m: must be > 0", ls.E_ARGUMENT, ls.stackup(with(7, "thickness", 0 / 0)))
+t.fails("layer 7 'GND2': thickness = -0.0001 m: must be >= 0", ls.E_ARGUMENT, ls.stackup(with(7, "thickness", -1e-4)))
+t.fails("layer 2 'R1': thickness = 0 m: must be > 0", ls.E_ARGUMENT, ls.stackup(with(2, "thickness", 0)))
+t.fails("nan m: must be >= 0", ls.E_ARGUMENT, ls.stackup(with(7, "thickness", 0 / 0)))
 t.fails("layer 2 'R1': dk = 0.5", ls.E_ARGUMENT, ls.stackup(with(2, "dk", 0.5)))
 t.fails("layer 5 has it too", ls.E_GEOMETRY, ls.stackup(with(11, "name", "SIG1")))
 t.fails("layer 5 'SIG1' and layer 6 'R3'", ls.E_GEOMETRY, ls.stackup(with(6, nil, { name = "R3", kind = "plane",

@@ -222,6 +222,21 @@ void *lstub__new(const lstub_allocator *allocator, size_t count, size_t bytes, l
     return memory;
 }
 
+void *lstub__grow(const lstub_allocator *allocator, void *array, size_t count, size_t *room, size_t bytes, lstub_error *err)
+{
+    if (count < *room)
+        return array;
+    size_t more = *room ? 2 * *room : 16;
+    void *moved = lstub__new(allocator, more, bytes, err);
+    if (moved == NULL)
+        return NULL;
+    if (count > 0)
+        memcpy(moved, array, count * bytes);
+    lstub__free(allocator, array);
+    *room = more;
+    return moved;
+}
+
 void lstub__free(const lstub_allocator *allocator, void *memory)
 {
     if (memory != NULL)

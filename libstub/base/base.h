@@ -58,6 +58,9 @@ int32_t lstub__stride_or_one(size_t stride, size_t first, const char *name, lstu
 int32_t lstub__allocator(const lstub_allocator *given, lstub_allocator *out, lstub_error *err);
 /* Zeroed memory, or null with err filled. count * bytes is checked for overflow. */
 void *lstub__new(const lstub_allocator *allocator, size_t count, size_t bytes, lstub_error *err);
+/* Room for one item more in an array of `count`: the array, moved where it was full, new room zeroed; null with err filled and
+** the old one untouched where there is no memory. Start with null and *room 0. */
+void *lstub__grow(const lstub_allocator *allocator, void *array, size_t count, size_t *room, size_t bytes, lstub_error *err);
 void  lstub__free(const lstub_allocator *allocator, void *memory);
 
 /* The status of a batch from its items': all fine, a warning, one common failure, or LSTUB_E_MIXED; err keeps

@@ -49,9 +49,62 @@ static double left_over(double length, const void *context)
     return left;
 }
 
+typedef struct scaled {        /* the closed form, its numbers scaled to what a better model said at one length */
+    cutting *c;
+    double   notch, loss;      /* factors of the first notch and of the added loss */
+} scaled;
+
+static void numbers(cutting *c, int closed, double length, double *f1, double *loss)
+{
+    lstub__branch branches[2];
+    int32_t which;
+    c->closed = closed;
+    int32_t count = branches_at(c, length, branches);
+    *f1 = count > 0 ? lstub__branches_first_notch(branches, count, c->site->z_ref, &which) : NAN;
+    *loss = count > 0 ? lstub__branches_loss_db(branches, count, c->site->z_ref, c->demand->nyquist) : NAN;
+    if (count > 0)
+        lstub__branch_done(&branches[0]);
+    c->closed = 0;
+}
+
+static double scaled_left_over(double length, const void *context)
+{
+    const scaled *s = context;
+    double f1, loss;
+    numbers(s->c, 1, length, &f1, &loss);
+    f1 *= s->notch;
+    double left = fmin(f1 / s->c->demand->least_f1 - 1.0, 4.0);
+    if (s->c->demand->loss_db > 0.0 && f1 > s->c->demand->nyquist)
+        left = fmin(left, 1.0 - s->loss * loss / s->c->demand->loss_db);
+    return left;
+}
+
+/* Where the limit should lie: the closed form solved, compared with the model there, scaled, solved again. */
+static double expected_limit(cutting *c, double step, double full)
+{
+    scaled s = {c, 1.0, 1.0};
+    double x = NAN;
+    for (int turn = 0; turn < 6 && *c->status == LSTUB_OK; turn++) {
+        double good = step, bad = full, last = x, f1, loss, f1_closed, loss_closed;
+        if (scaled_left_over(full, &s) >= 0.0)
+            x = 0.98 * full;
+        else
+            x = lstub__bracket(scaled_left_over, &s, &good, &bad, 0.1 * step) ? good : 10.0 * step;
+        if (fabs(x - last) < 0.5 * step)
+            break;
+        numbers(c, 0, x, &f1, &loss);
+        numbers(c, 1, x, &f1_closed, &loss_closed);
+        if (f1 < HUGE_VAL && f1_closed < HUGE_VAL)
+            s.notch = f1 / f1_closed;
+        if (loss > 0.0 && loss_closed > 0.0)
+            s.loss = loss / loss_closed;
+    }
+    return x;
+}
+
 /*
-** Brackets the limit: a length that passes and one that fails. Where lengths are dear, outwards from what the closed form
-** says. Returns 0 when even the shortest fails.
+** Brackets the limit: a length that passes and one that fails. Where lengths are dear, outwards from where it is expected.
+** Returns 0 when even the shortest fails.
 */
 static int bracket(cutting *c, double step, double *good, double *bad)
 {
@@ -59,18 +112,13 @@ static int bracket(cutting *c, double step, double *good, double *bad)
     *good = step;
     if (c->site->fidelity <= LSTUB_FIDELITY_LOADED)
         return lstub__bracket(left_over, c, good, bad, step);
-    c->closed = 1;
-    double guess = full, low = step;
-    if (left_over(full, c) < 0.0)
-        guess = lstub__bracket(left_over, c, &low, &guess, step) ? low : 0.2 * full;
-    c->closed = 0;
-    double x = fmin(fmax(guess, 10.0 * step), 0.98 * full);
+    double x = fmin(fmax(expected_limit(c, step, full), 2.0 * step), full - 2.0 * step), reach = 0.5 * step;
     if (left_over(x, c) >= 0.0) {
-        for (*good = x; (x *= 1.12) < full && left_over(x, c) >= 0.0;)
+        for (*good = x; (x += reach) < full && left_over(x, c) >= 0.0; reach *= 8.0)
             *good = x;
         *bad = fmin(x, full);
     } else {
-        for (*bad = x; (x *= 0.88) > step && !(left_over(x, c) >= 0.0);)
+        for (*bad = x; (x -= reach) > step && !(left_over(x, c) >= 0.0); reach *= 8.0)
             *bad = x;
         *good = fmax(x, step);
     }

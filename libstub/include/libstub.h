@@ -621,7 +621,8 @@ typedef struct lstub_plan_summary {
     int32_t depths_top, depths_bottom;  /* different drill depths: proved fewest for the vias drilled  */
     int32_t groups;
     int32_t reserved;
-    int64_t geometries;            /* different (via, signal, criteria) among the jobs: each computed once */
+    int64_t geometries;            /* different (via, signal, criteria) among the jobs, as far as the model
+                                      sees them: each is computed once                                 */
     double  worst_notch_over_nyquist;  /* least over the judged vias after the plan; +inf: none        */
     double  worst_added_loss_db;       /* greatest over the judged vias after the plan                 */
 } lstub_plan_summary;

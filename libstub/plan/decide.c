@@ -93,34 +93,49 @@ static int32_t both_too_long(lstub_decision *d, const lstub__site *site, lstub__
     return status;
 }
 
+/* The greatest part of both arms' rest that may stay; < 0: not even the shortest residuals pass. */
+static int32_t part_of_both(lstub__circuit *k, const lstub__site *site, const lstub__room *room, const lstub__demand *demand, lstub_error *err)
+{
+    double least[2] = {worst_residual(&room[0], 0.0), worst_residual(&room[1], 0.0)}, good = 0.0, bad = 1.0;
+    if (k->halved && k->least[0] == least[0] && k->least[1] == least[1])
+        return LSTUB_OK;
+    int32_t pass = both_pass(site, room, 0.0, demand, err);
+    while (pass > 0 && bad - good > (site->fidelity <= LSTUB_FIDELITY_LOADED ? 1e-6 : 1e-4)) {
+        double middle = 0.5 * (good + bad);
+        int32_t here = both_pass(site, room, middle, demand, err);
+        if (here < 0)
+            return here;
+        *(here ? &good : &bad) = middle;
+    }
+    if (pass < 0)
+        return pass;
+    k->halved = 1;
+    k->least[0] = least[0];
+    k->least[1] = least[1];
+    k->part = pass > 0 ? good : -1.0;
+    return LSTUB_OK;
+}
+
 /* Both sides: each may leave the same part of what it could. */
-static int32_t drill_both(lstub__case *c, const lstub__site *site, const lstub__room *geometry, const lstub__demand *demand,
-                          const lstub__capability *capability, lstub_error *err)
+static int32_t drill_both(lstub__case *c, lstub__circuit *k, const lstub__site *site, const lstub__room *geometry,
+                          const lstub__demand *demand, const lstub__capability *capability, lstub_error *err)
 {
     lstub__room room[2] = {geometry[0], geometry[1]};
     int longer = site->arm[1].length >= site->arm[0].length;
-    for (int k = 0; k < 2; k++) {
-        int arm = k == 0 ? longer : 1 - longer;
+    for (int turn = 0; turn < 2; turn++) {
+        int arm = turn == 0 ? longer : 1 - longer;
         if (room[arm].low == HUGE_VAL) {
             blame(&c->decision, arm, &room[arm]);
             return LSTUB_OK;
         }
     }
-    double good = 0.0, bad = 1.0;
-    int32_t pass = both_pass(site, room, 0.0, demand, err);
-    if (pass <= 0)
-        return pass < 0 ? pass : both_too_long(&c->decision, site, room, longer, demand, err);
-    while (bad - good > 1e-6) {
-        double middle = 0.5 * (good + bad);
-        if ((pass = both_pass(site, room, middle, demand, err)) < 0)
-            return pass;
-        if (pass)
-            good = middle;
-        else
-            bad = middle;
-    }
+    int32_t status = part_of_both(k, site, room, demand, err);
+    if (status < 0)
+        return status;
+    if (k->part < 0.0)
+        return both_too_long(&c->decision, site, room, longer, demand, err);
     for (int arm = 0; arm < 2; arm++) {
-        double limit = worst_residual(&geometry[arm], good);
+        double limit = worst_residual(&geometry[arm], k->part);
         lstub__room_limit(&room[arm], limit, capability);
         if (room[arm].low == HUGE_VAL) {
             blame(&c->decision, arm, &room[arm]);
@@ -135,11 +150,10 @@ static int32_t drill_both(lstub__case *c, const lstub__site *site, const lstub__
 }
 
 /* One drill where one is enough, the shorter cut first; else both; else why not. */
-static int32_t drill(lstub__case *c, const lstub__site *site, const lstub__demand *demand, const lstub__capability *capability,
-                     lstub_error *err)
+static int32_t drill(lstub__case *c, lstub__circuit *k, const lstub__site *site, const lstub__demand *demand,
+                     const lstub__capability *capability, lstub_error *err)
 {
     lstub__room geometry[2], room[2];
-    double limit[2] = {NAN, NAN};
     int present[2], best = -1;
     for (int arm = 0; arm < 2; arm++) {
         present[arm] = site->arm[arm].length > 0.0;
@@ -149,10 +163,11 @@ static int32_t drill(lstub__case *c, const lstub__site *site, const lstub__deman
         room[arm] = geometry[arm];
         if (room[arm].low == HUGE_VAL)
             continue;
-        int32_t status = longest_beside(site, arm, site->arm[1 - arm].length, demand, &limit[arm], err);
+        int32_t status = k->limited[arm] ? LSTUB_OK : longest_beside(site, arm, site->arm[1 - arm].length, demand, &k->limit[arm], err);
         if (status < 0)
             return status;
-        lstub__room_limit(&room[arm], limit[arm], capability);
+        k->limited[arm] = 1;
+        lstub__room_limit(&room[arm], k->limit[arm], capability);
         if (room[arm].low == HUGE_VAL)
             continue;
         if (best < 0 || room[arm].full - room[arm].high < room[best].full - room[best].high)
@@ -160,15 +175,21 @@ static int32_t drill(lstub__case *c, const lstub__site *site, const lstub__deman
     }
     c->decision.reason = LSTUB_REASON_FAILS;
     if (best >= 0) {
-        record(c, site, best, &room[best], limit[best], capability);
+        record(c, site, best, &room[best], k->limit[best], capability);
         c->decision.action = best == 0 ? LSTUB_ACTION_DRILL_TOP : LSTUB_ACTION_DRILL_BOTTOM;
         c->decision.reason_side = lstub__side_of(best);
         return LSTUB_OK;
     }
     if (present[0] && present[1])
-        return drill_both(c, site, geometry, demand, capability, err);
+        return drill_both(c, k, site, geometry, demand, capability, err);
     blame(&c->decision, present[0] ? 0 : 1, &room[present[0] ? 0 : 1]);
     return LSTUB_OK;
+}
+
+static lstub__site *with_bit(lstub__site *site, const lstub__capability *capability)
+{
+    site->bit = site->via.in.drill + capability->in.bit_oversize;
+    return site;
 }
 
 static void refuse(lstub_decision *d, int32_t status)
@@ -178,14 +199,28 @@ static void refuse(lstub_decision *d, int32_t status)
     d->reason = LSTUB_REASON_ERROR;
 }
 
-int32_t lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
-                      const lstub_model_options *options, lstub_error *err)
+/* The via as it is. */
+static int32_t judge_as_is(lstub__circuit *k, const lstub__site *site, const lstub__demand *demand, lstub_error *err)
+{
+    lstub__branch branches[2];
+    int32_t status = LSTUB_OK;
+    if (k->judged)
+        return LSTUB_OK;
+    if ((status = lstub__branches_make(branches, &k->count, site, site->arm[0].length, site->arm[1].length, err)) < 0)
+        return status;
+    k->judged_status = lstub__judge(branches, k->count, site->z_ref, demand, &k->before);
+    lstub__branches_done(branches, k->count);
+    k->judged = 1;
+    return LSTUB_OK;
+}
+
+int32_t lstub__decide(lstub__case *out, lstub__circuit *circuit, const lstub_stackup *stackup, const lstub_job *job,
+                      const lstub__capability *capability, const lstub_model_options *options, lstub_error *err)
 {
     lstub_decision *d = &out->decision;
     lstub__site site;
-    lstub__branch branches[2];
     lstub__demand demand;
-    int32_t count, status;
+    int32_t status;
     LSTUB_INIT(*d);
     out->message = -1;
     out->notch_ratio = out->loss_db = out->aim[0] = out->aim[1] = 0.0;
@@ -197,7 +232,7 @@ int32_t lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstu
     }
     if ((status = lstub__demand_make(&demand, job->signal, job->criteria, err)) < 0
         || (status = lstub__site_make(&site, stackup, job->via, options, err)) < 0
-        || (status = lstub__branches_make(branches, &count, &site, site.arm[0].length, site.arm[1].length, err)) < 0) {
+        || (status = judge_as_is(circuit, with_bit(&site, capability), &demand, err)) < 0) {
         refuse(d, status);
         return status;
     }
@@ -205,9 +240,9 @@ int32_t lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstu
     out->loss_db = demand.loss_db;
     d->stub_top = site.arm[0].length;
     d->stub_bottom = site.arm[1].length;
-    d->stub_count = count;
-    d->status = lstub__judge(branches, count, site.z_ref, &demand, &d->before);
-    lstub__branches_done(branches, count);
+    d->stub_count = circuit->count;
+    d->status = circuit->judged_status;
+    d->before = circuit->before;
     d->after = d->before;
     if (site.via.in.connect_count < 2 && site.via.in.pin_side == 0) {
         d->action = LSTUB_ACTION_NOT_JUDGED;
@@ -215,8 +250,8 @@ int32_t lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstu
         d->reason_layer = site.via.first;
     } else if (d->before.pass) {
         d->action = LSTUB_ACTION_KEEP;
-        d->reason = count == 0 ? LSTUB_REASON_NO_STUB : LSTUB_REASON_PASSES;
-    } else if ((status = drill(out, &site, &demand, capability, err)) < 0) {
+        d->reason = circuit->count == 0 ? LSTUB_REASON_NO_STUB : LSTUB_REASON_PASSES;
+    } else if ((status = drill(out, circuit, &site, &demand, capability, err)) < 0) {
         refuse(d, status);
         return status;
     }
@@ -235,8 +270,8 @@ static double settle_side(lstub_drill_cut *cut, const lstub__site *site, int arm
     return fmin(cut->residual_most, room.full);
 }
 
-int32_t lstub__settle(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
-                      const lstub_model_options *options, lstub_error *err)
+int32_t lstub__settle(lstub__case *out, lstub__circuit *circuit, const lstub_stackup *stackup, const lstub_job *job,
+                      const lstub__capability *capability, const lstub_model_options *options, lstub_error *err)
 {
     lstub_decision *d = &out->decision;
     lstub__site site;
@@ -248,12 +283,19 @@ int32_t lstub__settle(lstub__case *out, const lstub_stackup *stackup, const lstu
     if ((status = lstub__demand_make(&demand, job->signal, job->criteria, err)) < 0
         || (status = lstub__site_make(&site, stackup, job->via, options, err)) < 0)
         return status;
+    with_bit(&site, capability);
     double top = settle_side(&d->top, &site, 0, capability), bottom = settle_side(&d->bottom, &site, 1, capability);
-    if ((status = lstub__branches_make(branches, &count, &site, top, bottom, err)) < 0)
-        return status;
-    int32_t range = lstub__judge(branches, count, site.z_ref, &demand, &d->after);
-    lstub__branches_done(branches, count);
-    if (range != LSTUB_OK)
-        d->status = range;
+    if (!circuit->settled || circuit->after_length[0] != top || circuit->after_length[1] != bottom) {
+        if ((status = lstub__branches_make(branches, &count, &site, top, bottom, err)) < 0)
+            return status;
+        circuit->after_status = lstub__judge(branches, count, site.z_ref, &demand, &circuit->after);
+        lstub__branches_done(branches, count);
+        circuit->settled = 1;
+        circuit->after_length[0] = top;
+        circuit->after_length[1] = bottom;
+    }
+    d->after = circuit->after;
+    if (circuit->after_status != LSTUB_OK)
+        d->status = circuit->after_status;
     return LSTUB_OK;
 }

@@ -1,87 +1,10 @@
 /* A board's plan: alike jobs found, each case decided once, depths shared out, the drill table made. */
+#include "plan/alike.h"
 #include "plan/plan.h"
 
 #include <math.h>
 #include <stdlib.h>
 #include <string.h>
-
-/* ---- which jobs are alike ---------------------------------------------------------------------- */
-
-typedef struct key {               /* a job with its pointers taken out of the structs */
-    lstub_via      via;            /* pointers zeroed */
-    const lstub_via *arrays;       /* the caller's, for its arrays */
-    lstub_signal   signal;
-    lstub_criteria criteria;
-    uint64_t       hash;
-} key;
-
-static uint64_t mix_in(uint64_t hash, const void *data, size_t bytes)
-{
-    const unsigned char *p = data;
-    uint64_t word = 0;
-    for (; bytes >= sizeof word; bytes -= sizeof word, p += sizeof word) {
-        memcpy(&word, p, sizeof word);
-        hash = (hash ^ word) * 0x9e3779b97f4a7c15u;
-        hash ^= hash >> 29;
-    }
-    for (; bytes > 0; bytes--, p++)
-        hash = (hash ^ *p) * 0x9e3779b97f4a7c15u;
-    return hash;
-}
-
-#define ARRAYS 6                   /* that a via points to */
-
-typedef struct array { const void *data; size_t bytes; } array;
-
-static void arrays_of(const lstub_via *via, array *out)
-{
-    array all[ARRAYS] = {{via->pads, via->pad_count * sizeof *via->pads},
-                    {via->antipads, via->antipad_count * sizeof *via->antipads},
-                    {via->clear, via->clear_count * sizeof *via->clear},
-                    {via->connects, via->connect_count * sizeof *via->connects},
-                    {via->backdrills, via->backdrill_count * sizeof *via->backdrills},
-                    {via->return_xy, via->return_count < 1 ? 0 : 2 * (size_t)via->return_count * sizeof *via->return_xy}};
-    memcpy(out, all, sizeof all);
-}
-
-/* Null arrays with a count are left for lstub__via_take to refuse. */
-static void make_key(key *k, const lstub_via *via, const lstub_job *job)
-{
-    array list[ARRAYS];
-    memset(k, 0, sizeof *k);
-    k->via = *via;
-    k->via.pads = k->via.antipads = k->via.clear = NULL;
-    k->via.connects = NULL;
-    k->via.backdrills = NULL;
-    k->via.return_xy = NULL;
-    k->arrays = via;
-    if (job->signal != NULL)       /* wrong sizes come out when the case is decided */
-        lstub__take(&k->signal, sizeof k->signal, job->signal, sizeof k->signal, "signal", NULL);
-    if (job->criteria != NULL)
-        lstub__take(&k->criteria, sizeof k->criteria, job->criteria, sizeof k->criteria, "criteria", NULL);
-    uint64_t hash = mix_in(14695981039346656037u, &k->via, sizeof k->via);
-    hash = mix_in(hash, &k->signal, sizeof k->signal);
-    hash = mix_in(hash, &k->criteria, sizeof k->criteria);
-    arrays_of(via, list);
-    for (int i = 0; i < ARRAYS; i++)
-        if (list[i].data != NULL)
-            hash = mix_in(hash, list[i].data, list[i].bytes);
-    k->hash = hash;
-}
-
-static int same(const key *a, const key *b)
-{
-    array x[ARRAYS], y[ARRAYS];
-    if (a->hash != b->hash || memcmp(&a->via, &b->via, sizeof a->via) != 0 || memcmp(&a->signal, &b->signal, sizeof a->signal) != 0
-        || memcmp(&a->criteria, &b->criteria, sizeof a->criteria) != 0)
-        return 0;
-    arrays_of(a->arrays, x);
-    arrays_of(b->arrays, y);
-    for (int i = 0; i < ARRAYS; i++)
-        if ((x[i].data == NULL) != (y[i].data == NULL) || (x[i].data != NULL && memcmp(x[i].data, y[i].data, x[i].bytes) != 0))
-            return 0;
-    return 1;
-}
 
 /* ---- taking the caller's structs ---------------------------------------------------------------- */
 
@@ -91,12 +14,12 @@ typedef struct work {              /* what plan_create needs only while it runs 
     size_t      stride;
     lstub__capability capability;
     lstub_model_options options;
-    size_t     *job_of;            /* [case]: a job that shows the case */
-    uint64_t   *hash_of;           /* [case] */
-    uint32_t   *table;             /* open addressing: case + 1, 0 empty */
-    size_t      table_size;        /* a power of two */
+    lstub__table cases;            /* jobs alike in everything */
+    lstub__table circuits;         /* jobs alike in what the model and the criteria see */
+    lstub__circuit *circuit;       /* [number in circuits] */
+    uint32_t   *circuit_of;        /* [case] */
     lstub__interval *intervals;
-    size_t      message_room;
+    size_t      message_room, case_room, circuit_room;
 } work;
 
 static int32_t take_job(const work *w, size_t index, lstub_job *job, lstub_via *via, lstub_error *err)
@@ -170,48 +93,67 @@ static int32_t take_capability(lstub__capability *out, const lstub_capability *t
 
 /* ---- cases -------------------------------------------------------------------------------------- */
 
-/* The case that a job belongs to, *fresh if it is the first of it. */
-static uint32_t find_case(work *w, lstub_plan *plan, const key *k, size_t job, int *fresh)
+static void key_of_case(const void *context, size_t job, lstub_via *via, lstub__key *key)
 {
-    size_t at = (size_t)k->hash & (w->table_size - 1);
-    for (; w->table[at] != 0; at = (at + 1) & (w->table_size - 1)) {
-        uint32_t c = w->table[at] - 1;
-        if (w->hash_of[c] == k->hash) {
-            lstub_job other;
-            lstub_via via;
-            key theirs;
-            take_job(w, w->job_of[c], &other, &via, NULL);
-            make_key(&theirs, &via, &other);
-            if (same(k, &theirs)) {
-                *fresh = 0;
-                return c;
-            }
-        }
-    }
-    uint32_t c = (uint32_t)plan->case_count++;
-    w->table[at] = c + 1;
-    w->hash_of[c] = k->hash;
-    w->job_of[c] = job;
-    *fresh = 1;
-    return c;
+    lstub_job theirs;
+    take_job(context, job, &theirs, via, NULL);
+    lstub__key_make(key, via, &theirs);
+}
+
+/* Copper beside the hole and the pin in it matter to the drill, not to the model. */
+static void key_of_circuit(const void *context, size_t job, lstub_via *via, lstub__key *key)
+{
+    lstub_job theirs;
+    take_job(context, job, &theirs, via, NULL);
+    via->clear = NULL;
+    via->clear_count = 0;
+    via->pin_side = 0;
+    via->pin_length = 0.0;
+    lstub__key_make(key, via, &theirs);
+}
+
+/* Makes room for item `count` of an array; a status. */
+static int32_t reserve(void *array, const lstub_allocator *alloc, size_t count, size_t *room, size_t bytes, lstub_error *err)
+{
+    void *old, *moved;
+    memcpy(&old, array, sizeof old);
+    if ((moved = lstub__grow(alloc, old, count, room, bytes, err)) == NULL)
+        return LSTUB_E_MEMORY;
+    memcpy(array, &moved, sizeof moved);
+    return LSTUB_OK;
 }
 
 static int32_t keep_message(lstub_plan *plan, work *w, lstub__case *c, const lstub_error *message, int64_t *count, lstub_error *err)
 {
-    if ((size_t)*count == w->message_room) {
-        size_t room = w->message_room ? 2 * w->message_room : 16;
-        lstub_error *more = lstub__new(&plan->alloc, room, sizeof *more, err);
-        if (more == NULL)
-            return LSTUB_E_MEMORY;
-        if (*count > 0)
-            memcpy(more, plan->messages, (size_t)*count * sizeof *more);
-        lstub__free(&plan->alloc, plan->messages);
-        plan->messages = more;
-        w->message_room = room;
-    }
+    if (reserve(&plan->messages, &plan->alloc, (size_t)*count, &w->message_room, sizeof *plan->messages, err) < 0)
+        return LSTUB_E_MEMORY;
     plan->messages[*count] = *message;
     c->message = (*count)++;
     return LSTUB_OK;
+}
+
+/* A case of its own, decided: a job that could be taken. */
+static int32_t decide_case(lstub_plan *plan, work *w, uint32_t number, size_t i, lstub_job *job, const lstub_via *via, lstub_error *item)
+{
+    lstub__key key;
+    lstub_via bare;
+    int fresh;
+    key_of_circuit(w, i, &bare, &key);
+    if (reserve(&w->circuit, &plan->alloc, w->circuits.count, &w->circuit_room, sizeof *w->circuit, item) < 0)
+        return LSTUB_E_MEMORY;
+    w->circuit_of[number] = lstub__table_find(&w->circuits, &key, i, key_of_circuit, w, &fresh);
+    job->via = via;
+    return lstub__decide(&plan->cases[number], &w->circuit[w->circuit_of[number]], w->stackup, job, &w->capability, &w->options, item);
+}
+
+static void refuse_case(lstub__case *own, int32_t status)
+{
+    lstub_decision *d = &own->decision;
+    LSTUB_INIT(*d);
+    d->action = LSTUB_ACTION_REFUSED;
+    d->reason = LSTUB_REASON_ERROR;
+    d->reason_layer = d->top.group = d->bottom.group = -1;
+    d->status = status;
 }
 
 static int32_t decide_all(lstub_plan *plan, work *w, lstub_error *err)
@@ -219,38 +161,33 @@ static int32_t decide_all(lstub_plan *plan, work *w, lstub_error *err)
     int64_t messages = 0;
     for (size_t i = 0; i < plan->job_count; i++) {
         lstub_job job;
-        lstub_via via;
+        lstub_via via, again;
         lstub_error item;
+        lstub__key key;
         int fresh = 1;
         uint32_t c;
         LSTUB_INIT(item);
+        if (reserve(&plan->cases, &plan->alloc, w->cases.count, &w->case_room, sizeof *plan->cases, err) < 0)
+            return LSTUB_E_MEMORY;
         int32_t status = take_job(w, i, &job, &via, &item);
         if (status < 0) {                      /* cannot be compared with others: a case of its own */
-            c = (uint32_t)plan->case_count++;
-            w->job_of[c] = i;
+            c = w->cases.count++;
+            w->cases.job[c] = i;
+            refuse_case(&plan->cases[c], status);
         } else {
-            key k;
-            make_key(&k, &via, &job);
-            c = find_case(w, plan, &k, i, &fresh);
+            key_of_case(w, i, &again, &key);
+            c = lstub__table_find(&w->cases, &key, i, key_of_case, w, &fresh);
+            if (fresh && decide_case(plan, w, c, i, &job, &via, &item) == LSTUB_E_MEMORY)
+                return lstub__fail(err, LSTUB_E_MEMORY, "allocator", -1, "%s", item.message);
         }
         plan->case_of[i] = c;
         lstub__case *own = &plan->cases[c];
-        if (fresh && status < 0) {
-            LSTUB_INIT(own->decision);
-            own->decision.action = LSTUB_ACTION_REFUSED;
-            own->decision.reason = LSTUB_REASON_ERROR;
-            own->decision.reason_layer = own->decision.top.group = own->decision.bottom.group = -1;
-            own->decision.status = status;
-        } else if (fresh) {
-            job.via = &via;
-            if (lstub__decide(own, w->stackup, &job, &w->capability, &w->options, &item) == LSTUB_E_MEMORY)
-                return lstub__fail(err, LSTUB_E_MEMORY, "allocator", -1, "%s", item.message);
-        }
         if (fresh && own->decision.action == LSTUB_ACTION_REFUSED
             && keep_message(plan, w, own, &item, &messages, err) < 0)
             return LSTUB_E_MEMORY;
         own->jobs++;
     }
+    plan->case_count = w->cases.count;
     return LSTUB_OK;
 }
 
@@ -344,7 +281,6 @@ static void add_up(lstub_plan *plan)
     lstub_plan_summary *s = &plan->summary;
     s->worst_notch_over_nyquist = HUGE_VAL;
     s->vias = (int64_t)plan->job_count;
-    s->geometries = (int64_t)plan->case_count;
     for (size_t i = 0; i < plan->case_count; i++) {
         const lstub_decision *d = &plan->cases[i].decision;
         int64_t n = plan->cases[i].jobs;
@@ -363,15 +299,11 @@ static void add_up(lstub_plan *plan)
 static int32_t make_rooms(lstub_plan *plan, work *w, const lstub_stackup *stackup, lstub_error *err)
 {
     const lstub_allocator *a = &plan->alloc;
-    for (w->table_size = 16; w->table_size < 2 * plan->job_count; w->table_size *= 2)
-        continue;
     plan->layer_count = stackup->count;
     if ((plan->case_of = lstub__new(a, plan->job_count, sizeof *plan->case_of, err)) == NULL
-        || (plan->cases = lstub__new(a, plan->job_count, sizeof *plan->cases, err)) == NULL
         || (plan->layers = lstub__new(a, (size_t)stackup->count, sizeof *plan->layers, err)) == NULL
-        || (w->job_of = lstub__new(a, plan->job_count, sizeof *w->job_of, err)) == NULL
-        || (w->hash_of = lstub__new(a, plan->job_count, sizeof *w->hash_of, err)) == NULL
-        || (w->table = lstub__new(a, w->table_size, sizeof *w->table, err)) == NULL)
+        || lstub__table_make(&w->cases, a, plan->job_count, err) < 0 || lstub__table_make(&w->circuits, a, plan->job_count, err) < 0
+        || (w->circuit_of = lstub__new(a, plan->job_count, sizeof *w->circuit_of, err)) == NULL)
         return LSTUB_E_MEMORY;
     for (int32_t i = 0; i < stackup->count; i++)
         strcpy(plan->layers[i].text, stackup->layer[i].name);    /* at most LSTUB_NAME_MAX: checked there */
@@ -393,13 +325,14 @@ static int32_t build(lstub_plan *plan, work *w, lstub_error *err)
     for (size_t i = 0; i < plan->case_count; i++) {
         lstub_job job;
         lstub_via via;
-        if (take_job(w, w->job_of[i], &job, &via, NULL) < 0)
+        if (take_job(w, w->cases.job[i], &job, &via, NULL) < 0)
             continue;
         job.via = &via;
-        if ((status = lstub__settle(&plan->cases[i], w->stackup, &job, &w->capability, &w->options, err)) < 0)
+        if ((status = lstub__settle(&plan->cases[i], &w->circuit[w->circuit_of[i]], w->stackup, &job, &w->capability, &w->options, err)) < 0)
             return status;
     }
     make_table(plan, w);
+    plan->summary.geometries = w->circuits.count;
     add_up(plan);
     return LSTUB_OK;
 }
@@ -426,6 +359,7 @@ int32_t lstub_plan_create(const lstub_stackup *stackup, const lstub_job *jobs, s
     plan->alloc = alloc;
     plan->job_count = count;
     LSTUB_INIT(plan->summary);
+    w.options.allocator = &plan->alloc;
     w.stackup = stackup;
     w.jobs = (const char *)jobs;
     w.stride = stride;
@@ -433,9 +367,10 @@ int32_t lstub_plan_create(const lstub_stackup *stackup, const lstub_job *jobs, s
     if (status == LSTUB_OK)
         status = build(plan, &w, err);
     lstub__free(&alloc, w.capability.depths);
-    lstub__free(&alloc, w.job_of);
-    lstub__free(&alloc, w.hash_of);
-    lstub__free(&alloc, w.table);
+    lstub__table_free(&w.cases, &alloc);
+    lstub__table_free(&w.circuits, &alloc);
+    lstub__free(&alloc, w.circuit);
+    lstub__free(&alloc, w.circuit_of);
     lstub__free(&alloc, w.intervals);
     if (status < 0) {
         lstub_plan_destroy(plan);

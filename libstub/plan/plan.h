@@ -33,12 +33,24 @@ typedef struct lstub__case {
     int64_t message;               /* number of its error message, -1                           */
 } lstub__case;
 
+/* What the model says of vias that differ at most in the copper beside the hole and in their pin: found when first asked for. */
+typedef struct lstub__circuit {
+    int      judged, limited[2], halved, settled;      /* what is known                                   */
+    int32_t  judged_status, count;
+    lstub_margin before;
+    double   limit[2];             /* longest stub on each side, the other as it is                       */
+    double   least[2], part;       /* both sides: shortest residuals, what part of the rest may stay; < 0: fails */
+    double   after_length[2];
+    int32_t  after_status;
+    lstub_margin after;
+} lstub__circuit;
+
 /* Decides one via on its own; the depths are intervals still. A status < 0: the via is refused, for the reason in err. */
-int32_t lstub__decide(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
-                      const lstub_model_options *options, lstub_error *err);
+int32_t lstub__decide(lstub__case *out, lstub__circuit *circuit, const lstub_stackup *stackup, const lstub_job *job,
+                      const lstub__capability *capability, const lstub_model_options *options, lstub_error *err);
 /* With the depths settled: residuals and what the via is like after drilling. */
-int32_t lstub__settle(lstub__case *out, const lstub_stackup *stackup, const lstub_job *job, const lstub__capability *capability,
-                      const lstub_model_options *options, lstub_error *err);
+int32_t lstub__settle(lstub__case *out, lstub__circuit *circuit, const lstub_stackup *stackup, const lstub_job *job,
+                      const lstub__capability *capability, const lstub_model_options *options, lstub_error *err);
 
 /* One interval to be stabbed; `point` comes back. */
 typedef struct lstub__interval {

@@ -310,7 +310,7 @@ static job plan_file(const char *path, const char *rules, const lstub_allocator 
     job j = {NULL, NULL, NULL};
     assert_ok(lstub_rules_parse(rules, strlen(rules), NULL, &j.rules, &err), err);
     assert_ok(lstub_board_load(path, j.rules, NULL, allocator, &j.board, &err), err);
-    assert_ok(lstub_board_plan(j.board, j.rules, NULL, NULL, NULL, &j.plan, &err), err);
+    assert_ok(lstub_board_plan(j.board, j.rules, NULL, LOADED, NULL, &j.plan, &err), err);
     return j;
 }
 
@@ -1015,7 +1015,7 @@ START_TEST(plan_by_other_rules)
     enter_folder("other_rules");
     job j = plan_small(&spellings[0], NULL);
     assert_ok(lstub_rules_parse(other_text, strlen(other_text), NULL, &rules, &err), err);
-    assert_ok(lstub_board_plan(j.board, rules, NULL, NULL, NULL, &plan, &err), err);
+    assert_ok(lstub_board_plan(j.board, rules, NULL, LOADED, NULL, &plan, &err), err);
     assert_ok(lstub_board_write_plan_csv(j.board, plan, "plan.csv", &err), err);
     csv t = open_csv("plan.csv");
     ck_assert(next_row(&t));

@@ -41,7 +41,7 @@ static lstub_margin margin_on(const lstub_stackup *stackup, const lstub_via *via
     lstub_model *model = NULL;
     LSTUB_INIT(m);
     LSTUB_INIT(err);
-    assert_ok(lstub_model_create(stackup, via, NULL, NULL, &model, &err), err);
+    assert_ok(lstub_model_create(stackup, via, LOADED, NULL, &model, &err), err);
     ck_assert_int_ge(lstub_model_margin(model, &s, &c, &m, &err), 0);
     lstub_model_destroy(model);
     return m;
@@ -76,8 +76,8 @@ START_TEST(margin_by_hand)
     double f1, length, loss, nyquist = 7e9;
     lstub_margin m = margin(&via, signal_of(14e9, 4), criteria_of(3, 0.25));
     lstub_model *model = NULL;
-    assert_ok(lstub_first_notch_batch(board.stackup, &via, 1, sizeof via, NULL, &f1, NULL, &length, NULL, &err), err);
-    assert_ok(lstub_model_create(board.stackup, &via, NULL, NULL, &model, &err), err);
+    assert_ok(lstub_first_notch_batch(board.stackup, &via, 1, sizeof via, LOADED, &f1, NULL, &length, NULL, &err), err);
+    assert_ok(lstub_model_create(board.stackup, &via, LOADED, NULL, &model, &err), err);
     assert_ok(lstub_model_added_loss(model, LSTUB_ALL_STUBS, &nyquist, 1, &loss, NULL, &err), err);
     lstub_model_destroy(model);
     assert_close(m.nyquist, 7e9, 0, 0, "half the symbol rate");
@@ -192,7 +192,7 @@ static lstub_stub_limit longest(const lstub_via *via, int32_t side, lstub_signal
     lstub_stub_limit limit;
     LSTUB_INIT(limit);
     LSTUB_INIT(err);
-    ck_assert_int_ge(lstub_longest_stub(board.stackup, via, side, NULL, &s, &c, &limit, &err), 0);
+    ck_assert_int_ge(lstub_longest_stub(board.stackup, via, side, LOADED, &s, &c, &limit, &err), 0);
     return limit;
 }
 
@@ -254,17 +254,17 @@ START_TEST(longest_stub_where_there_is_none)
     lstub_criteria c = criteria_of(2, 0);
     lstub_stub_limit l;
     poison(l);
-    assert_refused(lstub_longest_stub(board.stackup, &via, LSTUB_SIDE_TOP, NULL, &s, &c, &l, &err), LSTUB_E_NONE, err, "side = 1");
-    assert_refused(lstub_longest_stub(board.stackup, &straight, LSTUB_SIDE_BOTTOM, NULL, &s, &c, &l, &err), LSTUB_E_NONE, err, "side = 2");
-    assert_refused(lstub_longest_stub(board.stackup, &via, LSTUB_SIDE_BOTH, NULL, &s, &c, &l, &err), LSTUB_E_ARGUMENT, err, "side = 3");
-    assert_refused(lstub_longest_stub(board.stackup, &via, 0, NULL, &s, &c, &l, &err), LSTUB_E_ARGUMENT, err, "side = 0");
-    assert_refused(lstub_longest_stub(NULL, &via, 2, NULL, &s, &c, &l, &err), LSTUB_E_NULL, err, "stackup|null");
-    assert_refused(lstub_longest_stub(board.stackup, NULL, 2, NULL, &s, &c, &l, &err), LSTUB_E_NULL, err, "via|null");
-    assert_refused(lstub_longest_stub(board.stackup, &via, 2, NULL, NULL, &c, &l, &err), LSTUB_E_NULL, err, "signal|null");
-    assert_refused(lstub_longest_stub(board.stackup, &via, 2, NULL, &s, NULL, &l, &err), LSTUB_E_NULL, err, "criteria|null");
-    assert_refused(lstub_longest_stub(board.stackup, &via, 2, NULL, &s, &c, NULL, &err), LSTUB_E_NULL, err, "null");
+    assert_refused(lstub_longest_stub(board.stackup, &via, LSTUB_SIDE_TOP, LOADED, &s, &c, &l, &err), LSTUB_E_NONE, err, "side = 1");
+    assert_refused(lstub_longest_stub(board.stackup, &straight, LSTUB_SIDE_BOTTOM, LOADED, &s, &c, &l, &err), LSTUB_E_NONE, err, "side = 2");
+    assert_refused(lstub_longest_stub(board.stackup, &via, LSTUB_SIDE_BOTH, LOADED, &s, &c, &l, &err), LSTUB_E_ARGUMENT, err, "side = 3");
+    assert_refused(lstub_longest_stub(board.stackup, &via, 0, LOADED, &s, &c, &l, &err), LSTUB_E_ARGUMENT, err, "side = 0");
+    assert_refused(lstub_longest_stub(NULL, &via, 2, LOADED, &s, &c, &l, &err), LSTUB_E_NULL, err, "stackup|null");
+    assert_refused(lstub_longest_stub(board.stackup, NULL, 2, LOADED, &s, &c, &l, &err), LSTUB_E_NULL, err, "via|null");
+    assert_refused(lstub_longest_stub(board.stackup, &via, 2, LOADED, NULL, &c, &l, &err), LSTUB_E_NULL, err, "signal|null");
+    assert_refused(lstub_longest_stub(board.stackup, &via, 2, LOADED, &s, NULL, &l, &err), LSTUB_E_NULL, err, "criteria|null");
+    assert_refused(lstub_longest_stub(board.stackup, &via, 2, LOADED, &s, &c, NULL, &err), LSTUB_E_NULL, err, "null");
     via.drill = -1;
-    assert_refused(lstub_longest_stub(board.stackup, &via, 2, NULL, &s, &c, &l, &err), LSTUB_E_ARGUMENT, err, "drill = -1 m");
+    assert_refused(lstub_longest_stub(board.stackup, &via, 2, LOADED, &s, &c, &l, &err), LSTUB_E_ARGUMENT, err, "drill = -1 m");
     assert_untouched(l);
 }
 END_TEST
@@ -280,7 +280,7 @@ START_TEST(highest_rate_turned_back)
             lstub_model *model = NULL;
             int32_t by = -1;
             double rate = NAN;
-            assert_ok(lstub_model_create(board.stackup, &via, NULL, NULL, &model, &err), err);
+            assert_ok(lstub_model_create(board.stackup, &via, LOADED, NULL, &model, &err), err);
             ck_assert_int_ge(lstub_highest_symbol_rate(model, &c, &rate, &by, &err), 0);
             ck_assert(rate > 0 && by != LSTUB_LIMIT_NONE);
             ck_assert_msg(margin(&via, signal_of(rate * (1 - 1e-7), 2), c).pass, "limits %g, %g dB: fails at %.9g Bd", limits[k][0], limits[k][1], rate);
@@ -299,7 +299,7 @@ START_TEST(highest_rate_without_limit)
     lstub_model *model = NULL;
     double rate = NAN;
     int32_t by = -1;
-    assert_ok(lstub_model_create(board.stackup, &via, NULL, NULL, &model, &err), err);
+    assert_ok(lstub_model_create(board.stackup, &via, LOADED, NULL, &model, &err), err);
     assert_ok(lstub_highest_symbol_rate(model, &c, &rate, &by, &err), err);
     ck_assert(isinf(rate) && by == LSTUB_LIMIT_NONE);
     rate = -7;
@@ -351,9 +351,9 @@ START_TEST(bad_signals_and_criteria)
     s.reserved = bad[_i].reserved;
     poison(m);
     poison(l);
-    assert_ok(lstub_model_create(board.stackup, &via, NULL, NULL, &model, &err), err);
+    assert_ok(lstub_model_create(board.stackup, &via, LOADED, NULL, &model, &err), err);
     assert_refused(lstub_model_margin(model, &s, &c, &m, &err), bad[_i].status, err, bad[_i].words);
-    assert_refused(lstub_longest_stub(board.stackup, &via, LSTUB_SIDE_BOTTOM, NULL, &s, &c, &l, &err), bad[_i].status, err, bad[_i].words);
+    assert_refused(lstub_longest_stub(board.stackup, &via, LSTUB_SIDE_BOTTOM, LOADED, &s, &c, &l, &err), bad[_i].status, err, bad[_i].words);
     if (bad[_i].notch == 2 && bad[_i].loss == 0) {
         assert_refused(lstub_signal_nyquist(&s, &v, &err), bad[_i].status, err, bad[_i].words);
         assert_refused(lstub_signal_bit_rate(&s, &v, &err), bad[_i].status, err, bad[_i].words);
@@ -376,7 +376,7 @@ START_TEST(bad_calls)
     lstub_margin m;
     double v = -7;
     poison(m);
-    assert_ok(lstub_model_create(board.stackup, &via, NULL, NULL, &model, &err), err);
+    assert_ok(lstub_model_create(board.stackup, &via, LOADED, NULL, &model, &err), err);
     assert_refused(lstub_model_margin(NULL, &s, &c, &m, &err), LSTUB_E_NULL, err, "model|null");
     assert_refused(lstub_model_margin(model, NULL, &c, &m, &err), LSTUB_E_NULL, err, "signal|null");
     assert_refused(lstub_model_margin(model, &s, NULL, &m, &err), LSTUB_E_NULL, err, "criteria|null");
@@ -420,7 +420,7 @@ static int32_t margins(const batch *b, size_t at, size_t n, lstub_margin *out, i
     for (size_t i = 0; i < n; i++)
         LSTUB_INIT(out[i]);
     return lstub_margin_batch(board.stackup, b->via + at, sizeof b->via[0], b->signal + at, sizeof b->signal[0], b->criteria + at,
-                              sizeof b->criteria[0], n, NULL, out, sizeof out[0], status, e);
+                              sizeof b->criteria[0], n, LOADED, out, sizeof out[0], status, e);
 }
 
 static int32_t limits(const batch *b, size_t at, size_t n, lstub_stub_limit *out, int32_t *status, lstub_error *e)
@@ -428,7 +428,7 @@ static int32_t limits(const batch *b, size_t at, size_t n, lstub_stub_limit *out
     for (size_t i = 0; i < n; i++)
         LSTUB_INIT(out[i]);
     return lstub_longest_stub_batch(board.stackup, b->via + at, sizeof b->via[0], b->side + at, sizeof b->side[0], b->signal + at,
-                                    sizeof b->signal[0], b->criteria + at, sizeof b->criteria[0], n, NULL, out, sizeof out[0], status, e);
+                                    sizeof b->signal[0], b->criteria + at, sizeof b->criteria[0], n, LOADED, out, sizeof out[0], status, e);
 }
 
 START_TEST(batches_are_their_parts)
@@ -478,11 +478,11 @@ START_TEST(stride_0_is_the_same_for_all)
         LSTUB_INIT(m[i]);
         LSTUB_INIT(l[i]);
     }
-    lstub_margin_batch(board.stackup, b.via, sizeof b.via[0], b.signal, 0, b.criteria, 0, BATCH, NULL, m, sizeof m[0], status, NULL);
+    lstub_margin_batch(board.stackup, b.via, sizeof b.via[0], b.signal, 0, b.criteria, 0, BATCH, LOADED, m, sizeof m[0], status, NULL);
     for (int i = 0; i < BATCH; i++)
         if (i != 3)
             ck_assert(status[i] >= 0 && m[i].nyquist == 0.5 * b.signal[0].symbol_rate);
-    lstub_longest_stub_batch(board.stackup, b.via, 0, b.side, 0, b.signal, sizeof b.signal[0], b.criteria, 0, BATCH, NULL, l, sizeof l[0], status, NULL);
+    lstub_longest_stub_batch(board.stackup, b.via, 0, b.side, 0, b.signal, sizeof b.signal[0], b.criteria, 0, BATCH, LOADED, l, sizeof l[0], status, NULL);
     for (int i = 0; i < BATCH; i++) {
         if (i == 11)
             continue;

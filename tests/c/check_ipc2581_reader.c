@@ -261,8 +261,6 @@ START_TEST(stackups_refused)
     assert_refused(load_stack(NULL, STACKUP("M", "1", "METAL", ""), NULL, &board), LSTUB_E_FORMAT, err, "line |'M'|0 layers");
     assert_refused(load_stack(NULL, STACKUP("M", "1", "METAL", STACK_LAYER("TOP", "0.05", "1", "C") STACK_LAYER("BOT", "0.05", "2", "C")), NULL,
                               &board), LSTUB_E_GEOMETRY, err, "line |'TOP'|'BOT'|without a dielectric");
-    assert_refused(load_stack(NULL, STACKUP("M", "1", "METAL", STACK_LAYER("TOP", "0", "1", "C") STACK_LAYER("D1", "1", "2", "E")), NULL, &board),
-                   LSTUB_E_ARGUMENT, err, "line |'TOP'|thickness = 0 m");
     assert_refused(load_stack(NULL, STACKUP("M", "1", "METAL", STACK_LAYER("TOP", "-0.1", "1", "C")), NULL, &board), LSTUB_E_FORMAT, err,
                    "line |'TOP'|thickness = -0.1");
 }

@@ -69,7 +69,7 @@ START_TEST(notches_of_radiating_barrels)
         int32_t connects[2];
         lstub_via via = random_via(5, i, connects);
         via.return_kind = LSTUB_RETURN_NONE;
-        lstub_model *model = model_on(board.stackup, &via, 0);
+        lstub_model *model = model_on(board.stackup, &via, LSTUB_FIDELITY_LOADED);
         for (int32_t stub = 0; stub < lstub_model_stub_count(model); stub++) {
             lstub_notch notch;
             minimum minima[64];
@@ -136,7 +136,7 @@ END_TEST
 START_TEST(two_stubs_and_all)
 {
     lstub_via via = board_via(inner, 2);
-    lstub_model *model = model_on(board.stackup, &via, 0);
+    lstub_model *model = model_on(board.stackup, &via, LSTUB_FIDELITY_LOADED);
     lstub_notch one[32], two[32], all[64];
     ck_assert_int_eq(lstub_model_stub_count(model), 2);
     size_t n = notches_of(model, 0, 300e9, one, 32), m = notches_of(model, 1, 300e9, two, 32);
@@ -156,7 +156,7 @@ END_TEST
 START_TEST(more_notches_than_room)
 {
     lstub_via via = board_via(to_c1, 2);
-    lstub_model *model = model_on(board.stackup, &via, 0);
+    lstub_model *model = model_on(board.stackup, &via, LSTUB_FIDELITY_LOADED);
     lstub_notch all[32], some[3];
     size_t count = 0, n = notches_of(model, 0, 300e9, all, 32);
     ck_assert_uint_gt(n, 2);
@@ -193,12 +193,12 @@ START_TEST(batch_is_its_parts)
     int32_t connects[BATCH][2], status[BATCH], part_status[BATCH];
     double all[3][BATCH], part[3][BATCH];
     make_batch(vias, connects);
-    assert_refused(lstub_first_notch_batch(board.stackup, vias, BATCH, sizeof vias[0], NULL, all[0], all[1], all[2], status, &err),
+    assert_refused(lstub_first_notch_batch(board.stackup, vias, BATCH, sizeof vias[0], LOADED, all[0], all[1], all[2], status, &err),
                    LSTUB_E_ARGUMENT, err, "item 7|drill = -1 m");
     ck_assert_int_eq(err.index, 7);
     for (size_t at = 0; at < BATCH;) {
         size_t n = 1 + at % 7 < BATCH - at ? 1 + at % 7 : BATCH - at;
-        lstub_first_notch_batch(board.stackup, vias + at, n, sizeof vias[0], NULL, part[0] + at, part[1] + at, part[2] + at, part_status + at, NULL);
+        lstub_first_notch_batch(board.stackup, vias + at, n, sizeof vias[0], LOADED, part[0] + at, part[1] + at, part[2] + at, part_status + at, NULL);
         at += n;
     }
     ck_assert_mem_eq(status, part_status, sizeof status);
@@ -209,7 +209,7 @@ START_TEST(batch_is_its_parts)
         if (status[i] < 0)
             ck_assert(isnan(all[0][i]) && isnan(all[1][i]) && isnan(all[2][i]));
     }
-    lstub_first_notch_batch(board.stackup, vias, BATCH, sizeof vias[0], NULL, NULL, part[1], NULL, NULL, NULL);
+    lstub_first_notch_batch(board.stackup, vias, BATCH, sizeof vias[0], LOADED, NULL, part[1], NULL, NULL, NULL);
     ck_assert(part[1][3] == all[1][3] || isnan(all[1][3]));
 }
 END_TEST
@@ -220,11 +220,11 @@ START_TEST(batch_against_models)
     int32_t connects[BATCH][2];
     double f1[BATCH], dk[BATCH], length[BATCH];
     make_batch(vias, connects);
-    lstub_first_notch_batch(board.stackup, vias, BATCH, sizeof vias[0], NULL, f1, dk, length, NULL, NULL);
+    lstub_first_notch_batch(board.stackup, vias, BATCH, sizeof vias[0], LOADED, f1, dk, length, NULL, NULL);
     for (size_t i = 0; i < BATCH; i++) {
         if (i == 7 || i == 19)
             continue;
-        lstub_model *model = model_on(board.stackup, &vias[i], 0);
+        lstub_model *model = model_on(board.stackup, &vias[i], LSTUB_FIDELITY_LOADED);
         lstub_notch n;
         if (notches_of(model, LSTUB_ALL_STUBS, 1e12, NULL, 0) == 0 || isnan(f1[i])) {
             ck_assert(isnan(f1[i]) && isnan(dk[i]) && isnan(length[i]));

@@ -1,38 +1,7 @@
-/* White-box: the small mathematics inside. Expected values: mpmath 1.4.1 with 40 digits, or identities. */
+/* White-box: the small mathematics inside. Expected values: identities. Bessel functions: check_bessel.c. */
 #include "check_util.h"
-#include "num/bessel.h"
 #include "num/cplx.h"
 #include "num/root.h"
-
-static const double k0_table[][2] = {       /* x, exp(x) K0(x) = exp(x) besselk(0, x) of mpmath */
-    {1e-6, 13.931456005075458763},     {1e-4, 9.3272045872745339331},     {1e-3, 7.0307160023782515185},
-    {0.01, 4.7686940285444619046},     {0.1, 2.6823261022628943831},      {0.3, 1.8526273007720142825},
-    {0.5, 1.52410938577390953},        {0.7, 1.3301236562420556201},      {1, 1.1444630798068950147},
-    {1.5, 0.95821005329489649642},     {2, 0.84156821507077141792},       {3, 0.69776159804385177606},
-    {5, 0.54780756431351898687},       {7, 0.46584509609301588792},       {8.9, 0.41454684623030242892},
-    {9.1, 0.41008057837424394165},     {12, 0.35819487848907821528},      {20, 0.27854487665718222393},
-    {50, 0.17680715585742933811},      {123.4, 0.11271045443152740429},   {700, 0.047362369454613572112},
-    {1e3, 0.039628321600754217115},    {1e4, 0.012532984717699285288},    {1e5, 0.0039633223434747558606},
-    {1e6, 0.0012533139806513212103},
-};
-
-START_TEST(k0_values)
-{
-    assert_close(lstub__k0_scaled(k0_table[_i][0]), k0_table[_i][1], 1e-14, 0, "mpmath 1.4.1, 40 digits");
-}
-END_TEST
-
-/* Its two forms meet at x = 9: no step there beyond their rounding. */
-START_TEST(k0_is_smooth)
-{
-    double below = lstub__k0_scaled(9.0), above = lstub__k0_scaled(nextafter(9.0, 10.0));
-    assert_close(above, below, 1e-14, 0, "continuity");
-    for (int i = 1; i < 400; i++) {
-        double x = 1e-6 * pow(10.0, 0.03 * i);
-        ck_assert_msg(lstub__k0_scaled(1.01 * x) < lstub__k0_scaled(x), "not falling at %.17g", x);
-    }
-}
-END_TEST
 
 static double parabola(double x, const void *context) { return x * x - *(const double *)context; }
 static double steep(double x, const void *context) { (void)context; return expm1(50.0 * (x - 0.3)); }
@@ -111,15 +80,12 @@ END_TEST
 int main(void)
 {
     Suite *suite = suite_create("num");
-    TCase *bessel = tcase_create("bessel"), *root = tcase_create("root"), *complex = tcase_create("complex");
-    tcase_add_loop_test(bessel, k0_values, 0, (int)COUNT(k0_table));
-    tcase_add_test(bessel, k0_is_smooth);
+    TCase *root = tcase_create("root"), *complex = tcase_create("complex");
     tcase_add_test(root, roots);
     tcase_add_test(root, roots_at_the_ends_and_none);
     tcase_add_test(root, minima);
     tcase_add_test(complex, complex_functions);
     tcase_add_test(complex, complex_extremes);
-    suite_add_tcase(suite, bessel);
     suite_add_tcase(suite, root);
     suite_add_tcase(suite, complex);
     return test_main(suite);

@@ -56,7 +56,7 @@ static lstub_margin margin_with(const job_set *set, size_t i, double top, double
     if (bottom < full_bottom)
         drills[via.backdrill_count++] = (lstub_backdrill){LSTUB_SIDE_BOTTOM, 0, full_bottom - bottom, via.drill};
     LSTUB_INIT(m);
-    assert_ok(lstub_model_create(board.stackup, &via, NULL, NULL, &model, &err), err);
+    assert_ok(lstub_model_create(board.stackup, &via, LOADED, NULL, &model, &err), err);
     ck_assert_int_ge(lstub_model_margin(model, set->job[i].signal, set->job[i].criteria, &m, &err), 0);
     lstub_model_destroy(model);
     return m;
@@ -370,7 +370,7 @@ START_TEST(order_and_copies_do_not_matter)
             twice[i] = set.job[set.count - 1 - i];
             twice[set.count + i] = set.job[i];
         }
-        assert_ok(lstub_plan_create(board.stackup, twice, 2 * set.count, sizeof twice[0], &c, NULL, NULL, &more, &err), err);
+        assert_ok(lstub_plan_create(board.stackup, twice, 2 * set.count, sizeof twice[0], &c, LOADED, NULL, &more, &err), err);
         lstub_plan_summary a = totals_of(once), b = totals_of(more);
         ck_assert(a.depths_top == b.depths_top && a.depths_bottom == b.depths_bottom && a.geometries == b.geometries && 2 * a.vias == b.vias);
         for (size_t i = 0; i < set.count; i++) {

@@ -77,7 +77,7 @@ static inline lstub_plan *plan_of(const job_set *set, const lstub_capability *c)
 {
     lstub_plan *plan = NULL;
     LSTUB_INIT(err);
-    assert_ok(lstub_plan_create(board.stackup, set->job, set->count, sizeof set->job[0], c, NULL, NULL, &plan, &err), err);
+    assert_ok(lstub_plan_create(board.stackup, set->job, set->count, sizeof set->job[0], c, LOADED, NULL, &plan, &err), err);
     return plan;
 }
 
@@ -101,7 +101,7 @@ static inline lstub_plan_summary totals_of(const lstub_plan *plan)
 static inline lstub_decision decide(const job_set *set, size_t index, const lstub_capability *c)
 {
     lstub_plan *plan = NULL;
-    assert_ok(lstub_plan_create(board.stackup, &set->job[index], 1, sizeof set->job[0], c, NULL, NULL, &plan, &err), err);
+    assert_ok(lstub_plan_create(board.stackup, &set->job[index], 1, sizeof set->job[0], c, LOADED, NULL, &plan, &err), err);
     lstub_decision d = decision_of(plan, 0);
     lstub_plan_destroy(plan);
     return d;

@@ -184,7 +184,7 @@ START_TEST(empty_board)
     lstub_drill_group g;
     poison(d);
     poison(g);
-    assert_ok(lstub_plan_create(board.stackup, NULL, 0, 0, &c, NULL, NULL, &plan, &err), err);
+    assert_ok(lstub_plan_create(board.stackup, NULL, 0, 0, &c, LOADED, NULL, &plan, &err), err);
     lstub_plan_summary t = totals_of(plan);
     ck_assert(t.vias == 0 && t.groups == 0 && t.depths_top == 0 && t.depths_bottom == 0 && t.geometries == 0);
     ck_assert(isinf(t.worst_notch_over_nyquist) && lstub_plan_count(plan) == 0 && lstub_plan_group_count(plan) == 0);
@@ -250,7 +250,7 @@ START_TEST(bad_capabilities)
     memset(&set, 0, sizeof set);
     fast(&set);
     bad[_i].spoil(&c);
-    assert_refused(lstub_plan_create(board.stackup, set.job, 1, sizeof set.job[0], &c, NULL, &allocator, &plan, &err), bad[_i].status, err, bad[_i].words);
+    assert_refused(lstub_plan_create(board.stackup, set.job, 1, sizeof set.job[0], &c, LOADED, &allocator, &plan, &err), bad[_i].status, err, bad[_i].words);
     ck_assert_ptr_null(plan);
     ck_assert_int_eq(memory.live, 0);
 }
@@ -271,11 +271,11 @@ START_TEST(bad_calls)
     poison(t);
     memset(&set, 0, sizeof set);
     fast(&set);
-    assert_refused(lstub_plan_create(NULL, set.job, 1, sizeof set.job[0], &c, NULL, NULL, &plan, &err), LSTUB_E_NULL, err, "stackup|null");
-    assert_refused(lstub_plan_create(board.stackup, NULL, 1, sizeof set.job[0], &c, NULL, NULL, &plan, &err), LSTUB_E_NULL, err, "jobs|null");
+    assert_refused(lstub_plan_create(NULL, set.job, 1, sizeof set.job[0], &c, LOADED, NULL, &plan, &err), LSTUB_E_NULL, err, "stackup|null");
+    assert_refused(lstub_plan_create(board.stackup, NULL, 1, sizeof set.job[0], &c, LOADED, NULL, &plan, &err), LSTUB_E_NULL, err, "jobs|null");
     assert_refused(lstub_plan_create(board.stackup, set.job, 1, sizeof set.job[0], NULL, NULL, NULL, &plan, &err), LSTUB_E_NULL, err, "capability|null");
     assert_refused(lstub_plan_create(board.stackup, set.job, 1, sizeof set.job[0], &c, NULL, NULL, NULL, &err), LSTUB_E_NULL, err, "out|null");
-    assert_refused(lstub_plan_create(board.stackup, set.job, 1, 8, &c, NULL, NULL, &plan, &err), LSTUB_E_SIZE, err, "jobs|stride = 8");
+    assert_refused(lstub_plan_create(board.stackup, set.job, 1, 8, &c, LOADED, NULL, &plan, &err), LSTUB_E_SIZE, err, "jobs|stride = 8");
     assert_refused(lstub_plan_create(board.stackup, set.job, 1, sizeof set.job[0], &c, &o, NULL, &plan, &err), LSTUB_E_ARGUMENT, err, "fidelity = 77");
     ck_assert_ptr_null(plan);
     plan = plan_of(&set, &c);
@@ -329,7 +329,7 @@ START_TEST(every_allocation_fails_once)
         LSTUB_INIT(err);
         memory.calls = 0;
         memory.fail_at = n;
-        if (lstub_plan_create(board.stackup, set.job, set.count, sizeof set.job[0], &c, NULL, &allocator, &plan, &err) == LSTUB_OK) {
+        if (lstub_plan_create(board.stackup, set.job, set.count, sizeof set.job[0], &c, LOADED, &allocator, &plan, &err) == LSTUB_OK) {
             ck_assert_int_gt(n, 8);
             break;
         }

@@ -202,7 +202,7 @@ END_TEST
 
 /* ---- what is no stackup --------------------------------------------------------------------------- */
 
-static void thickness_0(test_board *b) { b->layer[2].thickness = 0; }
+static void thickness_0(test_board *b) { b->layer[3].thickness = 0; }   /* copper may be a sheet */
 static void thickness_negative(test_board *b) { b->layer[2].thickness = -1e-4; }
 static void thickness_nan(test_board *b) { b->layer[3].thickness = NAN; }
 static void thickness_huge(test_board *b) { b->layer[3].thickness = 0.11; }      /* as if millimetres were given */
@@ -248,8 +248,8 @@ static const struct {
     int64_t     index;
     const char *words;
 } bad[] = {
-    {thickness_0, LSTUB_E_ARGUMENT, 2, "layer 2 'C1'|thickness = 0 m|> 0|0.1"},
-    {thickness_negative, LSTUB_E_ARGUMENT, 2, "layer 2 'C1'|thickness = -0.0001 m|> 0"},
+    {thickness_0, LSTUB_E_ARGUMENT, 3, "layer 3 'D1'|thickness = 0 m|> 0|0.1"},
+    {thickness_negative, LSTUB_E_ARGUMENT, 2, "layer 2 'C1'|thickness = -0.0001 m|>= 0|0.1 m"},
     {thickness_nan, LSTUB_E_ARGUMENT, 3, "layer 3 'D1'|thickness = nan"},
     {thickness_huge, LSTUB_E_ARGUMENT, 3, "layer 3 'D1'|thickness = 0.11 m|0.1 m"},
     {thickness_infinite, LSTUB_E_ARGUMENT, 3, "layer 3 'D1'|thickness = inf"},

@@ -38,11 +38,11 @@ static void ask(answers *a)
     memset(a, 0, sizeof *a);
     LSTUB_INIT(err);
     LSTUB_INIT(a->margin);
-    a->failed |= lstub_first_notch_batch(all.board.stackup, all.via, VIAS, sizeof all.via[0], NULL, a->f1, NULL, NULL, NULL, &err) < 0;
+    a->failed |= lstub_first_notch_batch(all.board.stackup, all.via, VIAS, sizeof all.via[0], LOADED, a->f1, NULL, NULL, NULL, &err) < 0;
     a->failed |= lstub_model_zin(all.model, LSTUB_ALL_STUBS, &f, 1, a->zin, NULL, &err) < 0;
     a->failed |= lstub_model_margin(all.model, &all.signal, &all.criteria, &a->margin, &err) < 0;
     a->failed |= lstub_highest_symbol_rate(all.model, &all.criteria, &a->rate, NULL, &err) < 0;
-    a->failed |= lstub_plan_create(all.board.stackup, all.job, VIAS, sizeof all.job[0], &all.capability, NULL, NULL, &own, &err) < 0;
+    a->failed |= lstub_plan_create(all.board.stackup, all.job, VIAS, sizeof all.job[0], &all.capability, LOADED, NULL, &own, &err) < 0;
     for (size_t i = 0; i < VIAS; i++) {
         LSTUB_INIT(a->decision[i]);
         a->failed |= lstub_plan_decision(i % 2 ? own : all.plan, i, &a->decision[i], &err) < 0;
@@ -79,7 +79,7 @@ static void make_shared(void)
         all.job[i].criteria = &all.criteria;
     }
     assert_ok(lstub_model_create(all.board.stackup, &all.via[0], NULL, NULL, &all.model, &err), err);
-    assert_ok(lstub_plan_create(all.board.stackup, all.job, VIAS, sizeof all.job[0], &all.capability, NULL, NULL, &all.plan, &err), err);
+    assert_ok(lstub_plan_create(all.board.stackup, all.job, VIAS, sizeof all.job[0], &all.capability, LOADED, NULL, &all.plan, &err), err);
 }
 
 START_TEST(threads_get_what_one_gets)

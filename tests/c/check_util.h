@@ -14,6 +14,9 @@
 #define COUNT(a) (sizeof(a) / sizeof(a)[0])
 #define MIL 25.4e-6
 
+/* Options of the closed forms, for suites about rules, plans and sums rather than fields: a thousandth of the time. */
+#define LOADED (&(lstub_model_options){sizeof(lstub_model_options), LSTUB_FIDELITY_LOADED, 0, 0.0, 0, 0, NULL})
+
 /*
 ** Within rel of `want` or within abs, whichever is wider. NaN equals NaN, an infinity itself. `source` says where
 ** `want` comes from: a paper, a derivation, an identity; an expected value without one is refused.

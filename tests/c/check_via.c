@@ -351,7 +351,7 @@ static const struct {
     {exit_outside_the_span, LSTUB_E_GEOMETRY, "connects[1]|8 'C4'|span|0 'C0'|6 'C3'"},
     {returns_unknown, LSTUB_E_ARGUMENT, "return_kind = 3"},
     {returns_none_counted, LSTUB_E_ARGUMENT, "returns|count = 0|1000"},
-    {returns_many, LSTUB_E_ARGUMENT, "returns|count = 1001|1000"},
+    {returns_many, LSTUB_E_ARGUMENT, "return_count = 1001|1000"},
     {returns_at_0, LSTUB_E_ARGUMENT, "return_distance = 0 m"},
     {returns_nan, LSTUB_E_ARGUMENT, "return_distance = nan"},
     {returns_in_the_barrel, LSTUB_E_GEOMETRY, "returns|distance = 0.0002 m|0.00025 m"},

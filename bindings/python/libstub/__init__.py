@@ -57,7 +57,7 @@ from ._material import Conductor, Dielectric, Permittivity
 from ._model import ALL_STUBS, Model, Notch, StubLine
 from ._plan import Action, Capability, Decision, DrillCut, DrillGroup, Job, Plan, PlanSummary, Reason, plan
 from ._stackup import Depth, Interval, Layer, Stackup
-from ._via import BackDrill, Pair, Pin, Ring, Stub, Via, Wall
+from ._via import BackDrill, Pair, Pin, Ring, Stub, Via, Vias, Wall
 from .units import ff, gbd, gbps, ghz, inch, mbd, mhz, mil, mm, nh, ns, pf, ph, ps, um
 
 __version__: str = _core.version
@@ -69,7 +69,7 @@ __all__ = [
     "GeometryError", "Hole", "Interval", "Job", "Layer", "LibstubError", "Limit", "Margin", "Margins", "Model",
     "NoSuchError", "Notch", "Notice", "Pair", "Permittivity", "Pin", "Plan", "PlanSummary", "RangeWarning", "ReadError",
     "Reason", "Ring", "Rules", "RulesSignal", "Signal", "Stackup", "Status", "Stub", "StubLimit", "StubLimits",
-    "StubLine", "SymbolRateLimit", "TwinRod", "UnsupportedError", "Via", "Wall", "WriteError", "coax", "delay_dk", "ff",
+    "StubLine", "SymbolRateLimit", "TwinRod", "UnsupportedError", "Via", "Vias", "Wall", "WriteError", "coax", "delay_dk", "ff",
     "first_notch_batch", "gbd", "gbps", "ghz", "handbook_capacitance", "handbook_inductance", "inch",
     "loaded_stub_frequency", "longest_stub", "longest_stub_batch", "margin_batch", "mbd", "mhz", "mil", "mm",
     "model_revision", "nh", "notch_floor", "ns", "pf", "ph", "plan", "plate_capacitance", "ps", "quarter_wave_dk",

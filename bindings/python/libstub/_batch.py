@@ -17,7 +17,7 @@ Errors = Literal["raise", "mark"]
 class FirstNotches(NamedTuple):
     """First notches of many vias; arrays with an item per via.
 
-    f1: Hz, lowest over the via's stubs; NaN where it has none below 1e12. dk_effective: of that stub. length: of that
+    f1: Hz, lowest over the via's stubs; NaN where it has none where the fidelity looks for one. dk_effective: of that stub. length: of that
     stub, m. status: int32, see `Status`.
     """
 
@@ -132,14 +132,19 @@ def _run(what: str, vias: Sequence[Via], kinds: str, errors: Any, call: Callable
 
 
 def first_notch_batch(
-    vias: Iterable[Via], *, fidelity: Fidelity = "default", z_ref: float = 50.0, errors: Errors = "raise"
+    vias: Iterable[Via],
+    *,
+    fidelity: Fidelity = "default",
+    z_ref: float = 50.0,
+    annuli: int | None = None,
+    errors: Errors = "raise",
 ) -> FirstNotches:
     """First notch of many vias, on any number of stackups; the GIL is released meanwhile.
 
     Parameters
     ----------
     vias : sequence of `Via`
-    fidelity, z_ref : as `Model`
+    fidelity, z_ref, annuli : as `Model`
     errors : "raise": the first item that fails raises its exception (with ``index``); "mark": items that fail have
         NaN and their status
 
@@ -147,7 +152,7 @@ def first_notch_batch(
     int32 (array.array without NumPy).
     """
     items = _check_vias(vias)
-    choice = options(fidelity, z_ref)
+    choice = options(fidelity, z_ref, annuli)
 
     def call(stackup: Any, indices: Sequence[int], columns: Sequence[Any]) -> Any:
         records = tuple(items[i]._record for i in indices)
@@ -163,6 +168,7 @@ def margin_batch(
     *,
     fidelity: Fidelity = "default",
     z_ref: float = 50.0,
+    annuli: int | None = None,
     errors: Errors = "raise",
 ) -> Margins:
     """Margins of many vias, on any number of stackups; the GIL is released meanwhile.
@@ -171,13 +177,13 @@ def margin_batch(
     ----------
     vias : sequence of `Via`
     signals, criteria : one for all, or a sequence of as many as vias
-    fidelity, z_ref : as `Model`
+    fidelity, z_ref, annuli : as `Model`
     errors : as `first_notch_batch`
     """
     items = _check_vias(vias)
     links = _records("signals", signals, Signal, len(items))
     wanted = _records("criteria", criteria, Criteria, len(items))
-    choice = options(fidelity, z_ref)
+    choice = options(fidelity, z_ref, annuli)
 
     def call(stackup: Any, indices: Sequence[int], columns: Sequence[Any]) -> Any:
         records = tuple(items[i]._record for i in indices)
@@ -204,6 +210,7 @@ def longest_stub(
     side: Side | None = None,
     fidelity: Fidelity = "default",
     z_ref: float = 50.0,
+    annuli: int | None = None,
 ) -> StubLimit:
     """Longest tolerable stub: the barrel on one side, drilled back as little as the criteria allow.
 
@@ -212,9 +219,9 @@ def longest_stub(
     via : `Via`; the other side stays as it is
     signal, criteria : what it has to pass
     side : "top" or "bottom"; None: that of the via's only stub
-    fidelity, z_ref : as `Model`
+    fidelity, z_ref, annuli : as `Model`
 
-    Found by bracketing on drilled geometries, to 1 nm. Valid as the model is; the criteria are taken to get no better
+    Found by bracketing on drilled geometries, to 1 nm ("ladder" and "cavity": 0.1 um). Valid as the model is; the criteria are taken to get no better
     as the stub grows. Raises `NoSuchError` for a via without a stub there.
     """
     instance("via", via, Via, "a Via")
@@ -223,7 +230,7 @@ def longest_stub(
     code = _only_side(via) if side is None else SIDE.code("side", side)
     return StubLimit.of(
         _core.longest_stub(
-            via.stackup._handle, via._record, code, options(fidelity, z_ref), signal._record, criteria._record
+            via.stackup._handle, via._record, code, options(fidelity, z_ref, annuli), signal._record, criteria._record
         )
     )
 
@@ -236,6 +243,7 @@ def longest_stub_batch(
     sides: Side | Iterable[Side] | None = None,
     fidelity: Fidelity = "default",
     z_ref: float = 50.0,
+    annuli: int | None = None,
     errors: Errors = "raise",
 ) -> StubLimits:
     """Longest tolerable stubs of many vias, on any number of stackups; the GIL is released meanwhile.
@@ -245,13 +253,13 @@ def longest_stub_batch(
     vias : sequence of `Via`
     signals, criteria : one for all, or a sequence of as many as vias
     sides : "top" or "bottom" for all, or a sequence of as many as vias; None: that of each via's only stub
-    fidelity, z_ref : as `Model`
+    fidelity, z_ref, annuli : as `Model`
     errors : as `first_notch_batch`
     """
     items = _check_vias(vias)
     links = _records("signals", signals, Signal, len(items))
     wanted = _records("criteria", criteria, Criteria, len(items))
-    choice = options(fidelity, z_ref)
+    choice = options(fidelity, z_ref, annuli)
     if sides is None:
         codes: Any = [_only_side(via) for via in items]
     elif isinstance(sides, str):

@@ -13,7 +13,7 @@ from ._frozen import HOLE, SEVERITY, SIDE, Frozen, Immutable, Status, fill, inst
 from ._model import Fidelity, options
 from ._plan import Capability, Plan
 from ._stackup import Stackup, _layer
-from ._via import BackDrill, Pair, Pin, Ring, Via, Wall
+from ._via import BackDrill, Pair, Pin, Ring, Via, Vias, Wall
 
 Path = Union[str, "os.PathLike[str]"]
 
@@ -263,6 +263,7 @@ class Board(Immutable):
         *,
         fidelity: Fidelity = "default",
         z_ref: float = 50.0,
+        annuli: int | None = None,
     ) -> Plan:
         """Plans the board: decision number i is of hole number i. The GIL is released meanwhile.
 
@@ -270,7 +271,7 @@ class Board(Immutable):
         ----------
         rules : signal and criteria of each net; None: those that the board was read with
         capability : None: what the rules say
-        fidelity, z_ref : as `Model`
+        fidelity, z_ref, annuli : as `Model`
 
         Raises as `plan`; `NoSuchError` where there are no rules.
         """
@@ -280,8 +281,8 @@ class Board(Immutable):
         instance("rules", known, Rules, "Rules")
         instance("capability", capability, (Capability, type(None)), "a Capability or None")
         shop = None if capability is None else capability._record
-        handle = _core.board_plan(self._handle, known._handle, shop, options(fidelity, z_ref))
-        return Plan._of(handle, self._stackup, (_plan_again, (self, known, capability, fidelity, z_ref)))
+        handle = _core.board_plan(self._handle, known._handle, shop, options(fidelity, z_ref, annuli))
+        return Plan._of(handle, self._stackup, (_plan_again, (self, known, capability, fidelity, z_ref, annuli)))
 
     def write(self, plan: Plan, path: Path) -> None:
         """Writes the board file with the back-drills of a plan as standard Backdrill specifications.
@@ -323,11 +324,15 @@ def _load_again(path: str, rules: Rules | None, stackup: str | None) -> Board:
     return Board.load(path, rules, stackup=stackup)
 
 
-def _plan_again(board: Board, rules: Rules, capability: Capability | None, fidelity: Fidelity, z_ref: float) -> Plan:
-    return board.plan(rules, capability, fidelity=fidelity, z_ref=z_ref)
+def _plan_again(
+    board: Board, rules: Rules, capability: Capability | None, fidelity: Fidelity, z_ref: float, annuli: int | None = None
+) -> Plan:
+    return board.plan(rules, capability, fidelity=fidelity, z_ref=z_ref, annuli=annuli)
 
 
-def _returns(kind: int, distance: float, drill: float, count: int) -> Ring | Wall | None:
+def _returns(kind: int, distance: float, drill: float, count: int, places: Any) -> Ring | Vias | Wall | None:
+    if kind == _core.RETURN_VIAS and places:
+        return Vias(places, drill or None)
     if kind == _core.RETURN_VIAS:
         return Ring(count, distance, drill or None)
     return Wall(distance) if kind == _core.RETURN_WALL else None
@@ -337,6 +342,7 @@ def _via(stackup: Stackup, values: tuple[Any, ...]) -> Via:
     (
         start, end, drill, pad_start, pad_inner, pad_end, antipad, pads, antipads, clear, nonfunctional, return_kind,
         connects, return_distance, return_drill, return_count, pair_kind, pitch, backdrills, pin_side, pin_length,
+        places, outside_dk, lid_distance, hole_dk,
     ) = values
     pair_shared = pair_kind == _core.PAIR_SHARED
     backs: Any = [BackDrill(SIDE.word(side), depth, size) for side, depth, size in backdrills]  # type: ignore[arg-type]
@@ -349,7 +355,7 @@ def _via(stackup: Stackup, values: tuple[Any, ...]) -> Via:
         pad_end=pad_end,
         antipad=antipad,
         span=(start, end) if (start, end) != (0, 0) else None,
-        returns=_returns(return_kind, return_distance, return_drill, return_count),
+        returns=_returns(return_kind, return_distance, return_drill, return_count, places),
         pair=None if pair_kind == _core.PAIR_NONE else Pair(pitch, pair_shared),
         backdrills=backs,
         pin=Pin(SIDE.word(pin_side), pin_length) if pin_side else None,  # type: ignore[arg-type]
@@ -357,4 +363,7 @@ def _via(stackup: Stackup, values: tuple[Any, ...]) -> Via:
         antipads=dict(antipads),
         clear=dict(clear),
         nonfunctional_pads=nonfunctional == _core.PADS_KEPT,
+        outside_dk=outside_dk or 1.0,
+        lid_distance=lid_distance or None,
+        hole_dk=hole_dk or 1.0,
     )

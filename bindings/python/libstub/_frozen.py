@@ -70,7 +70,10 @@ SIDES = Words(top=_core.SIDE_TOP, bottom=_core.SIDE_BOTTOM, both=_core.SIDE_BOTH
 KIND = Words(
     dielectric=_core.LAYER_DIELECTRIC, signal=_core.LAYER_SIGNAL, plane=_core.LAYER_PLANE, mixed=_core.LAYER_MIXED
 )
-FIDELITY = Words(default=_core.FIDELITY_DEFAULT, bulk=_core.FIDELITY_BULK, loaded=_core.FIDELITY_LOADED)
+FIDELITY = Words(
+    default=_core.FIDELITY_DEFAULT, bulk=_core.FIDELITY_BULK, loaded=_core.FIDELITY_LOADED,
+    ladder=_core.FIDELITY_LADDER, cavity=_core.FIDELITY_CAVITY,
+)
 TOLERANCE = Words(worst=_core.TOLERANCE_WORST, rss=_core.TOLERANCE_RSS)
 HOLE = Words(via=_core.HOLE_VIA, pin=_core.HOLE_PIN)
 SEVERITY = Words(note=_core.NOTICE_NOTE, warning=_core.NOTICE_WARNING, refused=_core.NOTICE_REFUSED)

@@ -7,34 +7,39 @@ from dataclasses import dataclass
 from typing import Any, Literal
 
 from . import _arrays, _core
+from ._errors import ArgumentError
 from ._criteria import Criteria, Margin, Signal, SymbolRateLimit, margin_of
 from ._frozen import FIDELITY, Frozen, Immutable, fill, instance, nonzero
 from ._via import Stub, Via, stubs_of
 
 ALL_STUBS: int = _core.ALL_STUBS
 
-Fidelity = Literal["default", "bulk", "loaded"]
+Fidelity = Literal["default", "bulk", "loaded", "ladder", "cavity"]
 
 
 @functools.lru_cache(maxsize=64)
-def _cached_options(fidelity: str, z_ref: float) -> Any:
-    return _core.record("options", (FIDELITY.code("fidelity", fidelity), z_ref))
+def _cached_options(fidelity: str, z_ref: float, annuli: int) -> Any:
+    return _core.record("options", (FIDELITY.code("fidelity", fidelity), z_ref, annuli))
 
 
-def options(fidelity: Any, z_ref: Any) -> Any:
+def options(fidelity: Any, z_ref: Any, annuli: Any = None) -> Any:
     FIDELITY.code("fidelity", fidelity)  # also says that it must be text, where a cache says "unhashable"
-    return _cached_options(fidelity, nonzero("z_ref", z_ref))
+    count = 0 if annuli is None else _core.integer("annuli", annuli)
+    if annuli is not None and count == 0:  # which would mean the default to the C library
+        raise ArgumentError("annuli = 0: must be >= 2 and <= 12", _core.E_ARGUMENT, "annuli")
+    return _cached_options(fidelity, nonzero("z_ref", z_ref), count)
 
 
 @dataclass(frozen=True, repr=False)
 class StubLine(Frozen):
-    """A stub as a line, at 1 GHz.
+    """A stub as a line, at 1 GHz. Of "ladder" and "cavity", which are no lines: as the uniform line of the same first
+    notch that holds the same charge.
 
     fidelity: the one that made these numbers. dk_effective: (c/(4 L f1))^2 of the first notch, end effects included.
     dk_line: c^2 L' C' of the line without its end. impedance: sqrt(L'/C'), ohm. inductance: L', H/m. capacitance: C',
-    F/m. end_capacitance: at the open end, F. stated_error: largest error of the first notch found against full-wave
-    data for this fidelity, relative. f_range: top of the stated range, Hz: an antipad radius or a plate spacing is a tenth
-    of the wavelength in the laminate.
+    F/m. end_capacitance: at the open end, F. stated_error: of the first notch, relative: the largest found against
+    full-wave data for this fidelity; of "cavity" as `Notch.error`. f_range: top of the stated range, Hz: of "bulk" and
+    "loaded" where an antipad radius or a plate spacing is a tenth of the wavelength in the laminate; else 110e9.
     """
 
     fidelity: str
@@ -54,7 +59,9 @@ class Notch(Frozen):
 
     stub: number of the stub that makes it. f: minimum of |S21|, the notch as it is measured, Hz. f_series: zero of
     Im Zin next to it, Hz; NaN where there is none. depth_db: 20 log10 |S21| at f, negative, -300 at least. q: f over
-    the width of the notch 3 dB above its floor; NaN where it is not that deep, inf without loss.
+    the width of the notch 3 dB above its floor; NaN where it is not that deep, inf without loss. error: of f,
+    relative: "cavity" estimates it for each notch from a second model of fewer annuli; of the others the stated_error
+    of the line.
     """
 
     stub: int
@@ -62,6 +69,7 @@ class Notch(Frozen):
     f_series: float
     depth_db: float
     q: float
+    error: float
 
     def __repr__(self) -> str:
         return f"Notch({self.f / 1e9:.4g} GHz, {self.depth_db:.1f} dB, stub={self.stub}, q={self.q:.3g})"
@@ -73,25 +81,29 @@ class Model(Immutable):
     Parameters
     ----------
     via : `Via`. One without any stub compiles, and loads nothing
-    fidelity : "bulk": quarter wave in the laminate's through-plane Dk, coaxial impedance. "loaded": uniform line, L'
-        from the returns, C' from each cavity's via-plate capacitance, planes and pads; capacitance at the open end.
-        "default": the most accurate one of this version
+    fidelity : "cavity": radial modes of every plate pair and copper layer, matched at every opening: as full-wave as a
+        round barrel gets. "ladder": for sweeps: every cavity a line section with the radial wave of its plates for
+        inductance and a fitted capacitance. "loaded": uniform line, L' from the returns, C' from each cavity's via-plate
+        capacitance, planes and pads; capacitance at the open end. "bulk": quarter wave in the laminate's through-plane
+        Dk, coaxial impedance. "default": the most accurate one of this version: "cavity"
     z_ref : ohm, line that the stubs load; of a pair: of one of the two
+    annuli : of "cavity": annuli an opening is cut into at least, 2 to 12; None: 4
 
     Stubs are numbered from 0, top one first; `ALL_STUBS` stands for all of them in parallel, the path between them
     neglected. Raises `GeometryError`, `UnsupportedError` where the fidelity cannot compute a feature.
     """
 
-    __slots__ = ("_handle", "_via", "_fidelity", "_z_ref", "__weakref__")
+    __slots__ = ("_handle", "_via", "_fidelity", "_z_ref", "_annuli", "__weakref__")
     _handle: Any
     _via: Via
     _fidelity: Fidelity
     _z_ref: float
+    _annuli: int | None
 
-    def __init__(self, via: Via, *, fidelity: Fidelity = "default", z_ref: float = 50.0):
+    def __init__(self, via: Via, *, fidelity: Fidelity = "default", z_ref: float = 50.0, annuli: int | None = None):
         instance("via", via, Via, "a Via")
-        handle = _core.model_create(via.stackup._handle, via._record, options(fidelity, z_ref))
-        fill(self, _handle=handle, _via=via, _fidelity=fidelity, _z_ref=float(z_ref))
+        handle = _core.model_create(via.stackup._handle, via._record, options(fidelity, z_ref, annuli))
+        fill(self, _handle=handle, _via=via, _fidelity=fidelity, _z_ref=float(z_ref), _annuli=annuli)
 
     @property
     def via(self) -> Via:
@@ -107,6 +119,11 @@ class Model(Immutable):
     def z_ref(self) -> float:
         """The line that the stubs load, ohm."""
         return self._z_ref
+
+    @property
+    def annuli(self) -> int | None:
+        """The annuli asked for; None: the default."""
+        return self._annuli
 
     @property
     def stubs(self) -> list[Stub]:
@@ -132,15 +149,16 @@ class Model(Immutable):
 
         Parameters
         ----------
-        f : Hz, 1e6 to 1e12: a number, or an array of any shape
+        f : Hz, 1e6 to 1e12, of "ladder" and "cavity" to 200e9: a number, or an array of any shape
         stub : its number, or `ALL_STUBS`
         out : where to write to: a C-contiguous buffer of as many complex128, or of twice as many float64 (re, im
             pairs), apart from f; None: a new array
 
         Returns complex128 of the shape of f (a complex for a number), or out. Time factor exp(+jwt). Without NumPy a
-        `ComplexArray`. Gives one `RangeWarning` for frequencies above f_range of the line: an antipad radius or a
-        plate spacing is more than a tenth of the wavelength in the laminate. Raises `ArgumentError` with the index of a frequency out of range.
-        Source: Zin = Zs coth(gamma L) with the end load, Pozar, Microwave Engineering.
+        `ComplexArray`. Gives one `RangeWarning` for frequencies above f_range of the line. Raises `ArgumentError` with
+        the index of a frequency out of range. Source: of "bulk" and "loaded" Zin = Zs coth(gamma L) with the end load,
+        Pozar, Microwave Engineering; of the others docs/theory.md. A stub that hangs on a layer without plane is fed
+        through a thin plane there of the nearest plane's antipad.
         """
         return _arrays.evaluate(functools.partial(_core.model_zin, self._handle, stub), f, "Z", out)
 
@@ -167,7 +185,8 @@ class Model(Immutable):
         up_to : Hz
         stub : its number, or `ALL_STUBS`
 
-        The roots of the reactance found by bracketing, not multiples of the first. Empty where there are none. A
+        Minima of |S21| found by bracketing, not multiples of the first. Empty where there are none. "ladder" and
+        "cavity" find none above 200e9. A
         `RangeWarning` where there are notches beyond f_range of the line.
         """
         return [Notch(*values) for values in _core.model_notches(self._handle, stub, up_to, 2**31)]
@@ -182,12 +201,13 @@ class Model(Immutable):
         return SymbolRateLimit.of(_core.highest_symbol_rate(self._handle, criteria._record))
 
     def __reduce__(self) -> Any:
-        return _rebuild_model, (self._via, self._fidelity, self._z_ref)
+        return _rebuild_model, (self._via, self._fidelity, self._z_ref, self._annuli)
 
     def __repr__(self) -> str:
         stubs = ", ".join(map(repr, self.stubs)) or "no stub"
-        return f"Model({stubs}; fidelity={self._fidelity!r}, z_ref={self._z_ref:g} ohm)"
+        annuli = "" if self._annuli is None else f", annuli={self._annuli}"
+        return f"Model({stubs}; fidelity={self._fidelity!r}, z_ref={self._z_ref:g} ohm{annuli})"
 
 
-def _rebuild_model(via: Via, fidelity: Fidelity, z_ref: float) -> Model:
-    return Model(via, fidelity=fidelity, z_ref=z_ref)
+def _rebuild_model(via: Via, fidelity: Fidelity, z_ref: float, annuli: int | None = None) -> Model:
+    return Model(via, fidelity=fidelity, z_ref=z_ref, annuli=annuli)

@@ -368,6 +368,7 @@ def plan(
     *,
     fidelity: Fidelity = "default",
     z_ref: float = 50.0,
+    annuli: int | None = None,
 ) -> Plan:
     """Plans a board.
 
@@ -376,7 +377,7 @@ def plan(
     stackup : `Stackup` that all vias are on
     jobs : sequence of `Job`
     capability : `Capability` of the fabricator
-    fidelity, z_ref : as `Model`
+    fidelity, z_ref, annuli : as `Model`
 
     Vias in error do not stop it: they come out as Action.REFUSED. A via that meets its criteria is kept. Otherwise the
     one drill that makes it pass is taken, the shorter cut first; then both. Per side the fewest depths that serve all
@@ -393,9 +394,12 @@ def plan(
         if job.via.stackup is not stackup and job.via.stackup != stackup:
             raise GeometryError(f"jobs[{i}]: its via is on another stackup", _core.E_GEOMETRY, "jobs", i)
     records = tuple(job._record for job in items)
-    handle = _core.plan_create(stackup._handle, records, capability._record, options(fidelity, z_ref))
-    return Plan._of(handle, stackup, (_plan_again, (stackup, items, capability, fidelity, z_ref)))
+    handle = _core.plan_create(stackup._handle, records, capability._record, options(fidelity, z_ref, annuli))
+    return Plan._of(handle, stackup, (_plan_again, (stackup, items, capability, fidelity, z_ref, annuli)))
 
 
-def _plan_again(stackup: Stackup, jobs: Sequence[Job], capability: Capability, fidelity: Fidelity, z_ref: float) -> Plan:
-    return plan(stackup, jobs, capability, fidelity=fidelity, z_ref=z_ref)
+def _plan_again(
+    stackup: Stackup, jobs: Sequence[Job], capability: Capability, fidelity: Fidelity, z_ref: float,
+    annuli: int | None = None,
+) -> Plan:
+    return plan(stackup, jobs, capability, fidelity=fidelity, z_ref=z_ref, annuli=annuli)

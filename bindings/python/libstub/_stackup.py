@@ -23,7 +23,7 @@ class Layer(Frozen):
     name : 1 to 127 bytes; no other layer of the stackup has it
     kind : "dielectric"; "signal": copper with traces, no plane around a barrel; "plane": copper plane; "mixed":
         traces and plane areas, a plane where the via has an antipad
-    thickness : m, > 0
+    thickness : m, > 0; of copper also 0: a sheet
     tol_plus, tol_minus : m, >= 0
     dielectric : of a dielectric layer: needed. Of a copper layer: the resin between its copper; None: that of the
         dielectric above, at the top below

@@ -6,12 +6,12 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any, Iterable, Literal, Mapping, Sequence
 
 from . import _core
-from ._errors import GeometryError
+from ._errors import ArgumentError, GeometryError
 from ._frozen import SIDE, Frozen, Immutable, fill, instance, nonzero, number, show
 from ._stackup import LayerRef, Stackup, named_layers
 
 if TYPE_CHECKING:
-    from ._model import Model
+    from ._model import Fidelity, Model
 
 Side = Literal["top", "bottom"]
 
@@ -38,6 +38,47 @@ class Ring(Frozen):
         fill(self, count=_core.integer("count", self.count), distance=number("distance", self.distance))
         if self.drill is not None:
             fill(self, drill=nonzero("drill", self.drill))
+
+
+@dataclass(frozen=True, repr=False)
+class Vias(Frozen):
+    """Return vias at given places.
+
+    Parameters
+    ----------
+    positions : 1 to 1000 pairs x, y about the axis of the barrel, m. The partner of a pair is at (pitch, 0)
+    drill : diameter of the return vias, m; None: that of the via
+
+    >>> Vias([(0.65e-3, 0.0), (-0.65e-3, 0.0)])
+    Vias(positions=((0.65 mm, 0 m), (-0.65 mm, 0 m)))
+    """
+
+    positions: tuple[tuple[float, float], ...]
+    drill: float | None = None
+
+    def __post_init__(self) -> None:
+        if isinstance(self.positions, str) or not hasattr(self.positions, "__iter__"):
+            raise TypeError(f"positions: must be a sequence of pairs x, y, not {type(self.positions).__name__}")
+        fill(self, positions=tuple(_point(f"positions[{i}]", point) for i, point in enumerate(self.positions)))
+        if not 1 <= len(self.positions) <= 1000:
+            text = f"positions: {len(self.positions)} return vias: must be 1 to 1000"
+            raise ArgumentError(text, _core.E_ARGUMENT, "positions")
+        if self.drill is not None:
+            fill(self, drill=nonzero("drill", self.drill))
+
+    def __repr__(self) -> str:
+        places = [f"({show(x, 'm')}, {show(y, 'm')})" for x, y in self.positions]
+        drill = "" if self.drill is None else f", drill={show(self.drill, 'm')}"
+        return f"Vias(positions=({', '.join(places)}{',' if len(places) == 1 else ''}){drill})"
+
+
+def _point(name: str, point: Any) -> tuple[float, float]:
+    if isinstance(point, str) or not hasattr(point, "__iter__"):
+        raise TypeError(f"{name}: must be a pair x, y, not {type(point).__name__}")
+    values = tuple(number(name, value) for value in point)
+    if len(values) != 2:
+        raise ArgumentError(f"{name}: {len(values)} numbers: must be a pair x, y", _core.E_ARGUMENT, name)
+    return values
 
 
 @dataclass(frozen=True, repr=False)
@@ -168,14 +209,19 @@ class Via(Immutable):
     antipad : on every plane crossed that does not connect; None: mixed layers are no plane here, and planes need an
         entry in antipads
     span : (start, end), copper layers the barrel runs from and to; None: through, from the first copper to the last
-    returns : `Ring` of return vias, `Wall`, or None: no return near, the plate pairs carry it and radiate
+    returns : `Ring` of return vias, `Vias` at given places, `Wall`, or None: no return near, the plate pairs carry it
+        and radiate
     pair : `Pair`, or None
     backdrills : sequence of `BackDrill`, at most one a side
     pin : `Pin`, or None
     pads : {layer: diameter} that replace the pads above; 0: no pad
-    antipads : {layer: diameter} that replace the antipad; 0: no plane at the via on this layer
+    antipads : {layer: diameter} that replace the antipad; 0: no plane at the via on this layer; on a plane that connects:
+        the opening that the signal comes through
     clear : {layer: diameter} free of other copper around the axis (for the drill bit), where known
     nonfunctional_pads : pads on inner layers that do not connect are kept
+    outside_dk : of what lies beyond the outer copper, 1 to 1000
+    lid_distance : from the outer copper to a conducting lid; None: open space
+    hole_dk : of what fills a drilled hole, 1 to 1000
 
     Raises `ArgumentError`, `GeometryError` or `NoSuchError` with the member, value and layer.
 
@@ -193,7 +239,8 @@ class Via(Immutable):
 
     __slots__ = (
         "stackup", "drill", "connects", "pad_start", "pad_inner", "pad_end", "antipad", "span", "returns", "pair",
-        "backdrills", "pin", "_pads", "_antipads", "_clear", "nonfunctional_pads", "_record", "__weakref__",
+        "backdrills", "pin", "_pads", "_antipads", "_clear", "nonfunctional_pads",
+        "outside_dk", "lid_distance", "hole_dk", "_record", "__weakref__",
     )
     stackup: Stackup
     drill: float
@@ -203,11 +250,14 @@ class Via(Immutable):
     pad_end: float
     antipad: float
     span: tuple[str, str] | None
-    returns: Ring | Wall | None
+    returns: Ring | Vias | Wall | None
     pair: Pair | None
     backdrills: tuple[BackDrill, ...]
     pin: Pin | None
     nonfunctional_pads: bool
+    outside_dk: float
+    lid_distance: float | None
+    hole_dk: float
     _pads: tuple[tuple[str, float], ...]
     _antipads: tuple[tuple[str, float], ...]
     _clear: tuple[tuple[str, float], ...]
@@ -225,7 +275,7 @@ class Via(Immutable):
         pad_end: float | None = None,
         antipad: float | None = None,
         span: tuple[LayerRef, LayerRef] | None = None,
-        returns: Ring | Wall | None = None,
+        returns: Ring | Vias | Wall | None = None,
         pair: Pair | None = None,
         backdrills: Sequence[BackDrill] = (),
         pin: Pin | None = None,
@@ -233,9 +283,12 @@ class Via(Immutable):
         antipads: Mapping[Any, float] | None = None,
         clear: Mapping[Any, float] | None = None,
         nonfunctional_pads: bool = False,
+        outside_dk: float = 1.0,
+        lid_distance: float | None = None,
+        hole_dk: float = 1.0,
     ):
         instance("stackup", stackup, Stackup, "a Stackup")
-        instance("returns", returns, (Ring, Wall, type(None)), "a Ring, a Wall or None")
+        instance("returns", returns, (Ring, Vias, Wall, type(None)), "a Ring, Vias, a Wall or None")
         instance("pair", pair, (Pair, type(None)), "a Pair or None")
         instance("pin", pin, (Pin, type(None)), "a Pin or None")
         instance("nonfunctional_pads", nonfunctional_pads, bool, "True or False")
@@ -261,6 +314,9 @@ class Via(Immutable):
             _antipads=_values_on_layers(stackup, "antipads", antipads),
             _clear=_values_on_layers(stackup, "clear", clear),
             nonfunctional_pads=nonfunctional_pads,
+            outside_dk=nonzero("outside_dk", outside_dk),
+            lid_distance=None if lid_distance is None else nonzero("lid_distance", lid_distance),
+            hole_dk=nonzero("hole_dk", hole_dk),
         )
         record = _core.record("via", self._values())
         _core.via_check(stackup._handle, record)
@@ -271,12 +327,14 @@ class Via(Immutable):
         index = self.stackup.index
         start, end = (0, 0) if self.span is None else (index(self.span[0]), index(self.span[1]))
         ring = self.returns if isinstance(self.returns, Ring) else None
+        places = self.returns.positions if isinstance(self.returns, Vias) else ()
+        drill = self.returns.drill if isinstance(self.returns, (Ring, Vias)) else None
         pair = _core.PAIR_NONE
         if self.pair is not None:
             pair = _core.PAIR_SHARED if self.pair.shared else _core.PAIR_SEPARATE
         kind = _core.RETURN_NONE
         if self.returns is not None:
-            kind = _core.RETURN_VIAS if ring else _core.RETURN_WALL
+            kind = _core.RETURN_WALL if isinstance(self.returns, Wall) else _core.RETURN_VIAS
         return (
             start,
             end,
@@ -291,14 +349,18 @@ class Via(Immutable):
             _core.PADS_KEPT if self.nonfunctional_pads else _core.PADS_REMOVED,
             kind,
             tuple(index(layer) for layer in self.connects),
-            self.returns.distance if self.returns is not None else 0.0,
-            ring.drill if ring is not None and ring.drill is not None else 0.0,
-            ring.count if ring is not None else 0,
+            self.returns.distance if isinstance(self.returns, (Ring, Wall)) else 0.0,
+            drill if drill is not None else 0.0,
+            ring.count if ring is not None else len(places),
             pair,
             self.pair.pitch if self.pair is not None else 0.0,
             tuple((SIDE.code("side", b.side), b.depth, b.diameter) for b in self.backdrills),
             SIDE.code("side", self.pin.side) if self.pin is not None else 0,
             self.pin.length if self.pin is not None else 0.0,
+            places,
+            self.outside_dk,
+            self.lid_distance if self.lid_distance is not None else 0.0,
+            self.hole_dk,
         )
 
     @property
@@ -321,11 +383,11 @@ class Via(Immutable):
         """The stub pieces, top one first: none, one or two `Stub`."""
         return stubs_of(self.stackup, _core.via_stubs(self.stackup._handle, self._record))
 
-    def model(self, *, fidelity: Literal["default", "bulk", "loaded"] = "default", z_ref: float = 50.0) -> Model:
-        """The electrical model of this via, compiled; fidelity and z_ref (ohm) as `Model`."""
+    def model(self, *, fidelity: Fidelity = "default", z_ref: float = 50.0, annuli: int | None = None) -> Model:
+        """The electrical model of this via, compiled; fidelity, z_ref (ohm) and annuli as `Model`."""
         from ._model import Model
 
-        return Model(self, fidelity=fidelity, z_ref=z_ref)
+        return Model(self, fidelity=fidelity, z_ref=z_ref, annuli=annuli)
 
     def replace(self, **changes: Any) -> Via:
         """The same via but for some arguments, also on another stackup (layers are carried over by name).
@@ -344,14 +406,15 @@ class Via(Immutable):
             "pad_inner": self.pad_inner, "pad_end": self.pad_end, "antipad": self.antipad, "span": self.span,
             "returns": self.returns, "pair": self.pair, "backdrills": self.backdrills, "pin": self.pin,
             "pads": self.pads, "antipads": self.antipads, "clear": self.clear,
-            "nonfunctional_pads": self.nonfunctional_pads,
+            "nonfunctional_pads": self.nonfunctional_pads, "outside_dk": self.outside_dk,
+            "lid_distance": self.lid_distance, "hole_dk": self.hole_dk,
         }
 
     def _key(self) -> tuple[Any, ...]:
         return (
             self.stackup, self.drill, self.connects, self.pad_start, self.pad_inner, self.pad_end, self.antipad,
             self.span, self.returns, self.pair, self.backdrills, self.pin, self._pads, self._antipads, self._clear,
-            self.nonfunctional_pads,
+            self.nonfunctional_pads, self.outside_dk, self.lid_distance, self.hole_dk,
         )
 
     def __eq__(self, other: object) -> bool:
@@ -382,6 +445,11 @@ class Via(Immutable):
         for name in ("returns", "pair", "backdrills", "pin", "nonfunctional_pads"):
             if getattr(self, name):
                 parts.append(f"{name}={getattr(self, name)!r}")
+        for name in ("outside_dk", "hole_dk"):
+            if getattr(self, name) != 1.0:
+                parts.append(f"{name}={getattr(self, name):g}")
+        if self.lid_distance is not None:
+            parts.append(f"lid_distance={show(self.lid_distance, 'm')}")
         return f"Via({', '.join(parts)})"
 
 

@@ -49,7 +49,8 @@ enum {  /* inputs first */
 typedef struct core_member {
     const char *name;
     char        type;         /* d double, i int32, l int64, s text, r pointer to a struct, n struct inside,
-                                 D doubles, I int32s, L values on layers, B back-drills (pointer and count) */
+                                 D doubles, I int32s, L values on layers, B back-drills (pointer and count),
+                                 P points: two doubles each (pointer and an int32 count, which is a member too) */
     int         shape;        /* of r and n                                                             */
     size_t      offset, count_offset;
 } core_member;

@@ -67,11 +67,20 @@ static int pack_backdrill(core_state *state, PyObject *item, const char *name, l
     return core_number(state, diameter, name, &out->diameter);
 }
 
+static int pack_point(core_state *state, PyObject *item, const char *name, double *out)
+{
+    PyObject *x, *y;
+    if (!PyTuple_Check(item) || !PyArg_ParseTuple(item, "OO", &x, &y))
+        return core_bad_argument(state, name, "%s: must be pairs of x and y", name);
+    return core_number(state, x, name, &out[0]) < 0 ? -1 : core_number(state, y, name, &out[1]);
+}
+
 static int pack_item(core_state *state, PyObject *item, const core_member *member, void *array, size_t i)
 {
     switch (member->type) {
     case 'D': return core_number(state, item, member->name, (double *)array + i);
     case 'I': return core_int(state, item, member->name, (int32_t *)array + i);
+    case 'P': return pack_point(state, item, member->name, (double *)array + 2 * i);
     case 'L': return pack_layer_value(state, item, member->name, (lstub_on_layer *)array + i);
     default:  return pack_backdrill(state, item, member->name, (lstub_backdrill *)array + i);
     }
@@ -79,7 +88,7 @@ static int pack_item(core_state *state, PyObject *item, const core_member *membe
 
 static size_t item_size(char type)
 {
-    return type == 'D' ? sizeof(double) : type == 'I' ? sizeof(int32_t)
+    return type == 'D' ? sizeof(double) : type == 'P' ? 2 * sizeof(double) : type == 'I' ? sizeof(int32_t)
          : type == 'L' ? sizeof(lstub_on_layer) : sizeof(lstub_backdrill);
 }
 
@@ -102,7 +111,11 @@ static int pack_array(core_state *state, record *rec, const core_member *member,
         if (pack_item(state, PyTuple_GetItem(value, (Py_ssize_t)i), member, array, i) < 0)
             return -1;
     memcpy(base + member->offset, &array, sizeof array);
-    memcpy(base + member->count_offset, &count, sizeof count);
+    if (member->type == 'P') {
+        int32_t points = (int32_t)count;
+        memcpy(base + member->count_offset, &points, sizeof points);
+    } else
+        memcpy(base + member->count_offset, &count, sizeof count);
     return 0;
 }
 

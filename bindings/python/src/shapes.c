@@ -30,6 +30,8 @@ static const core_member via[] = {
     VALUE(lstub_via, return_drill, 'd'), VALUE(lstub_via, return_count, 'i'), VALUE(lstub_via, pair_kind, 'i'),
     VALUE(lstub_via, pair_pitch, 'd'), ARRAY(lstub_via, backdrills, backdrill_count, 'B'),
     VALUE(lstub_via, pin_side, 'i'), VALUE(lstub_via, pin_length, 'd'),
+    ARRAY(lstub_via, return_xy, return_count, 'P'), VALUE(lstub_via, outside_dk, 'd'),
+    VALUE(lstub_via, lid_distance, 'd'), VALUE(lstub_via, hole_dk, 'd'),
 };
 static const core_member signal[] = {
     VALUE(lstub_signal, symbol_rate, 'd'), VALUE(lstub_signal, levels, 'i'),
@@ -46,6 +48,7 @@ static const core_member capability[] = {
 };
 static const core_member options[] = {
     VALUE(lstub_model_options, fidelity, 'i'), VALUE(lstub_model_options, z_ref, 'd'),
+    VALUE(lstub_model_options, annuli, 'i'),
 };
 static const core_member job[] = {
     NESTED(lstub_job, via, 'r', SHAPE_VIA), NESTED(lstub_job, signal, 'r', SHAPE_SIGNAL),
@@ -72,7 +75,7 @@ static const core_member line[] = {
 };
 static const core_member notch[] = {
     VALUE(lstub_notch, stub, 'i'), VALUE(lstub_notch, f, 'd'), VALUE(lstub_notch, f_series, 'd'),
-    VALUE(lstub_notch, depth_db, 'd'), VALUE(lstub_notch, q, 'd'),
+    VALUE(lstub_notch, depth_db, 'd'), VALUE(lstub_notch, q, 'd'), VALUE(lstub_notch, error, 'd'),
 };
 static const core_member margin[] = {
     VALUE(lstub_margin, pass, 'i'), VALUE(lstub_margin, limited_by, 'i'), VALUE(lstub_margin, nyquist, 'd'),
@@ -153,6 +156,11 @@ int core_shape_named(core_state *state, const char *name)
 static size_t count_at(const char *base, const core_member *member)
 {
     size_t count;
+    int32_t points;
+    if (member->type == 'P') {
+        memcpy(&points, base + member->count_offset, sizeof points);
+        return points > 0 ? (size_t)points : 0;
+    }
     memcpy(&count, base + member->count_offset, sizeof count);
     return count;
 }
@@ -161,6 +169,7 @@ static PyObject *unpack_item(char type, const void *array, size_t i)
 {
     switch (type) {
     case 'D': return PyFloat_FromDouble(((const double *)array)[i]);
+    case 'P': return Py_BuildValue("(dd)", ((const double *)array)[2 * i], ((const double *)array)[2 * i + 1]);
     case 'I': return PyLong_FromLong(((const int32_t *)array)[i]);
     case 'L': {
         const lstub_on_layer *item = (const lstub_on_layer *)array + i;
@@ -209,7 +218,7 @@ static PyObject *unpack_member(const core_member *member, const char *base)
     if (member->type == 's')
         return core_text(pointer != NULL ? pointer : "");
     if (member->type != 'r')
-        return unpack_array(member->type, pointer, count_at(base, member));
+        return unpack_array(member->type, pointer, pointer != NULL ? count_at(base, member) : 0);
     if (pointer == NULL)
         Py_RETURN_NONE;
     return core_unpack(member->shape, pointer);

@@ -53,6 +53,7 @@ build = {
         "libstub/model/site.c",
         "libstub/criteria/judge.c",
         "libstub/criteria/limit.c",
+        "libstub/plan/alike.c",
         "libstub/plan/decide.c",
         "libstub/plan/plan.c",
         "libstub/plan/room.c",

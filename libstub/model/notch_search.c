@@ -8,7 +8,6 @@
 
 #include "num/root.h"
 
-#define BEND     8e-3       /* |G| that the middle of an interval may be off                             */
 #define FINEST   1e-7       /* shortest interval, relative                                              */
 #define DEPTH    40
 
@@ -17,7 +16,7 @@ typedef struct sample { double f, s2; cplx z, g; } sample;       /* s2 = |S21|^2
 typedef struct search {
     lstub__zin_at *zin;
     const void *model;
-    double r, found;        /* found: HUGE_VAL until then */
+    double r, bend, found;  /* found: HUGE_VAL until then */
     int    failed;
     sample last[2];         /* the two samples before, in rising frequency */
     int    known;
@@ -43,12 +42,12 @@ static double power(double f, const void *context)
 }
 
 /* Zero of the reactance between a (below zero) and b (not below): false position with halving (Illinois). */
-static double reactance_zero(search *s, sample a, sample b)
+static double reactance_zero(search *s, sample a, sample b, double tol)
 {
     double fa = a.z.im, fb = b.z.im, x = b.f;
     int k, side = 0;
 
-    for (k = 0; k < 100 && b.f - a.f > 1e-14 * b.f; k++) {
+    for (k = 0; k < 100 && b.f - a.f > tol * b.f; k++) {
         sample m;
         x = a.f - fa * (b.f - a.f) / (fb - fa);
         if (!(x > a.f && x < b.f) || k % 8 == 7) x = 0.5 * (a.f + b.f);
@@ -63,14 +62,19 @@ static double reactance_zero(search *s, sample a, sample b)
 /* Deep notches lie at the zero of the reactance, to rounding where nothing is lost, close by in a laminate. */
 static double settle(search *s, sample a, sample m, sample b)
 {
-    double zero = NAN, reach = 1e-3;
+    const double coarse = 1e-7, fine = 1e-14;
+    sample below = m.z.im >= 0.0 ? a : m, above = m.z.im >= 0.0 ? m : b;
 
-    if (a.z.im < 0.0 && m.z.im >= 0.0) zero = reactance_zero(s, a, m);
-    else if (m.z.im < 0.0 && b.z.im >= 0.0) zero = reactance_zero(s, m, b);
-    if (!isnan(zero)) {
+    if (below.z.im < 0.0 && above.z.im >= 0.0) {
+        double zero = reactance_zero(s, below, above, coarse);
         sample z = look(s, zero);
-        if (z.s2 < 1e-20) return zero;
-        if (z.s2 < 1e-2) return lstub__dip(power, s, fmax(a.f, zero * (1.0 - reach)), fmin(b.f, zero * (1.0 + reach)));
+        if (z.s2 < 1e-9) return reactance_zero(s, below, above, fine);
+        for (double reach = 1e-3; z.s2 < 1e-2 && reach < 0.1; reach *= 5.0) {
+            double low = zero * (1.0 - reach), high = zero * (1.0 + 0.5 * reach), dip;
+            if (low < a.f || high > b.f) break;
+            dip = lstub__dip(power, s, low, high);
+            if (dip - low > 0.1 * reach * zero && high - dip > 0.1 * reach * zero) return dip;
+        }
     }
     return lstub__dip(power, s, a.f, b.f);
 }
@@ -92,7 +96,7 @@ static void divide(search *s, sample a, sample b, int depth)
     if (s->failed || s->found < HUGE_VAL) return;
     m = look(s, 0.5 * (a.f + b.f));
     off = cplx_of(m.g.re - 0.5 * (a.g.re + b.g.re), m.g.im - 0.5 * (a.g.im + b.g.im));
-    if (depth < DEPTH && b.f - a.f > FINEST * b.f && cplx_norm(off) > BEND * BEND
+    if (depth < DEPTH && b.f - a.f > FINEST * b.f && cplx_norm(off) > s->bend * s->bend
         && (cplx_norm(off) > 0.01 || b.f - a.f > 1e-3 * b.f)) {
         divide(s, a, m, depth + 1);
         divide(s, m, b, depth + 1);
@@ -102,7 +106,8 @@ static void divide(search *s, sample a, sample b, int depth)
     visit(s, b);
 }
 
-double lstub__notch_search(lstub__zin_at *zin, const void *model, double z_ref, double f_low, double f_high, double step)
+double lstub__notch_search(lstub__zin_at *zin, const void *model, double z_ref, double f_low, double f_high, double step,
+                           double bend)
 {
     search s;
     sample a, b;
@@ -112,6 +117,7 @@ double lstub__notch_search(lstub__zin_at *zin, const void *model, double z_ref, 
     s.model = model;
     s.r = 0.5 * z_ref;
     s.found = HUGE_VAL;
+    s.bend = bend;
     s.failed = s.known = 0;
     a = look(&s, f_low);
     visit(&s, a);

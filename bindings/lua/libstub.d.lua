@@ -548,7 +548,7 @@ function model:zin(freq, options) end
 ---@return libstub.complex? s21, string? message, integer? code, integer[]? status
 function model:s21(freq, options) end
 
----Loss that the stubs add, dB >= 0: -20 log10 |S21|. For one frequency: a number.
+---Loss that the stubs add, dB, 0 to 300: -20 log10 |S21|. For one frequency: a number.
 ---@param freq number|number[]|libstub.array Hz, 1e6 to 1e12; ladder and cavity: to 200e9
 ---@param options? libstub.stub_option
 ---@return libstub.array? loss dB

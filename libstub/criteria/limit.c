@@ -176,7 +176,7 @@ static int32_t longest(const lstub_stackup *stackup, const lstub_via *via, int32
         return status;
     out->stub_length = site.arm[arm].length;
     out->margin = out->limited_by == LSTUB_LIMIT_NONE ? 0.0 : out->length - out->stub_length;
-    double top = site.arm[arm].f_range;
+    double top = lstub__branch_range(&site, arm);
     if (fmax(demand.nyquist, demand.least_f1) > top)
         return lstub__fail(err, LSTUB_W_RANGE, "signal", -1, "limit found beyond the stated range of this model, which ends at %.6g Hz", top);
     return LSTUB_OK;

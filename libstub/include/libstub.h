@@ -313,7 +313,8 @@ typedef struct lstub_via {
     double  pin_length;            /* press-fit: least barrel to keep from that side's surface, m; 0: the pin
                                       is soldered and fills the hole, which is then never drilled      */
     const double *return_xy;       /* m, [2 return_count]: x, y of the return vias about the axis; null:
-                                      evenly spread on the circle of radius return_distance            */
+                                      evenly spread on the circle of radius return_distance. The partner of
+                                      a pair is at (pair_pitch, 0); the mirror images of its vias are added */
     double  outside_dk;            /* of what lies beyond the outer copper; 0: 1, air        1 to 1000 */
     double  lid_distance;          /* m, from the outer copper to a conducting lid; 0: open space      */
     double  hole_dk;               /* of what fills a drilled hole; 0: 1, air                1 to 1000 */
@@ -498,7 +499,8 @@ typedef struct lstub_stub_limit {
 
 /*
 ** Longest tolerable stub: the barrel on `side`, drilled back as little as the criteria allow, the other side
-** as it is. Found by bracketing on drilled geometries, to 1 nm (LADDER, CAVITY: 0.1 um). A via without a stub there: LSTUB_E_NONE.
+** as it is. Found by bracketing on drilled geometries, to 1 nm (LADDER, CAVITY: 0.1 um, for a bit 0.2 mm over the
+** drill). A via without a stub there: LSTUB_E_NONE.
 ** Valid as the model is; the criteria are taken to get no better as the stub grows.
 */
 LSTUB_API int32_t lstub_longest_stub(const lstub_stackup *stackup, const lstub_via *via, int32_t side,

@@ -102,38 +102,62 @@ static int32_t give_layers(lstub__barrel *b, const lstub__site *site, int arm, l
     return LSTUB_OK;
 }
 
-/*
-** Return vias. Evenly spread ones are one via and a number, unless a partner breaks the symmetry: then they stand where
-** the partner, at (pair_pitch, 0), is midway between two, and those that would meet it are left out.
-*/
-static int32_t give_vias(lstub__barrel *b, const lstub_via *in, lstub_error *err)
+#define PAIR_RING 6           /* evenly spread vias around a barrel of a pair, at most: their places are not known anyway */
+
+/* Adds a via unless it meets one that is there; a status. */
+static int32_t add_via(lstub__barrel *b, const lstub_via *in, double x, double y, lstub_error *err)
 {
-    int paired = in->pair_kind != LSTUB_PAIR_NONE;
-    if (in->return_xy == NULL && !paired) {
-        b->via[0].x = in->return_distance;
-        b->via[0].y = 0.0;
-        b->via[0].radius = 0.5 * in->return_drill;
-        b->shape.returns.vias = 1;
-        b->shape.returns.even = in->return_count;
-        return LSTUB_OK;
-    }
-    for (int32_t i = 0; i < in->return_count; i++) {
-        double angle = LSTUB_PI * (2 * i + 1) / in->return_count;
+    lstub__cav_returns *r = &b->shape.returns;
+    for (int i = 0; i < r->vias; i++)
+        if (hypot(x - b->via[i].x, y - b->via[i].y) <= in->return_drill)
+            return LSTUB_OK;
+    if (r->vias == LSTUB__CAV_VIAS)
+        return lstub__fail(err, LSTUB_E_UNSUPPORTED, "return_count", -1, "return_count = %ld: more than %d return vias here, mirror images of a "
+                           "pair included, are not computed", (long)in->return_count, LSTUB__CAV_VIAS);
+    b->via[r->vias].x = x;
+    b->via[r->vias].y = y;
+    b->via[r->vias++].radius = 0.5 * in->return_drill;
+    return LSTUB_OK;
+}
+
+/*
+** Vias around a pair, whose partner is at (pair_pitch, 0). Odd mode is a mode only of a pattern that its mirror image leaves
+** as it is: every via brings its image. Evenly spread ones stand so that the partner is midway between two.
+*/
+static int32_t give_pair_vias(lstub__barrel *b, const lstub_via *in, lstub_error *err)
+{
+    int32_t count = in->return_xy == NULL && in->return_count > PAIR_RING ? PAIR_RING : in->return_count;
+    double reach = 0.5 * (in->drill + in->return_drill);
+    for (int32_t i = 0; i < count; i++) {
+        double angle = LSTUB_PI * (2 * i + 1) / count;
         double x = in->return_xy != NULL ? in->return_xy[2 * i] : in->return_distance * cos(angle);
         double y = in->return_xy != NULL ? in->return_xy[2 * i + 1] : in->return_distance * sin(angle);
-        if (paired && hypot(x - in->pair_pitch, y) <= 0.5 * (in->drill + in->return_drill)) {
+        if (hypot(x - in->pair_pitch, y) <= reach) {
             if (in->return_xy == NULL)
                 continue;
             return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: touches the partner at %.9g m",
                                (long)i, x, y, in->pair_pitch);
         }
-        if (b->shape.returns.vias == LSTUB__CAV_VIAS)
-            return lstub__fail(err, LSTUB_E_UNSUPPORTED, "return_count", -1, "return_count = %ld: this fidelity takes %d here",
-                               (long)in->return_count, LSTUB__CAV_VIAS);
-        lstub__cav_via *v = &b->via[b->shape.returns.vias++];
-        v->x = x;
-        v->y = y;
-        v->radius = 0.5 * in->return_drill;
+        int32_t status = add_via(b, in, x, y, err);
+        if (status == LSTUB_OK)
+            status = add_via(b, in, in->pair_pitch - x, y, err);
+        if (status < 0)
+            return status;
+    }
+    return LSTUB_OK;
+}
+
+/* Vias around a single barrel; evenly spread ones are one via and a number. */
+static int32_t give_vias(lstub__barrel *b, const lstub_via *in, lstub_error *err)
+{
+    if (in->return_xy == NULL) {
+        b->shape.returns.even = in->return_count;
+        return add_via(b, in, in->return_distance, 0.0, err);
+    }
+    for (int32_t i = 0; i < in->return_count; i++) {
+        int32_t status = add_via(b, in, in->return_xy[2 * i], in->return_xy[2 * i + 1], err);
+        if (status < 0)
+            return status;
     }
     return LSTUB_OK;
 }
@@ -155,7 +179,7 @@ static int32_t give_returns(lstub__barrel *b, const lstub_via *in, lstub_error *
         b->shape.outer = LSTUB__CAV_WALL;
     if (in->return_kind == LSTUB_RETURN_VIAS) {
         b->shape.outer = LSTUB__CAV_RING;
-        status = give_vias(b, in, err);
+        status = in->pair_kind != LSTUB_PAIR_NONE ? give_pair_vias(b, in, err) : give_vias(b, in, err);
     }
     return status;
 }

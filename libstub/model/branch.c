@@ -10,7 +10,8 @@
 #define CAVITY_TOP   200e9    /* Hz, where it still answers, and looks for a first notch                    */
 #define LADDER_ERROR 0.036    /* of the first notch on the full-wave cells, docs/theory.md                  */
 #define LADDER_WIDE  0.13     /* outside lstub__ladder_valid, on random cells against the cavity model      */
-#define COARSE       2        /* annuli of the second model that says how far the first one may be off      */
+#define COARSE       2        /* annuli of the second model that says how far the first one may be off ...  */
+#define FINER        4        /* ... and of the one that says it of so coarse a first one                   */
 
 static int32_t compile(const lstub__branch *branch, const lstub__site *site, int annuli, lstub__cavity **out, lstub_error *err)
 {
@@ -23,12 +24,17 @@ static int32_t compile(const lstub__branch *branch, const lstub__site *site, int
     return lstub__fail(err, LSTUB_E_UNSUPPORTED, "via", -1, "via: the barrel has more layers, rims or media than the cavity model takes");
 }
 
+double lstub__branch_range(const lstub__site *site, int arm)
+{
+    return site->fidelity <= LSTUB_FIDELITY_LOADED ? site->arm[arm].f_range : CAVITY_RANGE;
+}
+
 void lstub__branch_closed(lstub__branch *branch, const lstub__site *site, int arm, double length)
 {
     branch->fidelity = site->fidelity;
     branch->length = length;
     branch->barrel = NULL;
-    branch->cavity = branch->coarse = NULL;
+    branch->cavity = branch->other = NULL;
     lstub__site_line(site, arm, length, &branch->line);
     branch->lossless = branch->line.lossless;
     branch->f_range = branch->line.f_range;
@@ -44,7 +50,7 @@ int32_t lstub__branch_make(lstub__branch *branch, const lstub__site *site, int a
         return LSTUB_OK;
     if ((status = lstub__barrel_make(&branch->barrel, site, arm, length, err)) < 0)
         return status;
-    branch->f_range = CAVITY_RANGE;
+    branch->f_range = lstub__branch_range(site, arm);
     branch->f_top = CAVITY_TOP;
     branch->lossless = branch->lossless && site->via.in.return_kind == LSTUB_RETURN_WALL && site->via.in.lid_distance > 0.0;
     if (site->fidelity == LSTUB_FIDELITY_LADDER) {
@@ -65,15 +71,16 @@ int32_t lstub__branch_make(lstub__branch *branch, const lstub__site *site, int a
 
 int32_t lstub__branch_estimate(lstub__branch *branch, const lstub__site *site, lstub_error *err)
 {
-    return branch->cavity == NULL ? LSTUB_OK : compile(branch, site, COARSE, &branch->coarse, err);
+    branch->finer = site->annuli <= COARSE;
+    return branch->cavity == NULL ? LSTUB_OK : compile(branch, site, site->annuli > COARSE ? COARSE : FINER, &branch->other, err);
 }
 
 void lstub__branch_done(lstub__branch *branch)
 {
-    lstub__cavity_destroy(branch->coarse);
+    lstub__cavity_destroy(branch->other);
     lstub__cavity_destroy(branch->cavity);
     lstub__barrel_free(branch->barrel);
-    branch->cavity = branch->coarse = NULL;
+    branch->cavity = branch->other = NULL;
     branch->barrel = NULL;
 }
 
@@ -104,28 +111,29 @@ double lstub__branch_notch(const lstub__branch *branch, double z_ref, double aft
     return lstub__notch_search(impedance, branch, z_ref, low, top, fmin(0.1 * expected, 5e9), LSTUB__BEND_FINE);
 }
 
-typedef struct coarse_view {
-    lstub__branch branch;       /* with the coarse model in place of the fine one */
+typedef struct other_view {
+    lstub__branch branch;       /* with the other model in place of its own */
     double z_ref;
-} coarse_view;
+} other_view;
 
-static double coarse_power(double f, const void *context)
+static double other_power(double f, const void *context)
 {
-    const coarse_view *c = context;
+    const other_view *c = context;
     return lstub__branches_power(&c->branch, 1, c->z_ref, f);
 }
 
-/* Half of what the coarse model is off, and 2e-4 for what both share: covers 98 of 100 random cells (docs/theory.md). */
+/* Half of what a coarse model is off, all of what a finer one is, and 2e-4 for what both share: covers 98 of 100 random
+** cells (docs/theory.md). */
 double lstub__branch_notch_error(const lstub__branch *branch, double z_ref, double f)
 {
     const double reach = 0.05;
-    if (branch->coarse == NULL)
+    if (branch->other == NULL)
         return branch->stated_error;
-    coarse_view c = {*branch, z_ref};
-    c.branch.cavity = branch->coarse;
-    double low = f * (1.0 - reach), high = f * (1.0 + reach), found = lstub__dip(coarse_power, &c, low, high);
+    other_view c = {*branch, z_ref};
+    c.branch.cavity = branch->other;
+    double low = f * (1.0 - reach), high = f * (1.0 + reach), found = lstub__dip(other_power, &c, low, high);
     int inside = found > low * (1.0 + 1e-3) && found < high * (1.0 - 1e-3);
-    return (inside ? 0.5 * fabs(found / f - 1.0) : reach) + 2e-4;
+    return (inside ? (branch->finer ? 1.0 : 0.5) * fabs(found / f - 1.0) : reach) + 2e-4;
 }
 
 /*

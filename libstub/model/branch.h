@@ -14,11 +14,14 @@ typedef struct lstub__branch {
     double      stated_error;      /* of the first notch, relative; NaN: estimated for each                     */
     lstub__line line;              /* the closed form; for other fidelities where their searches begin          */
     lstub__barrel *barrel;         /* LADDER and CAVITY, else null                                              */
-    lstub__cavity *cavity, *coarse;/* CAVITY, else null; coarse: once lstub__branch_estimate has made it        */
+    lstub__cavity *cavity, *other; /* CAVITY, else null; other: once lstub__branch_estimate has made it ...     */
+    int         finer;             /* ... which then has more annuli, not fewer                                 */
 } lstub__branch;
 
 /* The stub on an arm of the site cut to `length` (0 < length <= full; full: not drilled). Undone by _done. */
 int32_t lstub__branch_make(lstub__branch *branch, const lstub__site *site, int arm, double length, lstub_error *err);
+/* Top of the range that the site's fidelity states for an arm, Hz. */
+double  lstub__branch_range(const lstub__site *site, int arm);
 /* The same as its closed form alone: never fails, owns nothing. */
 void    lstub__branch_closed(lstub__branch *branch, const lstub__site *site, int arm, double length);
 void    lstub__branch_done(lstub__branch *branch);

@@ -28,7 +28,8 @@ def board(rules):
 
 @pytest.fixture(scope="module")
 def plan(board):
-    return board.plan()
+    """In the closed form: a plan in full takes seconds, and most tests here are about other things."""
+    return board.plan(fidelity="loaded")
 
 
 # ---- rules ------------------------------------------------------------------------------------------
@@ -143,7 +144,7 @@ def test_ctrl_c_stops_the_reading():
 
 def test_boards_in_threads(rules, plan):
     results = []
-    work = lambda: results.append(repr(ls.Board.load(DEMO, rules, progress=lambda fraction: None).plan()))
+    work = lambda: results.append(repr(ls.Board.load(DEMO, rules, progress=lambda fraction: None).plan(fidelity="loaded")))
     threads = [threading.Thread(target=work) for _ in range(4)]
     for thread in threads:
         thread.start()
@@ -208,13 +209,25 @@ def test_plan(board, plan):
     assert sum(group.hits for group in plan.groups) == totals.drill_top + totals.drill_bottom + 2 * totals.drill_both
 
 
+def test_plan_by_default(board, plan):
+    """The plan is made with the cavity model, as a via by itself is: the same first notches, other than the closed form's."""
+    full = board.plan()
+    assert len(full) == len(plan) and full.totals.refused == plan.totals.refused
+    judged = [i for i in range(0, len(full), 29) if full[i].before.f1 > 0.0 and math.isfinite(full[i].before.f1)]
+    assert len(judged) > 5
+    for i in judged:
+        by_itself = board.via(i).model().notches(up_to=200e9)[0].f
+        assert full[i].before.f1 == pytest.approx(by_itself, rel=1e-12)
+        assert full[i].before.f1 != plan[i].before.f1
+
+
 def test_a_plan_from_jobs_is_the_same(board, plan, rules):
     known = {s.name: s for s in rules.signals}
     jobs, usable = [], [i for i, hole in enumerate(board.holes) if hole.status >= 0]
     for i in usable:
         name = board.holes[i].signal
         jobs.append(ls.Job(board.via(i), known[name].signal, known[name].criteria) if name else ls.Job(board.via(i)))
-    again = ls.plan(board.stackup, jobs, rules.capability)
+    again = ls.plan(board.stackup, jobs, rules.capability, fidelity="loaded")
     assert again.groups == plan.groups
     for k, i in enumerate(usable):
         assert repr(again[k]) == repr(plan[i]) and again.reason(k) == plan.reason(i)
@@ -222,10 +235,10 @@ def test_a_plan_from_jobs_is_the_same(board, plan, rules):
 
 
 def test_plan_arguments(board, plan):
-    assert repr(board.plan(capability=board.rules.capability)) == repr(plan)
+    assert repr(board.plan(capability=board.rules.capability, fidelity="loaded")) == repr(plan)
     none = board.plan(ls.Rules.parse(""))
     assert none.totals.not_judged + none.totals.refused == len(board)
-    assert board.plan(capability=ls.Capability(sides="top")).totals.drill_bottom == 0
+    assert board.plan(capability=ls.Capability(sides="top"), fidelity="loaded").totals.drill_bottom == 0
     assert repr(board.plan(fidelity="bulk")) != repr(plan)
     with pytest.raises(ls.NoSuchError, match="rules"):
         ls.Board.load(DEMO).plan()
@@ -291,7 +304,7 @@ def test_a_file_that_has_changed_is_not_written(rules, tmp_path):
     source, target = tmp_path / "board.xml", tmp_path / "out.xml"
     source.write_bytes(gzip.decompress(DEMO.read_bytes()))
     board = ls.Board.load(source, rules)
-    plan = board.plan()
+    plan = board.plan(fidelity="loaded")
     target.write_text("old")
     source.write_bytes(source.read_bytes().replace(b"0.25", b"0.26", 1))
     with pytest.raises(ls.LibstubError, match="changed"):
@@ -347,7 +360,7 @@ def shared_board(name):
 def test_public_boards(name, rules, tmp_path):
     board = ls.Board.load(shared_board(name), ls.Rules.load(DATA / f"{rules}.txt"))
     assert len(board.holes) > 0 and all(str(notice) for notice in board.notices)
-    plan = board.plan()
+    plan = board.plan(fidelity="loaded")
     assert plan.totals.vias == len(board) and all(plan.reason(i) for i in range(len(plan)))
     board.write(plan, tmp_path / "board.xml.gz")
     assert len(ls.Board.load(tmp_path / "board.xml.gz")) == len(board)

@@ -107,9 +107,9 @@ def test_margin_batch_is_the_same_as_one_by_one(vias, slow, fast, criteria):
 def test_longest_stub_batch_is_the_same_as_one_by_one(vias, fast, criteria):
     wanted = [criteria, ls.Criteria(added_loss_db=0.3)] * 6
     for sides in (None, "bottom", ["bottom"] * 12):
-        result = ls.longest_stub_batch(vias, fast, wanted, sides=sides)
+        result = ls.longest_stub_batch(vias, fast, wanted, sides=sides, fidelity="loaded")
         for i, via in enumerate(vias):
-            limit = ls.longest_stub(via, fast, wanted[i])
+            limit = ls.longest_stub(via, fast, wanted[i], fidelity="loaded")
             assert (result.length[i], result.stub_length[i], result.margin[i]) == (limit.length, limit.stub_length, limit.margin)
             assert result.limited_by[i] == limit.limited_by
 
@@ -159,7 +159,7 @@ def test_range_warnings_of_a_batch_are_one(stackup, other_stackup, criteria):
     vias = [make_via(stackup), make_via(other_stackup), make_via(stackup)]
     quick = ls.Signal(200e9)
     with pytest.warns(ls.RangeWarning, match="margin_batch: 3 of 3 items") as caught:
-        result = ls.margin_batch(vias, quick, criteria)
+        result = ls.margin_batch(vias, quick, criteria, fidelity="loaded")
     assert len(caught) == 1 and caught[0].filename == __file__
     assert list(result.status) == [ls.Status.W_RANGE] * 3
 

@@ -33,11 +33,12 @@ def test_nan_is_named():
         lambda: ls.Dielectric(NAN, 0.0),
         lambda: ls.Layer("L", "signal", NAN),
         lambda: ls.Ring(4, NAN),
+        lambda: ls.Vias([(1e-3, NAN)]),
         lambda: ls.Signal(NAN),
         lambda: ls.Criteria(NAN),
         lambda: ls.Capability(depth_tolerance=NAN),
     ):
-        with pytest.raises(ls.ArgumentError, match=r"\w+ = nan: must be a finite number"):
+        with pytest.raises(ls.ArgumentError, match=r"\w+(\[0\])? = nan: must be a finite number"):
             call()
 
 
@@ -155,6 +156,12 @@ def test_drilled_stub(stackup):
         (dict(span=("L1",), connects=("L1",)), TypeError, "span: must be two layers"),
         (dict(returns=ls.Ring(0, 1e-3)), ls.ArgumentError, "returns: count = 0"),
         (dict(returns=1e-3), TypeError, "returns: must be a Ring"),
+        (dict(returns=ls.Vias([(0.0, ls.mil(40)), (0.0, ls.mil(5))])), ls.GeometryError, "return_xy.1.*touches the barrel"),
+        (dict(returns=ls.Vias([(0.0, ls.mil(40)), (0.0, ls.mil(41))])), ls.GeometryError, "return_xy.1.*touches return via 0"),
+        (dict(outside_dk=0.5), ls.ArgumentError, "outside_dk = 0.5"),
+        (dict(hole_dk=0), ls.ArgumentError, "hole_dk = 0: must be > 0"),
+        (dict(lid_distance=0.0), ls.ArgumentError, "lid_distance = 0: must be > 0"),
+        (dict(lid_distance=-1e-3), ls.ArgumentError, "lid_distance = -0.001"),
         (dict(pair=ls.Pair(1e-5)), ls.LibstubError, "pair_pitch"),
         (dict(pair=True), TypeError, "pair: must be a Pair"),
         (dict(pads=[1]), TypeError, "pads: must be a dict"),
@@ -219,7 +226,7 @@ def everything(stackup):
     link, criteria = ls.Signal(10.3125e9), ls.Criteria(notch_over_nyquist=2.0)
     return [
         laminate, ls.Conductor(5e7, 1e-6), ls.Layer("X", "dielectric", 1e-4, tol_plus=1e-5, dielectric=laminate), stackup,
-        ls.Ring(4, 1e-3), ls.Wall(1e-3), ls.Pair(1e-3), ls.BackDrill("top", 1e-3, 5e-4), ls.Pin("bottom", 1e-3), via, link,
+        ls.Ring(4, 1e-3), ls.Vias([(1e-3, 0.0)], 2e-4), ls.Wall(1e-3), ls.Pair(1e-3), ls.BackDrill("top", 1e-3, 5e-4), ls.Pin("bottom", 1e-3), via, link,
         criteria, ls.Capability(depths=[1e-3, 2e-3], aspect_ratio=10), ls.Job(via, link, criteria), ls.Job(via),
     ]
 
@@ -276,7 +283,23 @@ def test_repr_tells(stackup, laminate):
     assert repr(laminate) == "Dielectric(dk=3.6, loss_tangent=0.004, in_plane_ratio=1.15)"
     assert repr(ls.Ring(4, ls.mil(40))) == "Ring(count=4, distance=40 mil)"
     assert repr(ls.Wall(1e-3)) == "Wall(distance=1 mm)"
+    assert repr(ls.Vias([(1e-3, -ls.mil(40))])) == "Vias(positions=((1 mm, -40 mil),))"
     assert repr(ls.Layer("T", "signal", 35e-6)) == "Layer(name='T', kind='signal', thickness=35 um)"
     assert repr(ls.Signal(53.125e9, 4)) == "Signal(baud=53.125 GBd, levels=4)"
     assert repr(stackup) == "Stackup(10 copper layers of 19, 2.0088 mm)"
     assert repr(ls.Wall(math.pi * 1e-3)) == "Wall(distance=3.142 mm)"
+
+
+def test_positions_of_return_vias():
+    assert ls.Vias([[1e-3, 0], (0, 1e-3)]).positions == ((1e-3, 0.0), (0.0, 1e-3))
+    for wrong, error, message in (
+        ([], ls.ArgumentError, "positions: 0 return vias: must be 1 to 1000"),
+        ([(1e-3, 0.0)] * 1001, ls.ArgumentError, "positions: 1001 return vias"),
+        ([(1e-3,)], ls.ArgumentError, r"positions\[0\]: 1 numbers: must be a pair"),
+        ([(1e-3, "x")], TypeError, r"positions\[0\]: must be a number"),
+        ([1e-3], TypeError, r"positions\[0\]: must be a pair x, y, not float"),
+        ("ab", TypeError, "positions: must be a sequence of pairs"),
+        (None, TypeError, "positions: must be a sequence of pairs"),
+    ):
+        with pytest.raises(error, match=message):
+            ls.Vias(wrong)

@@ -5,7 +5,7 @@
 
 A cell that fails has its message in `error` and null for the numbers; the others are not touched by it. --model: a fidelity
 (default: the library's). --curves writes DIR/ID.csv: Zin at the lower face of the top plane, S11 and S21 of the stub across
-a line of 50 ohm, 0.5 to 100 GHz in steps of 0.5 GHz. Needs the Python package.
+a line of 50 ohm, 0.5 to 100 GHz in steps of 0.5 GHz, or as far up as the model answers. Needs the Python package.
 """
 
 import argparse
@@ -41,20 +41,30 @@ def model_of(case, fidelity):
     return model, notches
 
 
-def zeros_up(model, notches):
-    """Frequencies where the reactance rises through zero: those that the notches name, and any between samples. Across a
-    pole the reactance falls, so a rise through zero is a zero."""
+def answered(model, grid):
+    """Zin at the frequencies of a rising grid, as far up as the model answers at all."""
+    try:
+        return model.zin(grid).tolist()
+    except ls.ArgumentError as error:
+        if error.field != "freq" or error.index < 1:
+            raise
+        return model.zin(grid[:error.index]).tolist()
+
+
+def zeros_up(model, notches, top):
+    """Frequencies up to `top` where the reactance rises through zero: those that the notches name, and any between samples.
+    Across a pole the reactance falls, so a rise through zero is a zero."""
     def reactance(f):
         return model.zin(f).imag
 
     found = [n.f_series for n in notches if math.isfinite(n.f_series)]
     step = 0.1e9
-    grid = [step * i for i in range(1, round(NOTCH_RANGE / step) + 1)]
-    values = [z.imag for z in model.zin(grid).tolist()]
+    grid = [step * i for i in range(1, int(top / step) + 1)]
+    values = [z.imag for z in answered(model, grid)]
     for low, high, a, b in zip(grid, grid[1:], values, values[1:]):
         if a < 0.0 <= b and not any(low <= f <= high for f in found):
             found.append(_bisect(reactance, low, high))
-    return sorted(found)
+    return sorted(f for f in found if f <= top)
 
 
 def _bisect(function, low, high):
@@ -78,7 +88,7 @@ def evaluate(case, fidelity):
     f1 = notches[0].f
     top = max(STATED_RANGE, f1)
     return model, {
-        "id": case["id"], "L_m": length, "f1_Hz": f1, "f_series_Hz": [f for f in zeros_up(model, notches) if f <= top],
+        "id": case["id"], "L_m": length, "f1_Hz": f1, "f_series_Hz": zeros_up(model, notches, top),
         "f_notch_Hz": [n.f for n in notches if n.f <= top],
         "Dk_eff": (SPEED_OF_LIGHT / (4.0 * length * f1)) ** 2, "model": line.fidelity, "error_estimate": notches[0].error,
         "error": None,
@@ -87,7 +97,8 @@ def evaluate(case, fidelity):
 
 def write_curve(model, path):
     f = [0.5e9 * i for i in range(1, 201)]
-    zin, s21 = model.zin(f).tolist(), model.s21(f).tolist()
+    zin = answered(model, f)
+    s21 = model.s21(f[:len(zin)]).tolist()
     with open(path, "w", encoding="ascii") as file:
         print(HEADER, file=file)
         for frequency, z, through in zip(f, zin, s21):

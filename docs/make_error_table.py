@@ -3,7 +3,8 @@
 
     make_error_table.py [FOLDER] [--check]
 
-FOLDER has cases.json, results.json, capacitance.json and curves/; without it: tests/data/axisym. Tables go between lines
+FOLDER has cases.json, results.json, capacitance.json and curves/; without it: tests/data/axisym. Three-dimensional transitions are
+those of tests/data/fdtd3d. Tables go between lines
 `<!-- table NAME: ... -->` and `<!-- end -->`. --check writes nothing and fails where a table is stale. Needs the Python package.
 """
 import csv
@@ -20,6 +21,7 @@ import libstub as ls
 ROOT = Path(__file__).resolve().parent.parent
 sys.path.insert(0, str(ROOT / "tests" / "reference"))
 sys.dont_write_bytecode = True
+import transitions  # noqa: E402  three-dimensional ones
 from cells import via_of  # noqa: E402  a cell of the reference as a via of the library
 
 FIDELITIES = {"bulk": "quarter wave in the laminate's Dk", "loaded": "loaded barrel, a uniform line",
@@ -117,11 +119,24 @@ def capacitance_table(entries):
             f"{100 * median(errors):+.1f} % | {100 * max(errors):+.1f} % |"]
 
 
+def transition_table():
+    """Three-dimensional transitions, notch by notch, at the default fidelity."""
+    text = ["| transition | | first notch, GHz | `cavity`, % | depth, dB | full wave, dB |", "|---|---|---|---|---|---|"]
+    for case, ref in transitions.cases():
+        if "f1_Hz" not in ref:
+            continue
+        notch = transitions.via_of(case).model().notches(60e9)[0]
+        text.append(f"| {case['id']} | {case['note']} | {ref['f1_Hz'] / 1e9:.3f} | {percent(notch.f / ref['f1_Hz'] - 1, 2)} | "
+                    f"{notch.depth_db:.1f} | {ref['f1_depth_dB']:.1f} |")
+    return text
+
+
 def make_tables(folder):
     cases = json.loads((folder / "cases.json").read_text())["cases"]
     results = {r["id"]: r for r in json.loads((folder / "results.json").read_text())["results"]}
     capacitances = json.loads((folder / "capacitance.json").read_text())["results"]
-    return {**notch_tables(cases, results), "loss": loss_table(cases, results, folder), "capacitance": capacitance_table(capacitances)}
+    return {**notch_tables(cases, results), "loss": loss_table(cases, results, folder), "transitions": transition_table(),
+            "capacitance": capacitance_table(capacitances)}
 
 
 def fill(text, tables, found):

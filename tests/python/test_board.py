@@ -213,11 +213,11 @@ def test_plan_by_default(board, plan):
     """The plan is made with the cavity model, as a via by itself is: the same first notches, other than the closed form's."""
     full = board.plan()
     assert len(full) == len(plan) and full.totals.refused == plan.totals.refused
-    judged = [i for i in range(0, len(full), 29) if full[i].before.f1 > 0.0 and math.isfinite(full[i].before.f1)]
+    judged = [i for i in range(0, len(full), 29) if 0.0 < full[i].before.f1 < 110e9]
     assert len(judged) > 5
     for i in judged:
-        by_itself = board.via(i).model().notches(up_to=200e9)[0].f
-        assert full[i].before.f1 == pytest.approx(by_itself, rel=1e-12)
+        by_itself = board.via(i).model().notches(up_to=110e9)[0].f
+        assert full[i].before.f1 == pytest.approx(by_itself, rel=1e-9)
         assert full[i].before.f1 != plan[i].before.f1
 
 

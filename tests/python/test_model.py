@@ -238,7 +238,7 @@ def test_fidelities_agree_as_far_as_they_say(via):
     seen = set()
     for fidelity in ("bulk", "loaded", "ladder"):
         model = via.model(fidelity=fidelity)
-        notch, line = model.notches(up_to=25e9)[0], model.line()
+        notch, line = model.notches(up_to=33e9)[0], model.line()
         assert line.fidelity == fidelity and notch.error == line.stated_error
         assert abs(notch.f / first.f - 1) <= line.stated_error + first.error
         assert model.stubs == best.stubs
@@ -250,7 +250,7 @@ def test_annuli(via):
     default, four, eight = via.model(), via.model(annuli=4), via.model(annuli=8)
     assert default.annuli is None and four.annuli == 4 and "annuli=8" in repr(eight)
     assert four.zin(GHZ).tobytes() == default.zin(GHZ).tobytes() != eight.zin(GHZ).tobytes()
-    assert ls.first_notch_batch([via], annuli=8).f1[0] == pytest.approx(eight.notches(60e9)[0].f, rel=1e-12)
+    assert ls.first_notch_batch([via], annuli=8).f1[0] == pytest.approx(eight.notches(60e9)[0].f, rel=1e-9)
     for wrong in (0, 1, 13, -4):
         with pytest.raises(ls.ArgumentError, match=f"annuli = {wrong}: must be >= 2 and <= 12"):
             via.model(annuli=wrong)

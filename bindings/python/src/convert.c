@@ -90,6 +90,7 @@ int core_bad_argument(core_state *state, const char *field, const char *format, 
 {
     PyObject *message;
     va_list args;
+    PyErr_Clear();      /* this says it better */
     va_start(args, format);
     message = PyUnicode_FromFormatV(format, args);
     va_end(args);

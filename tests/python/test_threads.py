@@ -63,11 +63,11 @@ def test_long_calls_release_the_gil(stackup):
         assert ticks_while(call) > 20 * seconds  # held throughout: one or two
 
 
-def test_buffers_are_held_while_they_are_written(model):
+def test_buffers_are_held_while_they_are_written(via):
     """A bytearray cannot shrink while the library writes into it."""
     import array
 
-    f = np.linspace(1e9, 30e9, 2_000_000)
+    model, f = via.model(fidelity="loaded"), np.linspace(1e9, 30e9, 2_000_000)
     out = array.array("d", bytes(16 * f.size))
     refused = []
 

@@ -338,11 +338,11 @@ def test_the_first_script():
     (stub,) = via.stubs
     assert repr(stub).startswith("Stub(bottom, ") and repr(stub).endswith(" mm below IN8)")
     m = via.model()
-    with pytest.warns(ls.RangeWarning):
-        assert m.dk_effective > 3 and len(m.notches(up_to=ls.ghz(67))) >= 1
-        assert isinstance(m.margin(link, criteria), ls.Margin)
-        assert m.s21(np.linspace(1e9, 67e9, 2000)).shape == (2000,)
-        limit = ls.longest_stub(via, link, criteria)
+    # all within the stated range: a RangeWarning would fail here
+    assert m.dk_effective > 3 and len(m.notches(up_to=ls.ghz(67))) >= 1
+    assert isinstance(m.margin(link, criteria), ls.Margin)
+    assert m.s21(np.linspace(1e9, 67e9, 2000)).shape == (2000,)
+    limit = ls.longest_stub(via, link, criteria)
     assert 0 < limit.length < limit.stub_length
 
 

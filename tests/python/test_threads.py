@@ -94,7 +94,7 @@ def test_buffers_are_held_while_they_are_written(via):
 def test_warnings_in_threads(model):
     with warnings.catch_warnings(record=True) as caught:
         warnings.simplefilter("always")
-        threads = [threading.Thread(target=model.zin, args=([100e9, 1e9],)) for _ in range(8)]
+        threads = [threading.Thread(target=model.zin, args=([120e9, 1e9],)) for _ in range(8)]
         for thread in threads:
             thread.start()
         for thread in threads:

@@ -119,7 +119,7 @@ START_TEST(table)
         const row *r = &rows[i];
         if (strncmp(r->name, tables[_i].start, strlen(tables[_i].start)) != 0)
             continue;
-        if (r->name[0] == 'z' && r->name[2] > '1' && hypot(r->x[0], r->x[1]) > 1e4)
+        if (r->name[0] == 'z' && r->name[2] > '1' && hypot(r->x[0], r->x[1]) > 1e3)
             continue;                   /* higher orders are for the rims of vias: a recurrence, not for so far out */
         cplx got = ours(r);
         double off = hypot((got.re - r->value[0]) / r->scale, (got.im - r->value[1]) / r->scale);

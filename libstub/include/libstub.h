@@ -314,7 +314,8 @@ typedef struct lstub_via {
                                       is soldered and fills the hole, which is then never drilled      */
     const double *return_xy;       /* m, [2 return_count]: x, y of the return vias about the axis; null:
                                       evenly spread on the circle of radius return_distance. The partner of
-                                      a pair is at (pair_pitch, 0); the mirror images of its vias are added */
+                                      a pair is at (pair_pitch, 0); the mirror images of its vias are added,
+                                      and of evenly spread ones no more than 6 stand for all           */
     double  outside_dk;            /* of what lies beyond the outer copper; 0: 1, air        1 to 1000 */
     double  lid_distance;          /* m, from the outer copper to a conducting lid; 0: open space      */
     double  hole_dk;               /* of what fills a drilled hole; 0: 1, air                1 to 1000 */
@@ -424,8 +425,8 @@ typedef struct lstub_notch {
     double  depth_db;              /* 20 log10 |S21| at f, negative; -inf never: -300 at least         */
     double  q;                     /* f over the width of the notch 3 dB above its floor; NaN where the
                                       notch is not that deep, +inf without loss                        */
-    double  error;                 /* of f, relative: CAVITY estimates it for each notch from a second
-                                      model of fewer annuli; others: stated_error of the line          */
+    double  error;                 /* of f, relative: CAVITY estimates it for each notch from a second model
+                                      of other annuli; others: stated_error of the line                */
 } lstub_notch;
 
 /*

@@ -93,19 +93,22 @@ static double spacing(const lstub__cav_barrel *b, int from, int *to)      /* die
     return h;
 }
 
+#define WIDE_PAD 0.5        /* of the way from barrel to antipad: where the pads' constants stop being good */
+
 int lstub__ladder_valid(const lstub__cav_barrel *b)
 {
     double length = 0.0;
     int k = 0, next;
 
+    if (b->end > 0.0) return 0;
     while (k < b->layers) {
         double h = spacing(b, k, &next);
-        if (h > 0.35e-3) return 0;
-        length += h + b->copper[next].thickness;
+        const lstub__cav_copper *c = &b->copper[next];
+        if (h > 0.35e-3 || (c->antipad > 0.0 && c->pad - b->radius > WIDE_PAD * (c->antipad - b->radius))) return 0;
+        length += h + c->thickness;
         k = next;
     }
-    if (b->end > 0.0) length = b->end;
-    return length >= 0.5e-3;
+    return length > 0.5e-3;
 }
 
 cplx lstub__ladder_zin(const lstub__cav_barrel *b, double freq, const cplx *eps)

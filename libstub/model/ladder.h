@@ -9,10 +9,10 @@
 
 /*
 ** Input impedance at the lower face of copper[0]. Returns NaN for what it does not know (see lstub__ladder_valid).
-** Accuracy of the first notch: within 2.6 % for stubs longer than 0.5 mm with planes less than 0.35 mm apart.
+** Accuracy of the first notch: see LADDER_ERROR and LADDER_WIDE in branch.c.
 */
 cplx lstub__ladder_zin(const lstub__cav_barrel *barrel, double freq, const cplx *eps);
-/* 1: within the stated range, 0: outside it (stub below 0.5 mm, or planes further apart than 0.35 mm). */
+/* 1: within the stated range; 0: outside it (drilled, not longer than 0.5 mm, planes more than 0.35 mm apart, wide pads). */
 int      lstub__ladder_valid(const lstub__cav_barrel *barrel);
 
 #endif

@@ -4,6 +4,11 @@
 **     bench plan   VIAS REPEATS TABLE    plans an invented board of so many vias; TABLE gets inputs and results
 **     bench notch  VIAS REPEATS          first notch of each, no two alike
 **     bench zin    POINTS REPEATS        input impedance of one stub at so many frequencies
+**     bench compile VIAS REPEATS         compiles a via of ten cavities with the cavity model so many times
+**     bench cavity POINTS REPEATS        its input impedance at so many frequencies
+**     bench first  VIAS REPEATS          its first notch from scratch, so many times
+**     bench ladder POINTS REPEATS        input impedance by the ladder
+**     bench cavityplan VIAS REPEATS TABLE  as plan, with the cavity model
 **     bench read   BOARD REPEATS         reads a board file
 **     bench expat  BOARD REPEATS         the same file through zlib and expat alone, no handlers
 **
@@ -133,13 +138,16 @@ static void write_table(const char *path, const board *b, const lstub_plan *plan
         stop("cannot write the table");
 }
 
-static void run_plan(size_t vias, int repeats, const char *table)
+static void run_plan(size_t vias, int repeats, const char *table, int32_t fidelity)
 {
     lstub_stackup *stackup = make_stackup();
     lstub_capability fab;
+    lstub_model_options options;
     lstub_error err;
     board b;
     LSTUB_INIT(err);
+    LSTUB_INIT(options);
+    options.fidelity = fidelity;
     LSTUB_INIT(fab);
     fab.depth_tolerance = 50e-6;
     fab.cut_clearance = 50e-6;
@@ -150,7 +158,7 @@ static void run_plan(size_t vias, int repeats, const char *table)
     for (int i = 0; i < repeats; i++) {
         lstub_plan *plan;
         double start = now();
-        if (lstub_plan_create(stackup, b.job, vias, sizeof b.job[0], &fab, NULL, NULL, &plan, &err) < 0)
+        if (lstub_plan_create(stackup, b.job, vias, sizeof b.job[0], &fab, &options, NULL, &plan, &err) < 0)
             stop(err.message);
         printf("%.9f\n", now() - start);
         if (i == 0)
@@ -164,11 +172,14 @@ static void run_notch(size_t vias, int repeats)
 {
     lstub_stackup *stackup = make_stackup();
     double *f1 = room(vias, sizeof *f1);
+    lstub_model_options options;
     board b;
+    LSTUB_INIT(options);
+    options.fidelity = LSTUB_FIDELITY_LOADED;
     make_board(&b, vias, 0);
     for (int i = 0; i < repeats; i++) {
         double start = now();
-        if (lstub_first_notch_batch(stackup, b.via, vias, sizeof b.via[0], NULL, f1, NULL, NULL, NULL, NULL) < 0)
+        if (lstub_first_notch_batch(stackup, b.via, vias, sizeof b.via[0], &options, f1, NULL, NULL, NULL, NULL) < 0)
             stop("first_notch_batch failed");
         printf("%.9f\n", now() - start);
     }
@@ -180,10 +191,13 @@ static void run_zin(size_t points, int repeats)
     lstub_stackup *stackup = make_stackup();
     double *freq = room(points, sizeof *freq), *zin = room(2 * points, sizeof *zin);
     lstub_model *model;
+    lstub_model_options options;
     board b;
+    LSTUB_INIT(options);
+    options.fidelity = LSTUB_FIDELITY_LOADED;
     make_board(&b, 1, 1);
     b.connects[0][1] = 4;
-    if (lstub_model_create(stackup, b.via, NULL, NULL, &model, NULL) != LSTUB_OK)
+    if (lstub_model_create(stackup, b.via, &options, NULL, &model, NULL) != LSTUB_OK)
         stop("model_create failed");
     for (size_t i = 0; i < points; i++)
         freq[i] = 1e8 + 60e9 * (double)i / (double)points;
@@ -195,6 +209,103 @@ static void run_zin(size_t points, int repeats)
     }
     lstub_model_destroy(model);
     lstub_stackup_destroy(stackup);
+}
+
+/* Ten cavities of 0.2 mm between planes, closed wall, bare end: cavity_reference.py has the same. */
+typedef struct ten_cavities {
+    lstub_stackup *stackup;
+    lstub_via via;
+    lstub_on_layer opening;
+    int32_t top;
+    lstub_model_options options;
+} ten_cavities;
+
+static void make_ten(ten_cavities *t, int32_t fidelity)
+{
+    lstub_layer layers[21];
+    lstub_dielectric laminate;
+    char names[21][8];
+    LSTUB_INIT(laminate);
+    laminate.dk = 3.6;
+    laminate.loss_tangent = 0.005;
+    laminate.f_ref = 20e9;
+    for (int i = 0; i < 21; i++) {
+        LSTUB_INIT(layers[i]);
+        snprintf(names[i], sizeof names[i], "%c%d", i % 2 ? 'D' : 'L', i / 2);
+        layers[i].name = names[i];
+        layers[i].kind = i % 2 ? LSTUB_LAYER_DIELECTRIC : LSTUB_LAYER_PLANE;
+        layers[i].thickness = i % 2 ? 0.2e-3 : 17e-6;
+        layers[i].dielectric = i % 2 ? &laminate : NULL;
+    }
+    if (lstub_stackup_create(layers, 21, sizeof layers[0], NULL, &t->stackup, NULL) != LSTUB_OK)
+        stop("stackup_create failed");
+    LSTUB_INIT(t->options);
+    t->options.fidelity = fidelity;
+    LSTUB_INIT(t->via);
+    t->top = 0;
+    t->opening.layer = 0;
+    t->opening.reserved = 0;
+    t->opening.value = t->via.antipad = 0.8e-3;
+    t->via.drill = 0.25e-3;
+    t->via.connects = &t->top;
+    t->via.connect_count = 1;
+    t->via.antipads = &t->opening;
+    t->via.antipad_count = 1;
+    t->via.return_kind = LSTUB_RETURN_WALL;
+    t->via.return_distance = 0.9e-3;
+}
+
+static void run_compile(size_t vias, int repeats)
+{
+    ten_cavities t;
+    make_ten(&t, LSTUB_FIDELITY_CAVITY);
+    for (int i = 0; i < repeats; i++) {
+        double start = now();
+        for (size_t k = 0; k < vias; k++) {
+            lstub_model *model;
+            if (lstub_model_create(t.stackup, &t.via, &t.options, NULL, &model, NULL) != LSTUB_OK)
+                stop("model_create failed");
+            lstub_model_destroy(model);
+        }
+        printf("%.9f\n", now() - start);
+    }
+    lstub_stackup_destroy(t.stackup);
+}
+
+static void run_impedance(int32_t fidelity, size_t points, int repeats)
+{
+    ten_cavities t;
+    lstub_model *model;
+    double *freq = room(points, sizeof *freq), *zin = room(2 * points, sizeof *zin);
+    make_ten(&t, fidelity);
+    if (lstub_model_create(t.stackup, &t.via, &t.options, NULL, &model, NULL) != LSTUB_OK)
+        stop("model_create failed");
+    for (size_t i = 0; i < points; i++)
+        freq[i] = 1e8 + 60e9 * (double)i / (double)points;
+    for (int i = 0; i < repeats; i++) {
+        double start = now();
+        if (lstub_model_zin(model, 0, freq, points, zin, NULL, NULL) < 0)
+            stop("model_zin failed");
+        printf("%.9f\n", now() - start);
+    }
+    lstub_model_destroy(model);
+    lstub_stackup_destroy(t.stackup);
+}
+
+static void run_first(size_t vias, int repeats)
+{
+    ten_cavities t;
+    double f1 = 0.0;
+    make_ten(&t, LSTUB_FIDELITY_CAVITY);
+    for (int i = 0; i < repeats; i++) {
+        double start = now();
+        for (size_t k = 0; k < vias; k++)
+            if (lstub_first_notch_batch(t.stackup, &t.via, 1, sizeof t.via, &t.options, &f1, NULL, NULL, NULL, NULL) < 0)
+                stop("first_notch_batch failed");
+        printf("%.9f\n", now() - start);
+    }
+    fprintf(stderr, "%.17g\n", f1);
+    lstub_stackup_destroy(t.stackup);
 }
 
 static void run_read(const char *path, int repeats)
@@ -235,11 +346,21 @@ static void run_expat(const char *path, int repeats)
 int main(int argc, char **argv)
 {
     if (argc < 4)
-        stop("usage: bench plan|notch|zin|read|expat COUNT|BOARD REPEATS [TABLE]");
+        stop("usage: bench JOB COUNT|BOARD REPEATS [TABLE]");
     int repeats = atoi(argv[3]);
     size_t count = (size_t)strtoul(argv[2], NULL, 10);
     if (strcmp(argv[1], "plan") == 0 && argc == 5)
-        run_plan(count, repeats, argv[4]);
+        run_plan(count, repeats, argv[4], LSTUB_FIDELITY_LOADED);
+    else if (strcmp(argv[1], "cavityplan") == 0 && argc == 5)
+        run_plan(count, repeats, argv[4], LSTUB_FIDELITY_CAVITY);
+    else if (strcmp(argv[1], "compile") == 0)
+        run_compile(count, repeats);
+    else if (strcmp(argv[1], "cavity") == 0)
+        run_impedance(LSTUB_FIDELITY_CAVITY, count, repeats);
+    else if (strcmp(argv[1], "ladder") == 0)
+        run_impedance(LSTUB_FIDELITY_LADDER, count, repeats);
+    else if (strcmp(argv[1], "first") == 0)
+        run_first(count, repeats);
     else if (strcmp(argv[1], "notch") == 0)
         run_notch(count, repeats);
     else if (strcmp(argv[1], "zin") == 0)

@@ -16,9 +16,11 @@ import time
 
 import numpy as np
 
+import cavity_reference
 import reference
 
 VIAS, NOTCHES, POINTS, REPEATS = 100_000, 20_000, 200_000, 5
+CAVITY_VIAS, CAVITY_POINTS, NUMPY_POINTS, CAVITY_PLAN = 50, 2_000, 20, 100
 
 
 def run(program, *args):
@@ -92,6 +94,29 @@ def main():
                            lambda: timed(lambda: reference.zin(freq, 2e-3, 1.6e-10, 1e-14, 4.2e-7))[0])
     row("input impedance of a stub", POINTS / ours, "frequencies/s", "NumPy, same closed form", theirs / ours,
         instructions(program, folder, "zin", POINTS // 10, 1))
+
+    via = cavity_reference.compile_via()
+    f1 = float(subprocess.run([program, "first", "1", "1"], check=True, capture_output=True, text=True).stderr)
+    assert abs(cavity_reference.first_notch(via) / f1 - 1) < 2e-3, "NumPy's cavity model is another one"
+    ours, theirs = compare(lambda: run(program, "compile", CAVITY_VIAS, 1)[0] / CAVITY_VIAS,
+                           lambda: timed(cavity_reference.compile_via)[0])
+    row("cavity model, 10 cavities: compile", ours * 1e3, "ms", "NumPy and SciPy, same method", theirs / ours,
+        instructions(program, folder, "compile", 1, 1))
+    grid = np.linspace(1e9, 60e9, NUMPY_POINTS)
+    ours, theirs = compare(lambda: run(program, "cavity", CAVITY_POINTS, 1)[0] / CAVITY_POINTS,
+                           lambda: timed(lambda: [cavity_reference.zin(via, f) for f in grid])[0] / NUMPY_POINTS)
+    row("cavity model: one frequency", ours * 1e6, "us", "NumPy and SciPy, same method", theirs / ours,
+        instructions(program, folder, "cavity", CAVITY_POINTS // 10, 1))
+    ladder, _ = compare(lambda: run(program, "ladder", CAVITY_POINTS, 1)[0] / CAVITY_POINTS, lambda: 0.0)
+    row("ladder: one frequency", ladder * 1e6, "us", "the cavity model here", ours / ladder,
+        instructions(program, folder, "ladder", CAVITY_POINTS // 10, 1))
+    ours, theirs = compare(lambda: run(program, "first", CAVITY_VIAS, 1)[0] / CAVITY_VIAS,
+                           lambda: timed(lambda: cavity_reference.first_notch(cavity_reference.compile_via()))[0])
+    row("cavity model: first notch from scratch", ours * 1e3, "ms", "NumPy and SciPy, same method", theirs / ours,
+        instructions(program, folder, "first", 1, 1))
+    cavity = statistics.median(run(program, "cavityplan", CAVITY_PLAN, 1, table_path)[0] for _ in range(3))
+    loaded = statistics.median(run(program, "plan", CAVITY_PLAN, 1, table_path)[0] for _ in range(3))
+    row("plan with the cavity model, 100 vias", CAVITY_PLAN / cavity, "vias/s", "the loaded barrel here", loaded / cavity, None)
 
     with gzip.open(board) as file:
         size = sum(len(block) for block in iter(lambda: file.read(1 << 20), b""))

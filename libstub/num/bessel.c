@@ -402,6 +402,10 @@ void lstub__bessel_zin(cplx z, int n, cplx *ie)
     ie[0] = s.i0;
     ie[1] = s.i1;
     if (n < 2) return;
+    if (isnan(s.i0.re) || isnan(s.i0.im)) {
+        for (k = 2; k <= n; k++) ie[k] = s.i0;
+        return;
+    }
     /* ratios I_k/I_(k-1) from the tail inwards; those from 2 on are wanted */
     for (k = n + (int)(1.2 * cplx_abs(z)) + 24; k > 1; k--) {
         low = cplx_inv(cplx_add(cplx_scale(r, 2.0 * k), low));

@@ -6,7 +6,7 @@
 **
 ** Range     real: 1e-300 <= x <= 1e15 (J, Y: 1e-150 to 1e5); complex: 1e-150 <= |z| <= 1e5, Re z >= 0 and, away from the real axis, the
 **           imaginary axis included. Outside: NaN.
-** Accuracy  1e-13 relative or better; near a zero of J, Y or of I on the imaginary axis relative to the
+** Accuracy  1e-13 relative or better (orders beyond 1: |z| <= 1e4); near a zero of J, Y or of I on the imaginary axis relative to the
 **           neighbouring maximum.
 ** Sources   ascending series (Abramowitz and Stegun 9.6.10-13), Chebyshev series computed with mpmath for the real
 **           argument, continued fractions of Steed and Temme (Temme, J. Comput. Phys. 19, 1975) and the Wronskian

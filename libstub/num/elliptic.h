@@ -4,7 +4,7 @@
 
 /*
 ** First and second kind, K(m) and E(m), 0 <= m <= 1; outside NaN. K(1) is infinite. Better than 2e-15 relative
-** (E) and 2e-15 of K. `m1` is 1 - m, given by the caller who knows it without cancellation.
+** for m1 >= 1e-16, 1e-14 below. `m1` is 1 - m, given by the caller who knows it without cancellation.
 ** Source  arithmetic-geometric mean, Abramowitz and Stegun 17.6.
 */
 void lstub__elliptic(double m1, double *k, double *e);

@@ -516,7 +516,7 @@ int lstub__cavity_compile(const lstub__cav_barrel *barrel, const lstub__cav_opti
     if (w != NULL) {
         memset(w, 0, sizeof *w);
         w->barrel = barrel; w->allocate = allocate; w->release = release; w->user = user;
-        w->k_max = 2.0 * CAV_PI * (o->f_max > 0.0 ? o->f_max : 110e9) / CAV_C0;
+        w->k_max = 2.0 * LSTUB_PI * (o->f_max > 0.0 ? o->f_max : 110e9) / LSTUB_C0;
         w->mesh = get(w, sizeof *w->mesh);
         w->face = get(w, (CAV_SLABS + 4) * sizeof *w->face);
     }

@@ -219,7 +219,7 @@ static cplx reflection(state *w, const cav_slab *s, int mode, cplx kappa)
 
 static cplx wave_number(cplx eps, double ratio, double k0, int mode, double h)
 {
-    double b = mode * CAV_PI / h;
+    double b = mode * LSTUB_PI / h;
     cplx k2 = cplx_of(b * b / ratio - k0 * k0 * eps.re, -k0 * k0 * eps.im), k;
 
     k = cplx_sqrt(k2);
@@ -718,7 +718,7 @@ double lstub__cavity_limit(const lstub__cavity *m, const cplx *eps)
     int i;
 
     for (i = 0; i < m->slabs; i++) {
-        double f = CAV_C0 / (2.0 * CAV_PI) * sqrt(m->kernel[m->slab[i].kernel].u_max / eps[m->slab[i].medium].re);
+        double f = LSTUB_C0 / (2.0 * LSTUB_PI) * sqrt(m->kernel[m->slab[i].kernel].u_max / eps[m->slab[i].medium].re);
         if (f < limit) limit = f;
     }
     return limit;
@@ -729,12 +729,12 @@ void lstub__cavity_ports(const lstub__cavity *m, double freq, const cplx *eps, c
     state w;
     trace tr;
     cplx y[N * N], z, z0, er, t, e, one = cplx_of(1.0, 0.0), unit;
-    double omega = 2.0 * CAV_PI * freq;
+    double omega = 2.0 * LSTUB_PI * freq;
     int i, k;
 
     w.m = m;
     w.eps = eps;
-    w.k0 = omega / CAV_C0;
+    w.k0 = omega / LSTUB_C0;
     w.stored = w.singles = w.blocks = 0;
     tr.on = 0;
     tr.zeta = cplx_of(0.0, 0.0);
@@ -753,10 +753,10 @@ void lstub__cavity_ports(const lstub__cavity *m, double freq, const cplx *eps, c
         if (step(&w, &m->slab[i], y, &tr) != 0) return;
     }
     /* y[0]: admittance of the TEM wave a length of line above z = 0; go back along it */
-    unit = cplx_of(0.0, 1.0 / (-2.0 * CAV_PI * omega * CAV_EPS0));
+    unit = cplx_of(0.0, 1.0 / (-2.0 * LSTUB_PI * omega * LSTUB_EPS0));
     z = cplx_mul(cplx_inv(y[0]), unit);
     er = cplx_scale(eps[m->port_medium], m->ratio[m->port_medium]);
-    z0 = cplx_scale(cplx_inv(cplx_sqrt(er)), m->port_log * CAV_MU0 * CAV_C0 / (2.0 * CAV_PI));
+    z0 = cplx_scale(cplx_inv(cplx_sqrt(er)), m->port_log * LSTUB_MU0 * LSTUB_C0 / (2.0 * LSTUB_PI));
     e = cplx_scale(cplx_sqrt(er), 2.0 * w.k0 * m->feed_length);
     e = cplx_exp(cplx_of(-e.im, e.re));                        /* e^(2jkl); j tan = (e - 1)/(e + 1) */
     t = cplx_div(cplx_sub(e, one), cplx_add(e, one));

@@ -20,9 +20,9 @@ static void distance_means(double x, double y, double mean[3])
     p1 = e;
     p3 = (2.0 * (2.0 - m) * e - m1 * k) / 3.0;
     p5 = (4.0 * (2.0 - m) * p3 - 3.0 * m1 * p1) / 5.0;
-    mean[0] = 2.0 / CAV_PI * s * p1;
-    mean[1] = 2.0 / CAV_PI * s * s * s * p3;
-    mean[2] = 2.0 / CAV_PI * s * s * s * s * s * p5;
+    mean[0] = 2.0 / LSTUB_PI * s * p1;
+    mean[1] = 2.0 / LSTUB_PI * s * s * s * p3;
+    mean[2] = 2.0 / LSTUB_PI * s * s * s * s * s * p5;
 }
 
 void cav_half_space(const cav_face *face, const double *c, double *out)

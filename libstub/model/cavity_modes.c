@@ -25,7 +25,7 @@ static double first_resonance(const cav_slab *slab)
 {
     if (slab->outer != LSTUB__CAV_WALL) return 0.0;
     if (slab->r_in > 0.0) {
-        double k = 0.9 * CAV_PI / (slab->r_out - slab->r_in);
+        double k = 0.9 * LSTUB_PI / (slab->r_out - slab->r_in);
         return k * k;
     }
     return slab->fill >= 0 ? 0.0 : (2.404 / slab->r_out) * (2.404 / slab->r_out);
@@ -33,7 +33,7 @@ static double first_resonance(const cav_slab *slab)
 
 static double cut_off(const cav_slab *slab, double ratio, int n)
 {
-    double k = n * CAV_PI / slab->h;
+    double k = n * LSTUB_PI / slab->h;
     return k * k / ratio + first_resonance(slab);
 }
 
@@ -48,7 +48,7 @@ static int degree_of(double u_max, double u_c, int n)
 
 void cav_modes_plan(const cav_slab *slab, double ratio, double u_top, cav_series *series)
 {
-    double limit = 0.0, k = CAV_PI / slab->h;
+    double limit = 0.0, k = LSTUB_PI / slab->h;
     int first;
 
     for (first = 1; first <= 3; first++) {      /* half way to the resonance, and kappa stays real */
@@ -227,7 +227,7 @@ static void pair_tail(const cav_slab *slab, double gamma, int last, double x, do
 static void hole_pair_tail(const cav_slab *slab, double ratio, double qf, int last, double x, double y, double value[2],
                            double slope[2])
 {
-    double g = CAV_PI / slab->h, out = g / sqrt(ratio), t = (out - g / qf) / (out + g / qf), rd = slab->hole;
+    double g = LSTUB_PI / slab->h, out = g / sqrt(ratio), t = (out - g / qf) / (out + g / qf), rd = slab->hole;
     double step = qf / ratio, root = 1.0 / sqrt(x * y), ix = 1.0 / x, iy = 1.0 / y;
     double squares = 9.0 / 128.0 * (ix * ix + iy * iy) - root * root / 64.0, f = 1.0 - t;
     int par;
@@ -292,7 +292,7 @@ static void add_series(const double *values, int degree, int pairs, double *seri
     int n = degree + 1, k, j, p;
 
     for (j = 0; j < n; j++) {
-        double t = cos(CAV_PI * (j + 0.5) / n), c = 1.0 / n, before = t * c, next;
+        double t = cos(LSTUB_PI * (j + 0.5) / n), c = 1.0 / n, before = t * c, next;
         for (k = 0; k < n; k++) {               /* c = T_k(t)/n, twice that from k = 1 on */
             double f = k ? 2.0 * c : c;
             for (p = 0; p < pairs; p++) series[k * pairs + p] += f * values[j * pairs + p];
@@ -305,13 +305,13 @@ static void add_series(const double *values, int degree, int pairs, double *seri
 
 static double node(double u_max, int j, int degree)
 {
-    return 0.5 * u_max * (1.0 + cos(CAV_PI * (j + 0.5) / (degree + 1)));
+    return 0.5 * u_max * (1.0 + cos(LSTUB_PI * (j + 0.5) / (degree + 1)));
 }
 
 static void add_tails(const cav_slab *slab, double ratio, double qf, const double *x, const double *log_x, int points,
                       int last, const cav_series *s)
 {
-    double gamma = CAV_PI / slab->h, beta = gamma * gamma, log_hole = slab->fill >= 0 ? log(slab->hole) : 0.0;
+    double gamma = LSTUB_PI / slab->h, beta = gamma * gamma, log_hole = slab->fill >= 0 ? log(slab->hole) : 0.0;
     double half = 0.5 * s->u_max;
     int p, q, par, k, j, n = 5;
 
@@ -321,7 +321,7 @@ static void add_tails(const cav_slab *slab, double ratio, double qf, const doubl
         for (k = 0; k < n; k++) {
             double in_slab = 0.0, in_hole = 0.0;
             for (j = 0; j < n; j++) {
-                double c = (k ? 2.0 : 1.0) / n * cos(k * CAV_PI * (j + 0.5) / n), u = node(s->u_max, j, n - 1);
+                double c = (k ? 2.0 : 1.0) / n * cos(k * LSTUB_PI * (j + 0.5) / n), u = node(s->u_max, j, n - 1);
                 in_slab += c * log_tail(z, beta / ratio, u);
                 if (slab->fill >= 0) in_hole += c * qf * log_tail(z, beta, qf * u);
             }
@@ -354,7 +354,7 @@ static void add_tails(const cav_slab *slab, double ratio, double qf, const doubl
 void cav_modes_sum(const cav_slab *slab, double ratio, double qf, const double *x, const double *log_x, int points,
                    const cav_series *s, double *scratch)
 {
-    double gamma = CAV_PI / (slab->h * sqrt(ratio)), k1 = CAV_PI / slab->h;
+    double gamma = LSTUB_PI / (slab->h * sqrt(ratio)), k1 = LSTUB_PI / slab->h;
     size_t block = (size_t)s->pairs * (size_t)(s->degree + 1);
     double *values[2];
     int last, n, degree = -1, j;

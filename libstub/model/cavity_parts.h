@@ -2,12 +2,9 @@
 #ifndef LSTUB_CAVITY_PARTS_H
 #define LSTUB_CAVITY_PARTS_H
 
+#include "base/base.h"
 #include "model/cavity.h"
 
-#define CAV_PI     3.14159265358979323846
-#define CAV_C0     299792458.0
-#define CAV_MU0    (4.0e-7 * CAV_PI)
-#define CAV_EPS0   (1.0 / (CAV_MU0 * CAV_C0 * CAV_C0))
 #define CAV_DEGREE 20               /* most terms of a Chebyshev series, less one                       */
 #define CAV_FEED   3                /* slabs that the feeding coaxial line is cut into                  */
 

@@ -70,7 +70,7 @@ static cplx even_ring(const lstub__cav_returns *r, cplx kappa)
     for (q = -top; q <= top; q++)
         for (p = -top; p <= top; p++) a[(q + top) * width + p + top] = p == q ? ratio[abs(q)] : cplx_of(0.0, 0.0);
     for (i = 1; i < r->even; i++) {
-        double phi = 2.0 * CAV_PI * i / r->even, x = s * cos(phi), y = s * sin(phi), dx = s - x, dy = -y;
+        double phi = 2.0 * LSTUB_PI * i / r->even, x = s * cos(phi), y = s * sin(phi), dx = s - x, dy = -y;
         waves(kappa, hypot(dx, dy), 2 * top, k);
         for (q = -top; q <= top; q++)
             for (p = -top; p <= top; p++) {

@@ -74,7 +74,7 @@ static double opening(double r, double outer)
     for (i = 0; i < 3; i++) {
         double s = x[i][0] + x[i][1], d = x[i][0] - x[i][1];
         lstub__elliptic((d / s) * (d / s) > 1e-300 ? (d / s) * (d / s) : 1e-300, &k, &e);
-        m[i] = 2.0 / CAV_PI * s * e;
+        m[i] = 2.0 / LSTUB_PI * s * e;
     }
     return (2.0 * m[1] - m[0] - m[2]) / (l * l);        /* times 2 pi eps */
 }
@@ -113,7 +113,7 @@ int lstub__ladder_valid(const lstub__cav_barrel *b)
 
 cplx lstub__ladder_zin(const lstub__cav_barrel *b, double freq, const cplx *eps)
 {
-    double w = 2.0 * CAV_PI * freq, a = b->radius, top[CAV_SLABS];
+    double w = 2.0 * LSTUB_PI * freq, a = b->radius, top[CAV_SLABS];
     cplx jw = cplx_of(0.0, w);
     chain c;
     int first[CAV_SLABS], n = 0, k = 0, i, next = 0;
@@ -141,7 +141,7 @@ cplx lstub__ladder_zin(const lstub__cav_barrel *b, double freq, const cplx *eps)
         tp = t * sqrt(ratio);
         delta = 0.22063560015 * hp / (1.0 + 2.17 * tp / hp);
         wide = log((r + delta) / a);
-        scale = 2.0 * CAV_PI * CAV_EPS0;
+        scale = 2.0 * LSTUB_PI * LSTUB_EPS0;
         if (drilled < h) {                              /* ends in this cavity */
             double l = drilled + a * (TIP_AIR + TIP_FILL * b->medium[b->fill].dk / (b->medium[m].dk * ratio));
             h = l < h ? l : h;
@@ -151,7 +151,7 @@ cplx lstub__ladder_zin(const lstub__cav_barrel *b, double freq, const cplx *eps)
             double rp = lower->pad > a ? lower->pad : a;
             cplx fill = cplx_scale(eps[lower->medium], b->medium[lower->medium].ratio);
             if (last) add_shunt(&c, cplx_mul(jw, cplx_scale(eps[b->below_medium], scale * END_SHARE * opening(rp, lower->antipad))));
-            add_line(&c, cplx_of(0.0, w * CAV_MU0 * t * log(lower->antipad / rp) / (2.0 * CAV_PI)),
+            add_line(&c, cplx_of(0.0, w * LSTUB_MU0 * t * log(lower->antipad / rp) / (2.0 * LSTUB_PI)),
                      cplx_mul(jw, cplx_scale(fill, scale * t / log((lower->antipad + (last ? 0.0 : delta)) / rp))));
             if (rp > a) {
                 double w1 = (rp - a) / (lower->antipad - a), reach = (lower->antipad - rp)
@@ -165,7 +165,7 @@ cplx lstub__ladder_zin(const lstub__cav_barrel *b, double freq, const cplx *eps)
         for (p = first[i] + 1; p <= next; p++)          /* pads on layers without plane */
             if (b->copper[p].antipad == 0.0 && b->copper[p].pad > a && b->end <= 0.0)
                 add_shunt(&c, cplx_mul(jw, cplx_scale(e, scale * FREE_PAD * (b->copper[p].pad - a))));
-        zs = cplx_div(cplx_of(0.0, w * CAV_MU0 * h / (2.0 * CAV_PI)), radial(b, ez, w / CAV_C0));
+        zs = cplx_div(cplx_of(0.0, w * LSTUB_MU0 * h / (2.0 * LSTUB_PI)), radial(b, ez, w / LSTUB_C0));
         y = cplx_mul(jw, cplx_scale(e, scale * hp / wide));
         add_line(&c, zs, y);
     }

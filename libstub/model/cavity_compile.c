@@ -103,8 +103,11 @@ static double *series_memory(const work *w, cav_series *s, int points)
     s->points = points;
     s->pairs = points * (points + 1) / 2;
     block = (size_t)s->pairs * (size_t)(s->degree + 1);
-    s->even = get(w, 2 * block * sizeof *s->even);
-    s->odd = s->even != NULL ? s->even + block : NULL;
+    s->even = get(w, (2 * block + 2 * (size_t)s->pairs) * sizeof *s->even);
+    if (s->even == NULL) return NULL;
+    s->odd = s->even + block;
+    s->low_even = s->odd + block;
+    s->low_odd = s->low_even + s->pairs;
     return s->even;
 }
 
@@ -135,9 +138,10 @@ static int sum_modes(work *w)
 
 /* ---- static shapes ------------------------------------------------------------------------------ */
 
+/* All modes n >= 1 at frequency 0: where the series begin depends on the band, the static field does not. */
 static double at_zero(const cav_series *s, const double *series, int pair)
 {
-    double sum = 0.0;
+    double sum = series == s->odd ? s->low_odd[pair] : s->low_even[pair];
     int k;
 
     for (k = 0; k <= s->degree; k++) sum += (k & 1 ? -1.0 : 1.0) * series[k * s->pairs + pair];

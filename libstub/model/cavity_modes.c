@@ -369,6 +369,14 @@ void cav_modes_sum(const cav_slab *slab, double ratio, double qf, const double *
     values[1] = scratch + block;
     zero(s->even, block);
     zero(s->odd, block);
+    zero(s->low_even, (size_t)s->pairs);
+    zero(s->low_odd, (size_t)s->pairs);
+    for (n = 1; n < s->first; n++) {
+        double k2 = n * k1 * n * k1;
+        if (slab->fill >= 0) hole_mode(slab, k2 / ratio, k2, qf, x, log_x, points, &v);
+        else plain_mode(slab, k2 / ratio, x, log_x, points, &v);
+        add_mode(&v, points, n & 1 ? s->low_odd : s->low_even);
+    }
     for (n = s->first; n <= last + 1; n++) {
         int d = n > last ? -2 : degree_of(s->u_max, cut_off(slab, ratio, n), n);
 

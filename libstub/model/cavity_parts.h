@@ -39,6 +39,7 @@ typedef struct cav_series {
     int     points, pairs, degree, first;
     double  u_max;
     double *even, *odd;                         /* [degree + 1][pairs]                                  */
+    double *low_even, *low_odd;                 /* [pairs]: the modes below `first`, static             */
 } cav_series;
 
 typedef struct cav_span { int same, top_points; const double *x, *log_x; int points; } cav_span;

@@ -194,6 +194,14 @@ typedef struct lstub_conductor {
 LSTUB_API int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectric, const double *freq, size_t n,
                                                 double *through_plane, double *in_plane, lstub_error *err);
 
+/* ---- traces: lines from their cross-section [section: traces] ------------------------------------- */
+
+/* ---- networks: S-parameters [section: networks] --------------------------------------------------- */
+
+/* ---- Touchstone [section: touchstone] -------------------------------------------------------------- */
+
+/* ---- measurements [section: measurements] ---------------------------------------------------------- */
+
 /* ---- stackup ------------------------------------------------------------------------------------ */
 
 #define LSTUB_LAYER_DIELECTRIC 1
@@ -445,6 +453,8 @@ LSTUB_API int32_t lstub_model_notches(const lstub_model *model, int32_t stub, do
 LSTUB_API int32_t lstub_first_notch_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t count,
                                           size_t stride, const lstub_model_options *options, double *f1,
                                           double *dk_effective, double *length, int32_t *status, lstub_error *err);
+
+/* ---- transition: the whole via as a network [section: transition] ---------------------------------- */
 
 /* ---- criteria: what a signal can bear ------------------------------------------------------------ */
 

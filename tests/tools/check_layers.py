@@ -7,7 +7,7 @@ import re
 import sys
 from pathlib import Path
 
-LAYERS = ["base", "num", "material", "stackup", "via", "model", "criteria", "plan"]
+LAYERS = ["base", "num", "material", "network", "touchstone", "measure", "stackup", "via", "model", "criteria", "plan"]
 READER = "ipc2581"
 # C99, less what the library must not use: complex.h (not needed), signal.h, setjmp.h, time.h, and locale.h but for base,
 # which takes the decimal point out of messages.
@@ -31,7 +31,7 @@ def main(root):
     wrong, files = [], 0
     core = Path(root) / "libstub"
     for layer in LAYERS + [READER]:
-        for path in sorted(p for p in (core / layer).iterdir() if p.suffix in (".c", ".h")):
+        for path in sorted((core / layer).glob("*.[ch]")):
             files += 1
             for number, line in enumerate(path.read_text(encoding="utf-8").splitlines(), 1):
                 match = INCLUDE.match(line)

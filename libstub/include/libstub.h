@@ -202,6 +202,78 @@ LSTUB_API int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectr
 
 /* ---- measurements [section: measurements] ---------------------------------------------------------- */
 
+#define LSTUB_QUALITY_GOOD     0   /* or a sum of:                                                     */
+#define LSTUB_QUALITY_SHALLOW  1   /* less than 6 dB below the trend                                   */
+#define LSTUB_QUALITY_EDGE     2   /* the band ends before a flank is back half its depth              */
+#define LSTUB_QUALITY_RIPPLE   4   /* not much more than the other dips of the band: score < 8         */
+#define LSTUB_QUALITY_WIDE     8   /* f_sigma > 0.02 f, or wider than 0.6 f: several stubs, or none    */
+#define LSTUB_QUALITY_FLOOR   16   /* noise or the window hides the floor: depth is a bound, q NaN     */
+
+typedef struct lstub_search {      /* for notches. 0: the default                                      */
+    size_t size;
+    double window;                 /* Hz the power is averaged over; 0: the median distance of minima of
+                                      |S| (a period of the ripple), 3 samples to a 20th of the band    */
+    double f_low, f_high;          /* Hz, band looked at; 0: all there is                              */
+    double depth_least;            /* dB below the trend; 0: 3                            1 to 100     */
+    const lstub_allocator *allocator;  /* while it runs; null: malloc                                  */
+} lstub_search;
+
+typedef struct lstub_measured_notch {
+    size_t  size;
+    int32_t quality;               /* LSTUB_QUALITY_...                                                */
+    int32_t reserved;
+    double  f, f_sigma;            /* Hz, of the stub alone, trend and window taken out; 1 sigma from noise,
+                                      ripple, curvature, window and trend                              */
+    double  depth_db;              /* averaged |S| at f against the trend, dB, negative                */
+    double  level_db;              /* averaged |S| as it is at f_minimum, dB                           */
+    double  f_minimum;             /* Hz, where the averaged |S| itself is least: the channel's slope in it */
+    double  width;                 /* Hz, between the flanks at half its depth in dB                   */
+    double  q;                     /* as lstub_notch.q, of the shape fitted                            */
+    double  impedance;             /* of the open line with these flanks, over that of the channel     */
+    double  score;                 /* its prominence over that of the band's other dips; > 4           */
+    double  window;                /* Hz, as used                                                      */
+} lstub_measured_notch;
+
+/*
+** Stub notches in a measured S21 or Sdd21, in rising order. The shape of an open stub, S21 = 2/(2 + z y), is fitted to what
+** the channel's loss a0 + a1 sqrt f + a2 f + a4 f^2 (dB, fitted to all but the notches) leaves. Ripple, roll-off, a noise
+** floor and notches outside the band are none: *count = 0, LSTUB_OK.
+** In   freq[n] Hz, rising, any steps, n >= 16; s: re, im of the first element, the next s_stride bytes on (16: side by
+**      side; 16 p p: element (i, j) of an (n, p, p) array from its address). search null: defaults.
+** Out  notches[capacity], more: LSTUB_W_CAPACITY, the lowest are given; averaged_db[n], trend_db[n] or null, NaN off the band.
+*/
+LSTUB_API int32_t lstub_find_notches(const double *freq, size_t n, const double *s, size_t s_stride, const lstub_search *search,
+                                     lstub_measured_notch *notches, size_t capacity, size_t stride, size_t *count,
+                                     double *averaged_db, double *trend_db, lstub_error *err);
+
+/* Dk and length of a stub from its null n (1, 3 ...), with 1-sigma errors to first order; sigmas >= 0. */
+LSTUB_API int32_t lstub_fit_effective_dk(double f, double f_sigma, double length, double length_sigma, int32_t n,
+                                         double *dk, double *dk_sigma, lstub_error *err);
+LSTUB_API int32_t lstub_fit_length(double f, double f_sigma, double dk, double dk_sigma, int32_t n,
+                                   double *length, double *length_sigma, lstub_error *err);
+
+typedef struct lstub_fit {
+    size_t  size;
+    int32_t describes;             /* 0: chi2 is beyond its 99 % quantile: the model does not describe them */
+    int32_t dof;                   /* coupons less parameters                                          */
+    double  ratio, ratio_sigma;    /* in-plane over through-plane Dk; sigma times sqrt(chi2/dof) where > 1 */
+    double  ratio_low, ratio_high; /* 95 %, Student t of dof (dof 0: normal)                           */
+    double  offset, offset_sigma;  /* m, by which all stubs are longer; 0 where not asked for          */
+    double  offset_low, offset_high;
+    double  chi2;                  /* sum of (residual/f_sigma)^2                                      */
+} lstub_fit;
+
+/* First notch of a coupon in Hz; a status < 0 ends the fit and is returned. */
+typedef int32_t lstub_predict(void *user, double ratio, double offset, size_t coupon, double *f);
+/*
+** In-plane Dk ratio (0.5 to 2), with_offset != 0: and a common offset of length (to 1e-2 m), by least squares over
+** coupons: f[count], f_sigma[count] > 0 Hz. residuals[count] or null: measured less predicted, Hz.
+** Ret  LSTUB_E_NONE: no minimum within the limits; LSTUB_E_GEOMETRY: these coupons do not tell the two apart.
+*/
+LSTUB_API int32_t lstub_fit_in_plane_dk(lstub_predict *predict, void *user, const double *f, const double *f_sigma,
+                                        size_t count, int32_t with_offset, lstub_fit *out, double *residuals,
+                                        lstub_error *err);
+
 /* ---- stackup ------------------------------------------------------------------------------------ */
 
 #define LSTUB_LAYER_DIELECTRIC 1
@@ -453,6 +525,18 @@ LSTUB_API int32_t lstub_model_notches(const lstub_model *model, int32_t stub, do
 LSTUB_API int32_t lstub_first_notch_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t count,
                                           size_t stride, const lstub_model_options *options, double *f1,
                                           double *dk_effective, double *length, int32_t *status, lstub_error *err);
+
+/* The same stackup with that in-plane ratio (0.5 to 2) in all its dielectrics, resin between copper included. */
+LSTUB_API int32_t lstub_stackup_with_in_plane_ratio(const lstub_stackup *stackup, double ratio,
+                                                    const lstub_allocator *allocator, lstub_stackup **out, lstub_error *err);
+/*
+** lstub_fit_in_plane_dk with the model: vias are the coupons, f[count] their measured first notches. An offset makes
+** a stub of length L a quarter wave of L + offset. fitted: the stackup with the ratio found, or null.
+*/
+LSTUB_API int32_t lstub_fit_coupons(const lstub_stackup *stackup, const lstub_via *vias, size_t count, size_t stride,
+                                    const double *f, const double *f_sigma, int32_t with_offset,
+                                    const lstub_model_options *options, const lstub_allocator *allocator,
+                                    lstub_stackup **fitted, lstub_fit *out, double *residuals, lstub_error *err);
 
 /* ---- transition: the whole via as a network [section: transition] ---------------------------------- */
 

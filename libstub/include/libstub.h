@@ -196,7 +196,102 @@ LSTUB_API int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectr
 
 /* ---- traces: lines from their cross-section [section: traces] ------------------------------------- */
 
-/* ---- networks: S-parameters [section: networks] --------------------------------------------------- */
+/* ---- networks: S-parameters [section: networks] ---------------------------------------------------
+**
+** Sums on the caller's arrays. A network of p ports (1 to LSTUB_PORTS_MAX) at n frequencies is double[2 n p p]: for each
+** frequency p rows of p complex numbers, row: port the wave comes out of, column: port driven. Reference impedances in
+** ohm, real part 1e-6 to 1e9. Waves are power waves (Kurokawa, IEEE T-MTT 13(3), 1965), a = (V + z I)/(2 sqrt(Re z)),
+** b = (V - z* I)/(2 sqrt(Re z)): with a real z the travelling ones. `out` may be the input itself. status[n] may be null.
+** Items fail one by one: LSTUB_E_ARGUMENT, NaN or infinity in the data; LSTUB_E_NONE, there is no such matrix (condition
+** number beyond 1e14). LSTUB_W_RANGE: condition number beyond 1e10, fewer than 6 digits are left. */
+
+#define LSTUB_PORTS_MAX 16
+
+/* S on other reference impedances, z_from[p] and z_to[p]; or complex ones, of each frequency: z_from[2 n p], z_to[2 n p]. */
+LSTUB_API int32_t lstub_network_renormalise(const double *s, size_t n, int32_t p, const double *z_from, const double *z_to,
+                                            double *out, int32_t *status, lstub_error *err);
+LSTUB_API int32_t lstub_network_renormalise_complex(const double *s, size_t n, int32_t p, const double *z_from,
+                                                    const double *z_to, double *out, int32_t *status, lstub_error *err);
+
+#define LSTUB_NETWORK_S    1
+#define LSTUB_NETWORK_Z    2   /* V = Z I, ohm                                                          */
+#define LSTUB_NETWORK_Y    3   /* I = Y V, siemens                                                      */
+#define LSTUB_NETWORK_ABCD 4   /* (V1, I1) = ABCD (V2, -I2) of the left and the right half of the ports; p even */
+
+/* One kind of matrix from another. z[p]: references of S; null: 50 ohm. */
+LSTUB_API int32_t lstub_network_convert(const double *in, size_t n, int32_t p, int32_t from, int32_t to, const double *z,
+                                        double *out, int32_t *status, lstub_error *err);
+
+/* b behind a. Ports 0 .. p/2-1 are the left ones, p/2 .. p-1 the right ones (p even); a's right ones meet b's left ones, in
+** this order and on the same references. In waves, so that nothing need be transmitted. */
+LSTUB_API int32_t lstub_network_cascade(const double *a, const double *b, size_t n, int32_t p, double *out,
+                                        int32_t *status, lstub_error *err);
+/* The other way: what is measured without what stands left and right of it, measured = left, out, right in cascade. Either
+** may be null. The conditions are those of what they transmit, both ways: 1/|S12 S21| of a 2-port left or right. */
+LSTUB_API int32_t lstub_network_deembed(const double *measured, const double *left, const double *right, size_t n, int32_t p,
+                                        double *out, int32_t *status, lstub_error *err);
+/* A stub as a 2-port s[2 n 4]: zin[2 n] across a line of z_ref; infinite: nothing there. */
+LSTUB_API int32_t lstub_network_shunt(const double *zin, size_t n, double z_ref, double *s, int32_t *status, lstub_error *err);
+
+/* Mixed modes of `pair_count` pairs of ports, pairs[2 i] positive and pairs[2 i + 1] negative, and back. Order of modes:
+** the pairs' differential ones, their common ones, then the ports of no pair in rising order. Vd = Vp - Vn,
+** Id = (Ip - In)/2, Vc = (Vp + Vn)/2, Ic = Ip + In. z[p]: single-ended references, also unequal ones; those of the modes
+** are zp + zn and zp zn/(zp + zn) (2 z and z/2 of equal ones) and go to z_mixed[p], which may be null. */
+LSTUB_API int32_t lstub_network_to_mixed(const double *s, size_t n, int32_t p, const int32_t *pairs, int32_t pair_count,
+                                         const double *z, double *out, double *z_mixed, int32_t *status, lstub_error *err);
+LSTUB_API int32_t lstub_network_to_single(const double *s, size_t n, int32_t p, const int32_t *pairs, int32_t pair_count,
+                                          const double *z, double *out, int32_t *status, lstub_error *err);
+
+/* Largest singular value of S, sigma[n]: passive where <= 1. Largest |Sij - Sji|, difference[n]: reciprocal where 0. */
+LSTUB_API int32_t lstub_network_passivity(const double *s, size_t n, int32_t p, double *sigma, int32_t *status, lstub_error *err);
+LSTUB_API int32_t lstub_network_reciprocity(const double *s, size_t n, int32_t p, double *difference, int32_t *status,
+                                            lstub_error *err);
+
+/*
+** Time domain: freq[n] (n >= 3, 0 to 1e12 Hz, rising) to f_max, the last. Multiples of one step are used as they are; others
+** interpolated, by cubics about the mean delay, to 4 n steps of f_max/(4 n). Missing down to 0: real part even, imaginary
+** part odd in f about the mean delay, through the first point and the first at twice its frequency. Whatever lasts longer
+** than 1/step wraps round. A NaN in the data fails the call.
+**
+** early[p p]: share of the energy of every impulse response that comes more than `resolution` before t0 (s, >= 0: 0, or the
+** delay that nothing can undercut). The band is weighted by a Kaiser window (beta 10), which blurs by resolution[1] =
+** 1.67/f_max: below 1e-7 nothing can be said against the data, but an advance shorter than that, or beyond the band,
+** does not show. What wraps round counts as early, and so does noise.
+*/
+LSTUB_API int32_t lstub_network_causality(const double *freq, const double *s, size_t n, int32_t p, double t0, double *early,
+                                          double *resolution, lstub_error *err);
+/* Response at port `to` to a unit step into port `from` at times t[m] (s; 0: the middle of the edge), out[m]. The edge is an
+** integrated Gaussian of that 20 to 80 percent rise time. LSTUB_W_RANGE where rise_time < 1/f_max (more than 1e-3 of
+** the edge's spectrum is beyond the band), or a time is not within -1/4 to 3/4 of 1/step. */
+LSTUB_API int32_t lstub_step_response(const double *freq, const double *s, size_t n, int32_t p, int32_t to, int32_t from,
+                                      double rise_time, const double *t, size_t m, double *out, lstub_error *err);
+/* Impedance seen at `port` against time: z_ref (1 + rho)/(1 - rho), rho the step response of its reflection; +inf from 1 on.
+** Time goes there and back; reflections behind other reflections are not taken apart. */
+LSTUB_API int32_t lstub_tdr(const double *freq, const double *s, size_t n, int32_t p, int32_t port, double z_ref,
+                            double rise_time, const double *t, size_t m, double *impedance, lstub_error *err);
+
+typedef struct lstub_loss_fit {    /* a0 + a1 sqrt(f) + a2 f + a4 f^2 through an insertion loss        */
+    size_t  size;
+    double  f_low, f_high;         /* Hz, both included; 0: the first, the last frequency given        */
+    int32_t constant;              /* 1: with a0; 0: without                                           */
+    int32_t weighted;              /* 1: a point counts by 10^(-loss/20) (IEEE 802.3, 93A.3); 0: alike */
+    double  symbol_rate;           /* Bd, for the figure of merit; 0: none                             */
+    double  transition_time;       /* s, of the transmitter, 20 to 80 percent; 0: none                 */
+    double  receiver_bandwidth;    /* Hz, of the receiver's filter; 0: 0.75 of the symbol rate         */
+} lstub_loss_fit;
+
+typedef struct lstub_loss_deviation {
+    size_t  size;
+    double  a0, a1, a2, a4;        /* dB, dB/sqrt(Hz), dB/Hz, dB/Hz^2                                  */
+    double  rms, greatest;         /* deviation (loss less fit), dB: root mean square, largest absolute */
+    double  fom;                   /* root of the mean of W deviation^2, W = sinc^2(f/fb)/((1 + (f/ft)^4)(1 + (f/fr)^8)),
+                                      ft = 0.2365/transition_time; NaN without a symbol rate           */
+    int64_t points;                /* frequencies within the fit                                       */
+} lstub_loss_deviation;
+
+/* loss[n], dB, at freq[n], Hz, 0 to 1e12, rising. deviation[n] (NaN outside f_low .. f_high) may be null. */
+LSTUB_API int32_t lstub_insertion_loss_deviation(const double *freq, const double *loss, size_t n, const lstub_loss_fit *fit,
+                                                 double *deviation, lstub_loss_deviation *out, lstub_error *err);
 
 /* ---- Touchstone [section: touchstone] -------------------------------------------------------------- */
 

@@ -295,6 +295,91 @@ LSTUB_API int32_t lstub_insertion_loss_deviation(const double *freq, const doubl
 
 /* ---- Touchstone [section: touchstone] -------------------------------------------------------------- */
 
+#define LSTUB_TOUCHSTONE_PORTS 16  /* at most                                                          */
+
+#define LSTUB_PARAMETER_S 0
+#define LSTUB_PARAMETER_Y 1        /* S                                                                */
+#define LSTUB_PARAMETER_Z 2        /* ohm                                                              */
+#define LSTUB_PARAMETER_G 3        /* two ports only: [I1 V2] = G [V1 I2]                              */
+#define LSTUB_PARAMETER_H 4        /* two ports only: [V1 I2] = H [I1 V2]                              */
+#define LSTUB_PAIR_RI 0            /* real and imaginary part                                          */
+#define LSTUB_PAIR_MA 1            /* magnitude and angle in degrees                                   */
+#define LSTUB_PAIR_DB 2            /* 20 log10 of the magnitude, and angle                             */
+#define LSTUB_UNIT_HZ  0
+#define LSTUB_UNIT_KHZ 1
+#define LSTUB_UNIT_MHZ 2
+#define LSTUB_UNIT_GHZ 3
+#define LSTUB_MATRIX_FULL  0
+#define LSTUB_MATRIX_LOWER 1
+#define LSTUB_MATRIX_UPPER 2
+#define LSTUB_ORDER_21_12 0        /* two ports: second is 21                                          */
+#define LSTUB_ORDER_12_21 1
+#define LSTUB_ROW_SINGLE       0
+#define LSTUB_ROW_DIFFERENTIAL 1
+#define LSTUB_ROW_COMMON       2
+
+typedef struct lstub_touchstone_row {  /* what a row, and the column of its number, of the matrix is   */
+    int32_t kind;                  /* LSTUB_ROW_...                                                    */
+    int32_t port, partner;         /* from 0; differential: port is the positive one; single: partner -1 */
+} lstub_touchstone_row;
+
+typedef struct lstub_touchstone_data { /* what a file holds: the reader gives it, the writer takes it  */
+    size_t  size;
+    int32_t version;               /* 1 or 2; writer: 0: 1                                             */
+    int32_t ports;                 /* 1 to LSTUB_TOUCHSTONE_PORTS                                      */
+    int32_t parameter;             /* LSTUB_PARAMETER_...                                              */
+    int32_t pair, unit;            /* LSTUB_PAIR_..., LSTUB_UNIT_...: of the text only                 */
+    int32_t matrix, order;         /* LSTUB_MATRIX_..., LSTUB_ORDER_...: of the text only; not 0: version 2 */
+    int32_t digits;                /* writer: significant digits, 1 to 17; 0: as few as give the same double
+                                      back. Reader: 0                                                  */
+    size_t  points, noise_points;  /* frequencies; noise data skipped by the reader, 0 for the writer  */
+    const double *freq;            /* [points] Hz, >= 0, rising                                        */
+    const double *data;            /* [2 points ports ports], full, not normalised to the reference    */
+    const double *reference;       /* [ports] ohm, > 0, of each port, in a mode or not; writer: null: 50 */
+    const lstub_touchstone_row *rows;  /* [ports] of mixed-mode data (version 2); null: row i is port i */
+    const char *const *comments; size_t comment_count;  /* lines of the head: what follows the '!'     */
+} lstub_touchstone_data;
+
+typedef struct lstub_source {      /* of bytes: how many came, 0 at the end, more than asked: cannot be read */
+    size_t size;
+    size_t (*read)(void *user, void *buffer, size_t bytes);
+    void  *user;
+} lstub_source;
+
+typedef struct lstub_sink {        /* for bytes: 0, or else writing ends                               */
+    size_t  size;
+    int32_t (*write)(void *user, const void *bytes, size_t count);
+    void   *user;
+} lstub_sink;
+
+typedef struct lstub_touchstone lstub_touchstone;
+
+/*
+** Reads a file of Touchstone 1.0, 1.1, 2.0 or 2.1 as a stream: only the numbers and the head's comments are kept, correctly
+** rounded. Version 1 does not say how many ports it has: ports > 0 does, else a path that ends in .sNp, else the lines:
+** a point begins a line and has 1 + 2 p^2 numbers, all other lines hold whole pairs. Noise data are counted only. What the
+** standard forbids is refused: LSTUB_E_FORMAT, "line 12, column 7: ...", and so is a second option line that differs.
+*/
+LSTUB_API int32_t lstub_touchstone_load(const char *path, int32_t ports, const lstub_allocator *allocator,
+                                        lstub_touchstone **out, lstub_error *err);
+LSTUB_API int32_t lstub_touchstone_parse(const char *text, size_t bytes, int32_t ports, const lstub_allocator *allocator,
+                                         lstub_touchstone **out, lstub_error *err);
+LSTUB_API int32_t lstub_touchstone_read(const lstub_source *source, int32_t ports, const lstub_allocator *allocator,
+                                        lstub_touchstone **out, lstub_error *err);
+LSTUB_API void    lstub_touchstone_destroy(lstub_touchstone *file);              /* null is allowed     */
+/* Its pointers live with the handle. */
+LSTUB_API int32_t lstub_touchstone_get(const lstub_touchstone *file, lstub_touchstone_data *out, lstub_error *err);
+
+/* Writes version 1.1 or 2.0. LOWER and UPPER want symmetry to 1e-12 of the matrix's largest entry. A file appears whole
+** or not at all: LSTUB_E_WRITE leaves what was there. Index of an error: the point. */
+LSTUB_API int32_t lstub_touchstone_write(const lstub_touchstone_data *data, const lstub_sink *sink, lstub_error *err);
+LSTUB_API int32_t lstub_touchstone_save(const lstub_touchstone_data *data, const char *path, lstub_error *err);
+
+/* Ports in another order, or some of them: dst[k][i][j] = src[k][map[i]][map[j]], k < n, i, j < count, no port twice.
+** dst may be src; ports to LSTUB_TOUCHSTONE_PORTS. */
+LSTUB_API int32_t lstub_port_map(const double *src, size_t n, int32_t ports, const int32_t *map, int32_t count,
+                                 double *dst, lstub_error *err);
+
 /* ---- measurements [section: measurements] ---------------------------------------------------------- */
 
 #define LSTUB_QUALITY_GOOD     0   /* or a sum of:                                                     */

@@ -178,11 +178,16 @@ typedef struct lstub_dielectric {
     double f_ref;           /* Hz; 0: 1e9                                           1e5 to 1e11        */
 } lstub_dielectric;
 
+#define LSTUB_ROUGHNESS_HAMMERSTAD 0  /* 1 + (2/pi) atan(1.4 (rms/skin depth)^2) times the loss, at most 2  */
+#define LSTUB_ROUGHNESS_SPHERES    1  /* fourteen spheres stacked on a smooth surface, at most 8.3 times     */
+
 typedef struct lstub_conductor {
-    size_t size;
-    double conductivity;    /* S/m; 0: 5.8e7                                        1e5 to 1e8         */
-    double roughness;       /* rms height, m; 0: smooth                             0 to 20e-6         */
-} lstub_conductor;          /* carried with the stackup; no model of this version uses it             */
+    size_t  size;
+    double  conductivity;   /* S/m; 0: 5.8e7                                        1e5 to 1e8         */
+    double  roughness;      /* rms height, m; 0: smooth                             0 to 20e-6         */
+    int32_t roughness_law;  /* LSTUB_ROUGHNESS_...                                                     */
+    int32_t reserved;
+} lstub_conductor;
 
 /*
 ** Complex relative permittivity over frequency, causal: wideband model of Djordjevic, Biljic,
@@ -195,6 +200,54 @@ LSTUB_API int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectr
                                                 double *through_plane, double *in_plane, lstub_error *err);
 
 /* ---- traces: lines from their cross-section [section: traces] ------------------------------------- */
+
+/* Skin depth sqrt(1/(pi f mu0 conductivity)), m. Textbook. conductivity 1e5 to 1e8 S/m, f 1e3 to 1e12 Hz. */
+LSTUB_API int32_t lstub_skin_depth(double conductivity, double f, double *depth, lstub_error *err);
+/*
+** Impedance of the surface of thick copper, ohm per square: (1 + j)/(conductivity depth) K. K is complex and causal:
+** its effect on the resistance is the published one of the law, the reactance follows from it (docs/theory.md).
+** In   freq[n] Hz, 1e3 to 1e12.   Out  z[2 n], 0 < re <= im.
+** HAMMERSTAD  Hammerstad, Jensen, MTT-S 1980.
+** SPHERES     Huray et al., DesignCon 2010, for the stack of Simonovich, 2015: 14 spheres of radius 0.06 Rz on a square
+**             of six radii. Rz = 2 sqrt(3) rms, as of a surface of triangles: with a measured Rz, roughness = Rz/3.4641.
+*/
+LSTUB_API int32_t lstub_conductor_surface_impedance(const lstub_conductor *conductor, const double *freq, size_t n,
+                                                    double *z, lstub_error *err);
+
+#define LSTUB_TRACE_MICROSTRIP 0   /* one plane, below                                                 */
+#define LSTUB_TRACE_STRIPLINE  1   /* a plane below and a plane above                                  */
+
+typedef struct lstub_trace {       /* "below" is towards the plane of a microstrip: mirrored on a board's bottom */
+    size_t  size;
+    int32_t kind;                  /* LSTUB_TRACE_...                                                  */
+    int32_t reserved;
+    double  width;                 /* m                                                 1e-6 to 0.01   */
+    double  thickness;             /* of its copper, m; 0: a sheet, and no conductor loss    0 to 1e-3 */
+    double  height_below;          /* from its lower face to the plane, m               1e-6 to 0.01   */
+    double  height_above;          /* stripline: from its upper face to the plane, m    1e-6 to 0.01;
+                                      microstrip: 0                                                    */
+    const lstub_dielectric *dielectric_below;  /* needed                                               */
+    const lstub_dielectric *dielectric_above;  /* null: as below; of a microstrip: air. Fills all above it,
+                                      with a Dk no greater than below: a thin mask lies between the two */
+    const lstub_conductor  *conductor;         /* of trace and planes; null: smooth, 5.8e7 S/m         */
+} lstub_trace;
+
+/*
+** Characteristic impedance and propagation constant of a trace, lossy and dispersive: Z = sqrt(Z'/Y') ohm and
+** gamma = sqrt(Z' Y') per metre, with Z' = jw L' + strip and planes, Y' = jw C'.
+** Microstrip  L', C': Hammerstad, Jensen 1980, with their thickness correction, within 0.2 percent for 0.01 < w/h < 100;
+**             dispersion: Kirschning, Jansen 1982, within 0.6 percent for w/h from 0.1, Dk up to 20, h below 0.13 wavelengths.
+** Stripline   exact for a thin strip at any height, of one dielectric (Cohn 1954 where centred); thick: Wheeler 1978.
+**             Two dielectrics mix by their share of the energy.
+** Both        causal dielectrics, in-plane Dk by stretching the heights; conductor by the rule of incremental
+**             inductance (Wheeler 1942) with the surface impedance above, down to the direct-current resistance of
+**             the strip. Causal and passive; only the dispersion of a microstrip, one mode's, is real.
+** In   freq[n] Hz, 1e3 to 1e12.   Out  z[2 n], gamma[2 n] (re, im; re > 0, im of gamma > 0); each may be null.
+** Ret  LSTUB_W_RANGE outside the ranges above, for a stripline above its first waveguide mode, c/(sqrt(Dk)(2 w + pi b/2)),
+**      where one Dk is more than twice the other, and where a large loss tangent drives a Dk below 1.
+*/
+LSTUB_API int32_t lstub_trace_line(const lstub_trace *trace, const double *freq, size_t n, double *z, double *gamma,
+                                   lstub_error *err);
 
 /* ---- networks: S-parameters [section: networks] ---------------------------------------------------
 **
@@ -302,9 +355,9 @@ LSTUB_API int32_t lstub_insertion_loss_deviation(const double *freq, const doubl
 #define LSTUB_PARAMETER_Z 2        /* ohm                                                              */
 #define LSTUB_PARAMETER_G 3        /* two ports only: [I1 V2] = G [V1 I2]                              */
 #define LSTUB_PARAMETER_H 4        /* two ports only: [V1 I2] = H [I1 V2]                              */
-#define LSTUB_PAIR_RI 0            /* real and imaginary part                                          */
-#define LSTUB_PAIR_MA 1            /* magnitude and angle in degrees                                   */
-#define LSTUB_PAIR_DB 2            /* 20 log10 of the magnitude, and angle                             */
+#define LSTUB_FORMAT_RI 0          /* real and imaginary part                                          */
+#define LSTUB_FORMAT_MA 1          /* magnitude and angle in degrees                                   */
+#define LSTUB_FORMAT_DB 2          /* 20 log10 of the magnitude, and angle                             */
 #define LSTUB_UNIT_HZ  0
 #define LSTUB_UNIT_KHZ 1
 #define LSTUB_UNIT_MHZ 2
@@ -328,7 +381,7 @@ typedef struct lstub_touchstone_data { /* what a file holds: the reader gives it
     int32_t version;               /* 1 or 2; writer: 0: 1                                             */
     int32_t ports;                 /* 1 to LSTUB_TOUCHSTONE_PORTS                                      */
     int32_t parameter;             /* LSTUB_PARAMETER_...                                              */
-    int32_t pair, unit;            /* LSTUB_PAIR_..., LSTUB_UNIT_...: of the text only                 */
+    int32_t format, unit;          /* LSTUB_FORMAT_..., LSTUB_UNIT_...: of the text only               */
     int32_t matrix, order;         /* LSTUB_MATRIX_..., LSTUB_ORDER_...: of the text only; not 0: version 2 */
     int32_t digits;                /* writer: significant digits, 1 to 17; 0: as few as give the same double
                                       back. Reader: 0                                                  */

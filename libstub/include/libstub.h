@@ -348,13 +348,8 @@ LSTUB_API int32_t lstub_insertion_loss_deviation(const double *freq, const doubl
 
 /* ---- Touchstone [section: touchstone] -------------------------------------------------------------- */
 
-#define LSTUB_TOUCHSTONE_PORTS 16  /* at most                                                          */
-
-#define LSTUB_PARAMETER_S 0
-#define LSTUB_PARAMETER_Y 1        /* S                                                                */
-#define LSTUB_PARAMETER_Z 2        /* ohm                                                              */
-#define LSTUB_PARAMETER_G 3        /* two ports only: [I1 V2] = G [V1 I2]                              */
-#define LSTUB_PARAMETER_H 4        /* two ports only: [V1 I2] = H [I1 V2]                              */
+#define LSTUB_NETWORK_G 5          /* of files only, two ports: (I1, V2) = G (V1, I2)                  */
+#define LSTUB_NETWORK_H 6          /* of files only, two ports: (V1, I2) = H (I1, V2)                  */
 #define LSTUB_FORMAT_RI 0          /* real and imaginary part                                          */
 #define LSTUB_FORMAT_MA 1          /* magnitude and angle in degrees                                   */
 #define LSTUB_FORMAT_DB 2          /* 20 log10 of the magnitude, and angle                             */
@@ -379,8 +374,8 @@ typedef struct lstub_touchstone_row {  /* what a row, and the column of its numb
 typedef struct lstub_touchstone_data { /* what a file holds: the reader gives it, the writer takes it  */
     size_t  size;
     int32_t version;               /* 1 or 2; writer: 0: 1                                             */
-    int32_t ports;                 /* 1 to LSTUB_TOUCHSTONE_PORTS                                      */
-    int32_t parameter;             /* LSTUB_PARAMETER_...                                              */
+    int32_t ports;                 /* 1 to LSTUB_PORTS_MAX                                             */
+    int32_t parameter;             /* LSTUB_NETWORK_S, _Z, _Y, _G or _H; writer: 0: S                  */
     int32_t format, unit;          /* LSTUB_FORMAT_..., LSTUB_UNIT_...: of the text only               */
     int32_t matrix, order;         /* LSTUB_MATRIX_..., LSTUB_ORDER_...: of the text only; not 0: version 2 */
     int32_t digits;                /* writer: significant digits, 1 to 17; 0: as few as give the same double
@@ -429,7 +424,7 @@ LSTUB_API int32_t lstub_touchstone_write(const lstub_touchstone_data *data, cons
 LSTUB_API int32_t lstub_touchstone_save(const lstub_touchstone_data *data, const char *path, lstub_error *err);
 
 /* Ports in another order, or some of them: dst[k][i][j] = src[k][map[i]][map[j]], k < n, i, j < count, no port twice.
-** dst may be src; ports to LSTUB_TOUCHSTONE_PORTS. */
+** dst may be src. */
 LSTUB_API int32_t lstub_port_map(const double *src, size_t n, int32_t ports, const int32_t *map, int32_t count,
                                  double *dst, lstub_error *err);
 

@@ -1,7 +1,8 @@
 /*
-** The cavity model of one piece of barrel: radial modes in every slab between two levels, matched on annuli.
+** The cavity model of a barrel: radial modes in every slab between two levels, matched on annuli.
 **
-** A barrel is described from the copper layer it hangs on downwards (mirror it for a stub at the top). All lengths
+** A barrel is described downwards: a stub from the copper layer it hangs on (mirror it for a stub at the top), a whole
+** transition from the opening that feeds it or from its open upper end, with traces that leave at taps. All lengths
 ** are radii and heights in metres; permittivities are given per frequency, one complex number a medium, so that
 ** the compiled model does not depend on the law of dispersion; in-plane over through-plane is fixed.
 */
@@ -34,13 +35,21 @@ typedef struct lstub__cav_layer {
     int    medium;
 } lstub__cav_layer;
 
-typedef struct lstub__cav_via { double x, y, radius; } lstub__cav_via;
+typedef struct lstub__cav_via {
+    double x, y, radius;
+    double from, to;                /* depths that it joins; both 0: all                                */
+} lstub__cav_via;
 
 typedef struct lstub__cav_returns {     /* what answers the barrel's radial wave                             */
     const lstub__cav_via *via;          /* about the barrel's axis                                           */
     int    vias;
     int    even;                        /* > 0: via[0] alone is given, on the x axis, and stands for so many */
-    double pitch, sign;                 /* an equal barrel at (pitch, 0), driven with this sign; pitch 0: none */
+    double pitch, sign;                 /* an equal barrel at (pitch, 0), driven with this sign; pitch 0: none. Sign 0: a
+                                           barrel of its own (partner below)                              */
+    int    flux;                        /* a field across the barrel threads the openings (cavity_flux.c)  */
+    int    slot;                        /* ... which are slots around both barrels                        */
+    double opening, height;             /* ... their mean radius (of a slot's round ends), mean plate distance */
+    double pull;                        /* F, of the partner's end pad on this one's, counted at the last plane */
 } lstub__cav_returns;
 
 #define LSTUB__CAV_OPEN 0           /* plate pairs without edge: the radial wave leaves                 */
@@ -50,9 +59,21 @@ typedef struct lstub__cav_returns {     /* what answers the barrel's radial wave
 #define LSTUB__CAV_HALFSPACE 0
 #define LSTUB__CAV_LID       1
 
+#define LSTUB__CAV_FED  0           /* the opening of copper[0] is fed by a coaxial line: depth 0 is its lower face */
+#define LSTUB__CAV_FREE 1           /* the barrel's upper end is open: depth 0 is the upper face of copper[0]       */
+
+#define LSTUB__CAV_TAPS 4
+
+typedef struct lstub__cav_cut {     /* where one barrel begins and ends, and where its traces leave      */
+    double begin;                   /* depth; 0: at the top                                             */
+    double end;                     /* depth where a drilled barrel ends; 0: at the last lower face      */
+    int    taps;
+    double tap[LSTUB__CAV_TAPS];    /* depths, falling on a pad's middle or within a dielectric; rising   */
+} lstub__cav_cut;
+
 typedef struct lstub__cav_barrel {
     double radius;
-    const lstub__cav_copper *copper;    /* [0]: the layer the stub hangs on; its lower face is z = 0     */
+    const lstub__cav_copper *copper;    /* [0]: the layer the stub hangs on or the barrel begins on       */
     const lstub__cav_layer  *layer;     /* layer[k] lies between copper[k] and copper[k + 1]             */
     int    layers;                      /* copper has one more                                           */
     int    media;
@@ -62,12 +83,15 @@ typedef struct lstub__cav_barrel {
     lstub__cav_returns returns;
     double end;                         /* depth where a drilled barrel ends; 0: at the last lower face  */
     double hole;                        /* radius of the drilled hole                                    */
-    int    fill;                        /* medium in it                                                  */
+    int    fill;                        /* medium in it; -1: that of each layer                          */
     int    below;                       /* LSTUB__CAV_HALFSPACE ...                                      */
     int    below_medium;
     double lid;                         /* height of the space under a lid                               */
-    double tap;                         /* depth where a trace leaves between two planes; 0: none        */
-    double tap_pad;                     /* radius of the pad there, 0: none                              */
+    int    top;                         /* LSTUB__CAV_FED ...; what lies above a free end is as below     */
+    double begin;                       /* as in lstub__cav_cut                                           */
+    int    taps;
+    double tap[LSTUB__CAV_TAPS];
+    const lstub__cav_cut *partner;      /* the other barrel at (pitch, 0) in the same cascade; null: none */
 } lstub__cav_barrel;
 
 typedef struct lstub__cav_options {
@@ -92,9 +116,14 @@ double lstub__cavity_limit(const lstub__cavity *cavity, const cplx *eps);
 /* Input impedance of the TEM wave in the opening of copper[0], at z = 0. eps[media]: complex, through-plane. */
 cplx lstub__cavity_zin(const lstub__cavity *cavity, double freq, const cplx *eps);
 
-/* With a trace at `tap`: z[0] as above, z[1] = volts on the trace per ampere into the opening, no current in the trace, z[2] =
-** volts per ampere into the trace (with the self term of a uniform sheet current, to be taken off). A stub notches the
-** path where z[1] passes zero. */
-void lstub__cavity_ports(const lstub__cavity *cavity, double freq, const cplx *eps, cplx z[3]);
+/*
+** Open-circuit impedances of all ports, z[ports][ports]: of each barrel the feed, where it is fed, then its taps. The feed's are
+** those of the TEM wave in the opening at depth 0; a tap's include the self term of the uniform sheet current, which the
+** caller takes off. Returns the number of ports, -1 (and NaN) where a matrix is singular.
+*/
+#define LSTUB__CAV_PORTS (2 * (LSTUB__CAV_TAPS + 1))
+int lstub__cavity_ports(const lstub__cavity *cavity, double freq, const cplx *eps, cplx *z);
+/* Amplitude of I0(kappa rho) that answers K0(kappa rho) from the barrel, in a cavity of this medium between two depths. */
+cplx lstub__cavity_answer(const lstub__cav_returns *returns, double from, double to, cplx kappa);
 
 #endif

@@ -24,10 +24,14 @@ typedef struct work {
     int        *place;                      /* [kinds][2 points] where top's, then bottom's rims are in it   */
     int         rims[CAV_SLABS + 4];        /* of each face: number of its set of rims                       */
     int         rim_sets;
+    cav_answer  answer[CAV_ANSWERS];
+    int         answers;
     double      k_max;
 } work;
 
 #define WIDE (2 * LSTUB__CAV_POINTS)
+
+static int all_slabs(const work *w) { return w->mesh->barrels * w->mesh->slabs; }
 
 static void *get(const work *w, size_t bytes) { return w->allocate(w->user, bytes); }
 static void put(const work *w, void *p) { if (p != NULL) w->release(w->user, p); }
@@ -66,7 +70,7 @@ static void number_slabs(work *w)
     int i, k;
 
     w->kinds = 0;
-    for (i = 0; i < w->mesh->slabs; i++) {
+    for (i = 0; i < all_slabs(w); i++) {
         const cav_slab *s = &w->mesh->slab[i];
         for (k = 0; k < w->kinds; k++) if (alike(w, s, &w->mesh->slab[w->sample[k]])) break;
         if (k == w->kinds) w->sample[w->kinds++] = i;
@@ -191,23 +195,26 @@ static void add_half_space(const work *w, const cav_face *face, double *b)
 }
 
 /*
-** The static field of a face, its neighbours shorted: B v = lambda 1, sum v = 1. Only the shape within a cell is used: how
-** the field rises towards a rim.
+** The static field of a face between two slabs (second -1: a half-space), its neighbours shorted: B v = lambda 1, sum v = 1.
+** `copper`: slab of a copper layer whose two faces, `face` and `other`, carry the same field. Only the shape within a cell is
+** used: how the field rises towards a rim.
 */
-static void shape_face(const work *w, int face, int above, int copper, int below)
+static void shape_face(const work *w, int face, int first, int copper, int other, int second)
 {
     double b[(LSTUB__CAV_POINTS - 1) * (LSTUB__CAV_POINTS - 1)], v[LSTUB__CAV_POINTS], sum = 0.0, total;
     double f[LSTUB__CAV_POINTS * LSTUB__CAV_POINTS];
-    const cav_mesh *mesh = w->mesh;
     cav_face *a = &w->face[face];
-    int n = a->points - 1, i, k, first = above, second = below;
+    int n = a->points - 1, i, k, first_face = face, second_face = other;
 
     if (a->refine == 1 || a->shaped == 0) return;
     memset(b, 0, sizeof b);
     /* alike from above and below must come out alike to the last bit: sum in the order of kinds */
-    if (second >= 0 && w->kind[second] < w->kind[first]) { first = below; second = above; }
-    add_side(w, first, first == above ? mesh->slab[first].bottom : mesh->slab[first].top, 0, b, f);
-    if (second >= 0) add_side(w, second, second == above ? mesh->slab[second].bottom : mesh->slab[second].top, 0, b, f);
+    if (second >= 0 && w->kind[second] < w->kind[first]) {
+        i = first; first = second; second = i;
+        first_face = other; second_face = face;
+    }
+    add_side(w, first, first_face, 0, b, f);
+    if (second >= 0) add_side(w, second, second_face, 0, b, f);
     else add_half_space(w, a, b);
     if (copper >= 0) add_side(w, copper, face, 1, b, f);
     for (i = 0; i < n; i++) v[i] = 1.0;
@@ -227,23 +234,51 @@ static void shape_face(const work *w, int face, int above, int copper, int below
     }
 }
 
-/* Both faces of a copper layer take one shape, so that a thin layer can pass the field on as it is. */
+/* A face and, where the copper layer below it has the same rims, that layer's lower face: both take one shape, so that a thin
+** layer can pass the field on as it is. Slab `above` is -1 under a half-space. Returns the slab above the next face. */
+static int shape_next(const work *w, int face, int above, int below, int end)
+{
+    const cav_mesh *mesh = w->mesh;
+    int other = below >= 0 && mesh->slab[below].copper ? mesh->slab[below].bottom : -1, after = below + 1 < end ? below + 1 : -1;
+
+    if (other < 0 || w->rims[other] != w->rims[face] || (above < 0 && after < 0)) {
+        if (above < 0) shape_face(w, face, below, -1, face, -1);
+        else shape_face(w, face, above, -1, face, below);
+        return below;
+    }
+    if (above < 0) shape_face(w, other, after, below, other, -1);
+    else shape_face(w, face, above, below, other, after);
+    if (above < 0) {
+        w->face[face].plain = w->face[other].plain;
+        memcpy(w->face[face].share, w->face[other].share, sizeof w->face[face].share);
+    } else {
+        w->face[other].plain = w->face[face].plain;
+        memcpy(w->face[other].share, w->face[face].share, sizeof w->face[face].share);
+    }
+    return after;
+}
+
 static void shape_faces(const work *w)
 {
     const cav_mesh *mesh = w->mesh;
-    int i;
+    int b, i;
 
-    shape_face(w, mesh->feed_face, CAV_FEED - 1, -1, CAV_FEED);
-    for (i = CAV_FEED; i < mesh->slabs; i++) {
-        int face = mesh->slab[i].bottom, next = i + 1 < mesh->slabs ? i + 1 : -1, other, after;
-        if (face < 0) continue;
-        other = next >= 0 && mesh->slab[next].copper ? mesh->slab[next].bottom : -1;
-        if (other < 0 || w->rims[other] != w->rims[face]) { shape_face(w, face, i, -1, next); continue; }
-        after = next + 1 < mesh->slabs ? next + 1 : -1;
-        shape_face(w, face, i, next, after);
-        w->face[other].plain = w->face[face].plain;
-        memcpy(w->face[other].share, w->face[face].share, sizeof w->face[face].share);
-        i = next;                               /* its lower face is done */
+    for (b = 0; b < mesh->barrels; b++) {
+        int start = b * mesh->slabs, end = start + mesh->slabs;
+
+        i = start;
+        if (mesh->feed > 0) {
+            shape_face(w, mesh->first_face[b], start + CAV_FEED - 1, -1, mesh->first_face[b], start + CAV_FEED);
+            i = start + CAV_FEED;
+        } else if (mesh->open_top) {
+            i = shape_next(w, mesh->first_face[b], -1, start, end);
+        }
+        while (i >= 0 && i < end) {
+            const cav_slab *s = &mesh->slab[i];
+            int face = i == start && mesh->feed == 0 && !mesh->open_top ? s->top : s->bottom;    /* a lid's slab is turned over */
+            if (face < 0) break;
+            i = shape_next(w, face, i, i + 1 < end ? i + 1 : -1, end);
+        }
     }
 }
 
@@ -365,7 +400,7 @@ static void number_openings(const work *w, plan *n)
         n->opening[f] = g;
     }
     n->kernels = 0;
-    for (i = 0; i < w->mesh->slabs; i++) {
+    for (i = 0; i < all_slabs(w); i++) {
         const cav_slab *s = &w->mesh->slab[i];
         for (k = 0; k < n->kernels; k++) {
             const cav_slab *t = &w->mesh->slab[n->first_slab[k]];
@@ -434,6 +469,29 @@ static void pack_kernels(const work *w, const plan *n, pack *p, const cav_openin
     }
 }
 
+/* Slabs whose waves are answered alike: by the same vias, with or without the barrel itself, in the same dielectric. */
+static int number_answers(cav_mesh *mesh, cav_answer *list)
+{
+    int count = 0, i, k;
+
+    for (i = 0; i < mesh->barrels * mesh->slabs; i++) {
+        cav_slab *s = &mesh->slab[i % mesh->slabs], *own = &mesh->slab[i];
+        int barrels = (s->r_in > 0.0 ? 1 : 0) | (mesh->barrels > 1 && mesh->slab[i % mesh->slabs + mesh->slabs].r_in > 0.0 ? 2 : 0);
+
+        own->answer = -1;
+        if (own->outer != LSTUB__CAV_RING) continue;
+        for (k = 0; k < count; k++) if (list[k].vias == own->vias && list[k].barrels == barrels && list[k].medium == own->medium) break;
+        if (k == CAV_ANSWERS) return -2;
+        if (k == count) {
+            list[count].vias = own->vias;
+            list[count].barrels = barrels;
+            list[count++].medium = own->medium;
+        }
+        own->answer = k;
+    }
+    return count;
+}
+
 static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
 {
     const cav_mesh *mesh = w->mesh;
@@ -441,37 +499,53 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
     cav_opening *opening;
     cav_kernel *kernel;
     lstub__cav_via *via;
-    double *half = NULL;
-    int i;
+    double *half[3] = { NULL, NULL, NULL };
+    int half_face[3], i, b;
 
+    half_face[0] = mesh->half_face[0];
+    half_face[1] = mesh->barrels > 1 ? mesh->half_face[1] : -1;
+    half_face[2] = mesh->open_top ? mesh->first_face[0] : -1;
     take(p, sizeof *m);
-    slab = take(p, (size_t)mesh->slabs * sizeof *slab);
+    slab = take(p, (size_t)all_slabs(w) * sizeof *slab);
     opening = take(p, (size_t)n->openings * sizeof *opening);
     kernel = take(p, (size_t)n->kernels * sizeof *kernel);
     via = take(p, (size_t)w->barrel->returns.vias * sizeof *via);
-    if (mesh->half_face >= 0) {
-        size_t cells = (size_t)w->face[mesh->half_face].cells;
-        half = take(p, 4 * cells * cells * sizeof *half);
+    for (i = 0; i < 3; i++) {
+        size_t cells = half_face[i] >= 0 ? (size_t)w->face[half_face[i]].cells : 0;
+        half[i] = take(p, 4 * cells * cells * sizeof *half[i]);
     }
     pack_openings(w, n, p, opening);
     pack_kernels(w, n, p, opening, kernel);
     if (m == NULL) return;
-    for (i = 0; i < mesh->slabs; i++) {
+    for (i = 0; i < all_slabs(w); i++) {
         slab[i] = mesh->slab[i];
         slab[i].top = n->opening[slab[i].top];
         if (slab[i].bottom >= 0) slab[i].bottom = n->opening[slab[i].bottom];
         slab[i].kernel = n->kernel[i];
     }
     if (w->barrel->returns.vias > 0) memcpy(via, w->barrel->returns.via, (size_t)w->barrel->returns.vias * sizeof *via);
-    if (half != NULL) cav_half_space(&w->face[mesh->half_face], opening[n->opening[mesh->half_face]].c, half);
-    m->slabs = mesh->slabs; m->openings = n->openings; m->kernels = n->kernels; m->media = w->barrel->media;
+    for (i = 0; i < 3; i++)
+        if (half_face[i] >= 0) cav_half_space(&w->face[half_face[i]], opening[n->opening[half_face[i]]].c, half[i]);
+    m->barrels = mesh->barrels; m->slabs = mesh->slabs; m->openings = n->openings; m->kernels = n->kernels; m->media = w->barrel->media;
+    m->feed = mesh->feed; m->lid_top = mesh->feed == 0 && !mesh->open_top;
     m->returns = w->barrel->returns; m->returns.via = via; m->outer = w->barrel->outer; m->rim_sets = w->rim_sets;
-    m->half_opening = mesh->half_face >= 0 ? n->opening[mesh->half_face] : -1;
+    for (b = 0; b < 2; b++) {
+        const lstub__cav_cut *cut = b == 1 ? w->barrel->partner : NULL;
+        m->taps[b] = b == 0 ? w->barrel->taps : cut != NULL ? cut->taps : 0;
+        m->cap_tap[b] = b < mesh->barrels && mesh->feed == 0 ? mesh->cap_tap[b] : -1;
+        m->half_opening[b] = half_face[b] >= 0 ? n->opening[half_face[b]] : -1;
+        m->half[b] = half[b];
+        m->cap_opening[b] = b >= mesh->barrels || mesh->feed > 0 ? -1 : n->opening[mesh->open_top ? mesh->first_face[b] : mesh->slab[b * mesh->slabs].top];
+    }
+    m->half_top = half[2];
     m->half_medium = w->barrel->below_medium;
-    m->port_log = w->face[mesh->tem_face].log_x[1] - w->face[mesh->tem_face].log_x[0];
+    m->radius = w->barrel->radius;
+    m->port_log = mesh->feed > 0 ? w->face[mesh->first_face[0] + 1].log_x[1] - w->face[mesh->first_face[0] + 1].log_x[0] : 0.0;
     m->port_medium = w->barrel->copper[0].medium;
     m->feed_length = mesh->feed_height * CAV_FEED;
-    m->slab = slab; m->opening = opening; m->kernel = kernel; m->half = half;
+    m->slab = slab; m->opening = opening; m->kernel = kernel;
+    m->answers = w->answers;
+    memcpy(m->answer, w->answer, sizeof m->answer);
     for (i = 0; i < m->media; i++) m->ratio[i] = w->barrel->medium[i].ratio;
 }
 
@@ -481,6 +555,8 @@ static int build(work *w, lstub__cavity **out)
     pack p = { NULL, 0 };
     int failed;
 
+    w->answers = number_answers(w->mesh, w->answer);
+    if (w->answers < 0) return -2;
     number_rims(w);
     number_slabs(w);
     w->series = get(w, (size_t)w->kinds * sizeof *w->series);
@@ -503,7 +579,13 @@ static int build(work *w, lstub__cavity **out)
     (*out)->user = w->user;
     p.at = 0;
     pack_model(w, &n, &p, *out);
-    return 0;
+    if (w->barrel->returns.flux) {
+        void *scratch = get(w, cav_flux_scratch());
+        failed = scratch == NULL ? -1 : cav_flux_prepare(*out, w->barrel->medium, scratch);
+        put(w, scratch);
+        if (failed) { lstub__cavity_destroy(*out); *out = NULL; }
+    }
+    return failed;
 }
 
 int lstub__cavity_compile(const lstub__cav_barrel *barrel, const lstub__cav_options *options,
@@ -526,7 +608,7 @@ int lstub__cavity_compile(const lstub__cav_barrel *barrel, const lstub__cav_opti
     }
     failed = w == NULL || scratch == NULL || w->mesh == NULL || w->face == NULL ? -1 : 0;
     if (!failed && ((cells + 3) * refine + 1 > LSTUB__CAV_POINTS || cells + 3 > LSTUB__CAV_CELLS
-                    || barrel->media > LSTUB__CAV_MEDIA || barrel->returns.vias > LSTUB__CAV_VIAS)) failed = -2;
+                    || barrel->media > LSTUB__CAV_MEDIA || barrel->returns.vias > LSTUB__CAV_VIAS || (barrel->partner != NULL && 2 * (cells + 4) > LSTUB__CAV_CELLS))) failed = -2;
     if (!failed) {
         w->mesh->face = w->face;
         failed = cav_mesh_make(barrel, cells, refine, scratch, w->mesh);

@@ -29,17 +29,30 @@ typedef struct part {               /* a slab as it is cut, before faces */
     double   thin_pad;              /* radius of a pad, 0: none */
 } part;
 
-typedef struct parts {
-    part *list;
-    int   count;
+typedef struct parts {              /* of one barrel */
+    part  *list;
+    int    count;
+    double cap_antipad, cap_pad;    /* copper without thickness on top of all */
+    const lstub__cav_cut *own;
+    double cut[2 * (LSTUB__CAV_TAPS + 2)];      /* depths where both barrels are cut, rising */
+    int    cuts;
 } parts;
 
 static int same_slab(const part *a, const part *b)
 {
     const cav_slab *x = &a->slab, *y = &b->slab;
 
-    return a->thin_antipad == 0.0 && a->thin_pad == 0.0 && !a->keep && !b->keep && a->antipad == 0.0 && b->antipad == 0.0 && x->r_in == y->r_in && x->medium == y->medium
-        && x->fill == y->fill && x->outer == y->outer;
+    return a->thin_antipad == 0.0 && a->thin_pad == 0.0 && x->tap < 0 && !a->keep && !b->keep && a->antipad == 0.0 && b->antipad == 0.0
+        && x->r_in == y->r_in && x->medium == y->medium && x->fill == y->fill && x->outer == y->outer && x->vias == y->vias;
+}
+
+static void add_thin(parts *all, double r_in, double antipad, int keep)
+{
+    double *thin_antipad = all->count > 0 ? &all->list[all->count - 1].thin_antipad : &all->cap_antipad;
+    double *thin_pad = all->count > 0 ? &all->list[all->count - 1].thin_pad : &all->cap_pad;
+
+    if (antipad > 0.0 && (*thin_antipad == 0.0 || antipad < *thin_antipad)) *thin_antipad = antipad;
+    if (keep && r_in > *thin_pad) *thin_pad = r_in;
 }
 
 static int add_part(const lstub__cav_barrel *barrel, parts *all, double top, double bottom, double r_in, double antipad,
@@ -48,11 +61,7 @@ static int add_part(const lstub__cav_barrel *barrel, parts *all, double top, dou
     part p;
 
     if (bottom - top < TINY) {                  /* too thin for a slab: what is left is its copper */
-        if (all->count > 0) {
-            part *q = &all->list[all->count - 1];
-            if (antipad > 0.0 && (q->thin_antipad == 0.0 || antipad < q->thin_antipad)) q->thin_antipad = antipad;
-            if (keep && r_in > q->thin_pad) q->thin_pad = r_in;
-        }
+        add_thin(all, r_in, antipad, keep);
         return 0;
     }
     memset(&p, 0, sizeof p);
@@ -68,70 +77,126 @@ static int add_part(const lstub__cav_barrel *barrel, parts *all, double top, dou
     p.slab.copper = antipad > 0.0 || (keep && r_in > barrel->radius);
     p.slab.outer = antipad > 0.0 ? LSTUB__CAV_WALL : barrel->outer;
     p.slab.r_out = antipad > 0.0 ? antipad : barrel->outer == LSTUB__CAV_WALL ? barrel->wall : 0.0;
+    p.slab.tap = -1;
     if (p.slab.fill == medium) p.slab.fill = -1;
-    if (all->count > 0 && same_slab(&all->list[all->count - 1], &p)) {
-        part *q = &all->list[all->count - 1];
-        q->bottom = bottom;
-        q->slab.h = q->bottom - q->top;
-        return 0;
-    }
-    if (all->count >= CAV_SLABS) return -2;
+    if (all->count >= CAV_SLABS / 2) return -2;
     all->list[all->count++] = p;
     return 0;
 }
 
-/* A level from top to bottom, cut where the drilled barrel ends. */
-static int add_level(const lstub__cav_barrel *barrel, parts *all, double top, double bottom, double end, double r_in,
-                     double antipad, int medium, int keep)
+/* A level from top to bottom, cut where a barrel begins or ends and where a trace leaves. */
+static int add_level(const lstub__cav_barrel *barrel, parts *all, double top, double bottom, double r_in, double antipad,
+                     int medium, int keep)
 {
-    double cut = end < top ? top : end > bottom ? bottom : end;
-    int failed = 0;
+    double end = all->own->end > 0.0 ? all->own->end : INFINITY, at = top;
+    int failed = 0, i;
 
-    if (cut > top || bottom <= top) failed = add_part(barrel, all, top, cut, end < top ? 0.0 : r_in, antipad, medium, keep && end >= top, 0);
-    if (!failed && bottom > cut) failed = add_part(barrel, all, cut, bottom, 0.0, antipad, medium, 0, barrel->end > 0.0);
+    for (i = 0; i <= all->cuts && !failed; i++) {
+        double next = i < all->cuts ? all->cut[i] : bottom, middle;
+        int inside;
+        if (next < bottom && (next <= at + TINY || next >= bottom - TINY)) continue;    /* nothing thinner than that is cut off */
+        if (next > bottom) next = bottom;
+        middle = 0.5 * (at + next);
+        inside = middle >= all->own->begin && middle <= end;
+        failed = add_part(barrel, all, at, next, inside ? r_in : 0.0, antipad, medium, keep && inside, !inside);
+        at = next;
+        if (next >= bottom) break;
+    }
     return failed;
 }
 
 static int cut_barrel(const lstub__cav_barrel *barrel, parts *all)
 {
-    double z = 0.0, end = barrel->end > 0.0 ? barrel->end : INFINITY;
+    double z = 0.0;
     int k, failed = 0;
 
     all->count = 0;
-    for (k = 0; k < barrel->layers && !failed; k++) {
-        const lstub__cav_copper *c = &barrel->copper[k + 1];
-        double next = z + barrel->layer[k].thickness, pad = c->pad > barrel->radius ? c->pad : barrel->radius;
+    all->cap_antipad = all->cap_pad = 0.0;
+    if (barrel->top == LSTUB__CAV_FREE && barrel->below == LSTUB__CAV_LID)
+        failed = add_part(barrel, all, -barrel->lid, 0.0, 0.0, 0.0, barrel->below_medium, 1, 0);
+    for (k = barrel->top == LSTUB__CAV_FREE ? 0 : 1; k <= barrel->layers && !failed; k++) {
+        const lstub__cav_copper *c = &barrel->copper[k];
+        double next = k > 0 ? z + barrel->layer[k - 1].thickness : z, pad = c->pad > barrel->radius ? c->pad : barrel->radius;
 
-        failed = add_level(barrel, all, z, next, end, barrel->radius, 0.0, barrel->layer[k].medium, 0);
+        if (k > 0) failed = add_level(barrel, all, z, next, barrel->radius, 0.0, barrel->layer[k - 1].medium, 0);
         z = next + c->thickness;
-        if (!failed) failed = add_level(barrel, all, next, z, end, pad, c->antipad, c->medium, c->pad > 0.0);
+        if (!failed) failed = add_level(barrel, all, next, z, pad, c->antipad, c->medium, c->pad > 0.0);
     }
     if (!failed && barrel->below == LSTUB__CAV_LID)
         failed = add_part(barrel, all, z, z + barrel->lid, 0.0, 0.0, barrel->below_medium, 1, 0);
     return failed;
 }
 
-/* Cuts the part that holds the trace in two. */
-static int cut_at_tap(const lstub__cav_barrel *barrel, parts *all)
+static void add_cut(parts *all, double depth)
 {
-    part *upper;
     int i;
 
-    for (i = 0; i < all->count; i++) {
-        if (barrel->tap <= all->list[i].top + TINY || barrel->tap >= all->list[i].bottom - TINY) continue;
-        if (all->count >= CAV_SLABS) return -2;
-        memmove(&all->list[i + 1], &all->list[i], (size_t)(all->count - i) * sizeof all->list[0]);
-        all->count++;
-        upper = &all->list[i];
-        upper->bottom = upper[1].top = barrel->tap;
-        upper->slab.h = upper->bottom - upper->top;
-        upper[1].slab.h = upper[1].bottom - upper[1].top;
-        upper->thin_antipad = 0.0;
-        upper->thin_pad = barrel->tap_pad;
-        upper->slab.tap = 1;
-        return 0;
+    if (depth <= 0.0) return;
+    for (i = all->cuts++; i > 0 && all->cut[i - 1] > depth; i--) all->cut[i] = all->cut[i - 1];
+    all->cut[i] = depth;
+}
+
+static void all_cuts(parts *all, const lstub__cav_cut *cut)
+{
+    int i;
+
+    add_cut(all, cut->begin);
+    add_cut(all, cut->end);
+    for (i = 0; i < cut->taps; i++) add_cut(all, cut->tap[i]);
+}
+
+/* Marks the slabs at whose lower face a trace leaves; the uppermost face is marked in *cap. */
+static int mark_taps(parts *all, int *cap)
+{
+    int i, k;
+
+    *cap = -1;
+    for (i = 0; i < all->own->taps; i++) {
+        if (fabs(all->own->tap[i] - all->list[0].top) <= TINY) { *cap = i; continue; }
+        for (k = 0; k < all->count; k++) if (fabs(all->own->tap[i] - all->list[k].bottom) <= TINY) break;
+        if (k == all->count) return -3;
+        all->list[k].slab.tap = i;
     }
-    return -3;
+    return 0;
+}
+
+/* Between the depths of its planes: which vias join both. */
+static void mark_vias(const lstub__cav_barrel *barrel, parts *all)
+{
+    const lstub__cav_returns *r = &barrel->returns;
+    double above = barrel->top == LSTUB__CAV_FREE ? -INFINITY : 0.0, below;
+    int i, j, k;
+
+    for (i = 0; i < all->count; i = j) {
+        for (j = i; j < all->count && all->list[j].antipad == 0.0; j++) if (all->list[j].thin_antipad > 0.0) { j++; break; }
+        below = j > i ? all->list[j - 1].bottom : all->list[i].bottom;
+        if (j == all->count) below = INFINITY;
+        for (k = i; k < j; k++) all->list[k].slab.vias = cav_joining(r, above, below);
+        if (j < all->count && all->list[j].antipad > 0.0) { below = all->list[j].bottom; j++; }
+        above = below;
+    }
+}
+
+/* Joins slabs that differ in nothing, in all barrels at once: they stay side by side. */
+static void join_parts(parts *all, int barrels)
+{
+    int i, b, n = 1;
+
+    for (i = 1; i < all[0].count; i++) {
+        int same = 1;
+        for (b = 0; b < barrels; b++) same = same && same_slab(&all[b].list[n - 1], &all[b].list[i]);
+        for (b = 0; b < barrels; b++) {
+            part *last = &all[b].list[n - 1], *p = &all[b].list[i];
+            if (!same) { all[b].list[n] = *p; continue; }
+            last->bottom = p->bottom;
+            last->slab.h = last->bottom - last->top;
+            last->slab.tap = p->slab.tap;
+            last->thin_antipad = p->thin_antipad;
+            last->thin_pad = p->thin_pad;
+        }
+        if (!same) n++;
+    }
+    for (b = 0; b < barrels; b++) all[b].count = n;
 }
 
 /* ---- faces -------------------------------------------------------------------------------------- */
@@ -200,7 +265,7 @@ static double near_antipad(const lstub__cav_barrel *barrel, double z, double *di
 
     for (k = 0; k <= barrel->layers; k++) {
         const lstub__cav_copper *c = &barrel->copper[k];
-        double top = k == 0 ? 0.0 : depth, bottom = k == 0 ? 0.0 : depth + c->thickness;
+        double top = depth, bottom = k == 0 && barrel->top == LSTUB__CAV_FED ? 0.0 : depth + c->thickness;
 
         if (c->antipad > 0.0) {
             if (bottom <= z) { above = c->antipad; da = z - bottom; }
@@ -217,30 +282,43 @@ static double near_antipad(const lstub__cav_barrel *barrel, double z, double *di
 
 static double least_outer(const cav_slab *a, const cav_slab *b, double reach)
 {
-    if (a->outer == LSTUB__CAV_WALL && a->r_out < reach) reach = a->r_out;
+    if (a != NULL && a->outer == LSTUB__CAV_WALL && a->r_out < reach) reach = a->r_out;
     if (b != NULL && b->outer == LSTUB__CAV_WALL && b->r_out < reach) reach = b->r_out;
     return reach;
 }
 
-/* The opening between part a and part b below it (NULL: half-space). */
-static void face_between(const lstub__cav_barrel *barrel, const part *a, const part *b, int cells, int refine,
+typedef struct seam {               /* two slabs meet, or one and a half-space (null) */
+    const part *a, *b;              /* above, below */
+    double z, thin_antipad, thin_pad;
+    int    tap;
+} seam;
+
+static double end_nearness(const lstub__cav_cut *own, double z, double width)
+{
+    double near = own->end > 0.0 ? nearness(z - own->end, width) : 0.0;
+
+    return own->begin > 0.0 ? fmax(near, nearness(z - own->begin, width)) : near;
+}
+
+static void face_between(const lstub__cav_barrel *barrel, const lstub__cav_cut *own, const seam *m, int cells, int refine,
                          cav_face *face)
 {
-    const cav_slab *lower = b != NULL ? &b->slab : NULL;
-    double ra = a->slab.r_in, rb = lower != NULL ? lower->r_in : 0.0, r0 = ra > rb ? ra : rb, r1, reach, mid, middle, gap;
-    double step, near = 0.0;
-    int plane = a->antipad > 0.0 || (b != NULL && b->antipad > 0.0) || a->thin_antipad > 0.0;
+    const part *a = m->a, *b = m->b;
+    const cav_slab *upper = a != NULL ? &a->slab : NULL, *lower = b != NULL ? &b->slab : NULL;
+    double ra = upper != NULL ? upper->r_in : 0.0, rb = lower != NULL ? lower->r_in : 0.0, r0 = ra > rb ? ra : rb, r1, reach, mid;
+    double middle, gap, step, near = 0.0;
+    int plane = (a != NULL && a->antipad > 0.0) || (b != NULL && b->antipad > 0.0) || m->thin_antipad > 0.0;
 
-    if (a->thin_pad > r0) r0 = a->thin_pad;
+    if (m->thin_pad > r0) r0 = m->thin_pad;
     step = r0 - (ra < rb ? ra : rb);            /* an edge of copper at the inner rim */
 
     if (plane) {
-        r1 = least_outer(&a->slab, lower, a->thin_antipad > 0.0 ? a->thin_antipad : INFINITY);
-        near = barrel->end > 0.0 ? nearness(a->bottom - barrel->end, r1 - barrel->radius) : 0.0;
+        r1 = least_outer(upper, lower, m->thin_antipad > 0.0 ? m->thin_antipad : INFINITY);
+        near = end_nearness(own, m->z, r1 - barrel->radius);
         if (r0 > 0.0) {
             rims(r0, r1, cells * refine, fmax(edge(step, r1 - r0), near), 1.0, face->x);
             set_face(face, cells, refine, cells);
-            face->plain = fmax(near, fmax(thin(&a->slab, r1 - r0), lower != NULL ? thin(lower, r1 - r0) : 0.0));
+            face->plain = fmax(near, fmax(upper != NULL ? thin(upper, r1 - r0) : 0.0, lower != NULL ? thin(lower, r1 - r0) : 0.0));
         } else {
             rims(AXIS * barrel->radius, barrel->radius, INSIDE, 0.0, near, face->x);
             rims(barrel->radius, r1, cells, near, 1.0, face->x + INSIDE);
@@ -248,11 +326,10 @@ static void face_between(const lstub__cav_barrel *barrel, const part *a, const p
         }
         return;
     }
-    middle = a->keep && a->slab.r_in > 0.0 ? 0.5 * (a->top + a->bottom)
-           : b != NULL && b->keep && rb > 0.0 ? 0.5 * (b->top + b->bottom) : a->bottom;
+    middle = a != NULL && a->keep && ra > 0.0 ? 0.5 * (a->top + a->bottom) : b != NULL && b->keep && rb > 0.0 ? 0.5 * (b->top + b->bottom) : m->z;
     mid = near_antipad(barrel, middle, &near, &gap);
-    if (r0 == 0.0) {                            /* two dielectrics below the barrel's end */
-        r1 = least_outer(&a->slab, lower, mid > 0.0 ? 2.0 * mid : 2.0 * barrel->hole + 3.0 * a->slab.h);
+    if (r0 == 0.0) {                            /* two dielectrics beyond the barrel's end */
+        r1 = least_outer(upper, lower, mid > 0.0 ? 2.0 * mid : 2.0 * barrel->hole + 3.0 * (upper != NULL ? upper->h : lower->h));
         rims(AXIS * barrel->radius, barrel->radius, INSIDE, 0.0, 0.0, face->x);
         rims(barrel->radius, r1, cells, 0.0, 0.0, face->x + INSIDE);
         set_face(face, cells + INSIDE, 1, 0);
@@ -261,10 +338,10 @@ static void face_between(const lstub__cav_barrel *barrel, const part *a, const p
     reach = r0 + REACH * gap;
     if (reach < 2.0 * mid) reach = 2.0 * mid;
     if (reach < 2.0 * r0) reach = 2.0 * r0;
-    r1 = least_outer(&a->slab, lower, reach);
+    r1 = least_outer(upper, lower, reach);
     if (mid < r0 + 0.25 * (r1 - r0)) mid = r0 + 0.25 * (r1 - r0);
     if (mid > r0 + 0.75 * (r1 - r0)) mid = r0 + 0.75 * (r1 - r0);
-    if (step == 0.0 && !a->slab.tap && !a->keep && a->thin_pad == 0.0 && !(b != NULL && b->keep)) refine = 1;     /* only the dielectric changes */
+    if (step == 0.0 && m->tap < 0 && !(a != NULL && a->keep) && m->thin_pad == 0.0 && !(b != NULL && b->keep)) refine = 1;  /* only the dielectric changes */
     near = nearness(near, mid - r0);
     rims(r0, mid, cells * refine, edge(step, mid - r0), near, face->x);
     rims(mid, r1, OUTSIDE * refine, 0.0, 0.0, face->x + cells * refine);
@@ -273,28 +350,28 @@ static void face_between(const lstub__cav_barrel *barrel, const part *a, const p
 }
 
 /* The first opening, and the coaxial line above it that carries the port. */
-static void feed_faces(const lstub__cav_barrel *barrel, int cells, int refine, cav_mesh *mesh)
+static void feed_faces(const lstub__cav_barrel *barrel, int cells, int refine, int feed, cav_mesh *mesh)
 {
     const lstub__cav_copper *c = &barrel->copper[0];
     double r0 = c->pad > barrel->radius ? c->pad : barrel->radius, r1 = c->antipad;
-    cav_face *face = &mesh->face[mesh->feed_face];
+    cav_face *face = &mesh->face[feed];
 
     rims(r0, r1, cells * refine, edge(r0 - barrel->radius, r1 - r0), 1.0, face->x);
     set_face(face, cells, refine, cells);
-    face = &mesh->face[mesh->tem_face];
+    face = &mesh->face[feed + 1];
     face->x[0] = r0;
     face->x[1] = r1;
     set_face(face, 1, 1, 0);
     mesh->feed_height = 2.0 * (r1 - r0) / CAV_FEED;
 }
 
-static void feed_slabs(const lstub__cav_barrel *barrel, cav_mesh *mesh)
+static void feed_slabs(const lstub__cav_barrel *barrel, int feed, cav_mesh *mesh, cav_slab *slab)
 {
-    const cav_face *face = &mesh->face[mesh->tem_face];
+    const cav_face *face = &mesh->face[feed + 1];
     int k;
 
     for (k = 0; k < CAV_FEED; k++) {
-        cav_slab *s = &mesh->slab[k];
+        cav_slab *s = &slab[k];
 
         memset(s, 0, sizeof *s);
         s->h = mesh->feed_height;
@@ -302,40 +379,92 @@ static void feed_slabs(const lstub__cav_barrel *barrel, cav_mesh *mesh)
         s->r_out = face->x[1];
         s->outer = LSTUB__CAV_WALL;
         s->medium = barrel->copper[0].medium;
-        s->fill = -1;
-        s->top = k == 0 ? mesh->tem_face : mesh->feed_face;
-        s->bottom = mesh->feed_face;
+        s->fill = s->tap = -1;
+        s->top = k == 0 ? feed + 1 : feed;
+        s->bottom = feed;
+    }
+}
+
+/* One barrel's slabs from `slab` on, and its faces. */
+static void lay_barrel(const lstub__cav_barrel *barrel, const parts *all, int cells, int refine, int number, cav_mesh *mesh)
+{
+    cav_slab *slab = &mesh->slab[number * mesh->slabs];
+    int feed = mesh->feed, face, k;
+    seam m;
+
+    mesh->first_face[number] = mesh->faces++;
+    if (feed > 0) {
+        mesh->faces++;
+        feed_faces(barrel, cells, refine, mesh->first_face[number], mesh);
+        feed_slabs(barrel, mesh->first_face[number], mesh, slab);
+    } else if (mesh->open_top) {
+        m.a = NULL;
+        m.b = &all->list[0];
+        m.z = m.b->top;
+        m.thin_antipad = all->cap_antipad;
+        m.thin_pad = all->cap_pad;
+        m.tap = mesh->cap_tap[number];
+        face_between(barrel, all->own, &m, cells, refine, &mesh->face[mesh->first_face[number]]);
+    } else {
+        mesh->faces--;
+        mesh->first_face[number] = -1;
+    }
+    face = mesh->first_face[number];
+    for (k = 0; k < all->count; k++) {
+        cav_slab *s = &slab[feed + k];
+        int last = k + 1 == all->count;
+
+        *s = all->list[k].slab;
+        s->top = face;
+        s->bottom = -1;
+        if (last && barrel->below == LSTUB__CAV_LID) break;
+        s->bottom = face = mesh->faces++;
+        m.a = &all->list[k];
+        m.b = last ? NULL : &all->list[k + 1];
+        m.z = m.a->bottom;
+        m.thin_antipad = m.a->thin_antipad;
+        m.thin_pad = m.a->thin_pad;
+        m.tap = m.a->slab.tap;
+        face_between(barrel, all->own, &m, cells, refine, &mesh->face[s->bottom]);
+        s->plane = m.a->antipad > 0.0 || m.thin_antipad > 0.0;
+        if (last) mesh->half_face[number] = s->bottom;
+        if (s->top < 0) { s->top = s->bottom; s->bottom = -1; }     /* under a lid: turned over, which changes nothing */
     }
 }
 
 int cav_mesh_make(const lstub__cav_barrel *barrel, int cells, int refine, void *scratch, cav_mesh *mesh)
 {
-    parts all;
-    int failed, k;
+    lstub__cav_cut own;
+    parts all[2];
+    int failed = 0, b;
 
-    all.list = scratch;
-    failed = cut_barrel(barrel, &all);
-    if (!failed && barrel->tap > 0.0) failed = cut_at_tap(barrel, &all);
+    own.begin = barrel->begin;
+    own.end = barrel->end;
+    own.taps = barrel->taps;
+    memcpy(own.tap, barrel->tap, sizeof own.tap);
+    mesh->barrels = barrel->partner != NULL ? 2 : 1;
+    for (b = 0; b < mesh->barrels && !failed; b++) {
+        all[b].list = (part *)scratch + b * (CAV_SLABS / 2);
+        all[b].own = b == 0 ? &own : barrel->partner;
+        all[b].cuts = 0;
+        all_cuts(&all[b], &own);
+        if (barrel->partner != NULL) all_cuts(&all[b], barrel->partner);
+        failed = cut_barrel(barrel, &all[b]);
+        if (!failed && all[b].count == 0) failed = -2;
+        if (!failed) failed = mark_taps(&all[b], &mesh->cap_tap[b]);
+        if (!failed) mark_vias(barrel, &all[b]);
+    }
     if (failed) return failed;
-    if (all.count == 0 || all.count + CAV_FEED > CAV_SLABS) return -2;
-    mesh->feed_face = 0;
-    mesh->tem_face = 1;
-    mesh->faces = 2;
-    feed_faces(barrel, cells, refine, mesh);
-    feed_slabs(barrel, mesh);
-    mesh->slabs = CAV_FEED;
-    mesh->half_face = -1;
-    for (k = 0; k < all.count; k++) {
-        cav_slab *s = &mesh->slab[mesh->slabs++];
-        int last = k + 1 == all.count;
-
-        *s = all.list[k].slab;
-        s->top = mesh->slab[mesh->slabs - 2].bottom;
-        s->bottom = -1;
-        if (last && barrel->below == LSTUB__CAV_LID) break;
-        s->bottom = mesh->faces++;
-        face_between(barrel, &all.list[k], last ? NULL : &all.list[k + 1], cells, refine, &mesh->face[s->bottom]);
-        if (last) mesh->half_face = s->bottom;
+    join_parts(all, mesh->barrels);
+    mesh->feed = barrel->top == LSTUB__CAV_FED ? CAV_FEED : 0;
+    mesh->open_top = barrel->top == LSTUB__CAV_FREE && barrel->below == LSTUB__CAV_HALFSPACE;
+    mesh->slabs = all[0].count + mesh->feed;
+    if (mesh->barrels * mesh->slabs > CAV_SLABS) return -2;
+    mesh->faces = 0;
+    mesh->feed_height = 0.0;
+    for (b = 0; b < mesh->barrels; b++) {
+        mesh->half_face[b] = -1;
+        lay_barrel(barrel, &all[b], cells, refine, b, mesh);
     }
     return 0;
 }

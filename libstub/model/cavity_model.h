@@ -20,28 +20,52 @@ typedef struct cav_kernel {         /* modes n >= first of slabs that are alike 
     const double *coef_q;           /* the same, derivative by q; NULL without hole                 */
 } cav_kernel;
 
+#define CAV_ANSWERS 32
+#define CAV_PLANES  128
+
+
+typedef struct cav_answer {         /* what answers the waves of some slabs */
+    unsigned vias;
+    int      barrels;               /* bit 0, 1: the barrel, its partner pass through (bit 1: of two in one cascade) */
+    int      medium;
+} cav_answer;
+
 struct lstub__cavity {
     size_t  bytes;
     void  (*release)(void *, void *);
     void   *user;
-    int     slabs, openings, kernels, media, outer, rim_sets;
-    int     half_opening, half_medium;
+    int     barrels, slabs, openings, kernels, media, outer, rim_sets, answers;
+    int     feed, lid_top;          /* slabs of the feed; a lid over a free end */
+    int     taps[2], cap_tap[2], cap_opening[2];
+    int     half_opening[2], half_medium;
+    double  radius;                 /* of the barrel                                                */
     double  port_log;               /* ln(antipad/barrel) of the first opening                      */
     int     port_medium;
     double  feed_length;
-    const cav_slab    *slab;        /* top and bottom are openings here                             */
+    const cav_slab    *slab;        /* top and bottom are openings here; one barrel after the other */
     const cav_opening *opening;
     const cav_kernel  *kernel;
-    const double      *half;        /* half-space: [4][cells][cells], factors of 1, k^2, k^4, and -j k^3 */
+    const double      *half[2], *half_top;  /* half-space: [4][cells][cells], factors of 1, k^2, k^4, and -j k^3 */
     lstub__cav_returns returns;         /* its vias lie in the same block                               */
+    cav_answer answer[CAV_ANSWERS];
+    double  plane_c[CAV_PLANES];        /* with flux: F over the Dk above, of each plane from the top, its opening seen as a whole */
+    int     planes;
     double  ratio[LSTUB__CAV_MEDIA];
 };
 
+/* Fills plane_c where a flux threads the openings. 0, or as lstub__cavity_compile. */
+int cav_flux_prepare(lstub__cavity *m, const lstub__cav_medium *medium, void *scratch);
+size_t cav_flux_scratch(void);
 /* Coefficients of a face's cells on its rims. */
 void cav_cell_coefficients(const cav_face *face, double *c);
 /* Half-space below a face: out[4][cells][cells]. */
 void cav_half_space(const cav_face *face, const double *c, double *out);
-/* Answer of vias and partner to a wave K0(kappa rho) from the barrel: amplitude of I0(kappa rho) there. NaN: singular. */
-cplx cav_ring(const lstub__cav_returns *returns, cplx kappa);
+
+/*
+** What answers waves K0(kappa rho) of the barrels: gamma[2 q + p] is the amplitude of I0(kappa rho) at barrel q for a wave of
+** barrel p; a pair in one mode has it all in gamma[0]. flux: the squared shape J of the axial flux, m^2. NaN: singular.
+*/
+typedef struct cav_echo { cplx gamma[4], flux; } cav_echo;
+void cav_ring(const lstub__cav_returns *returns, unsigned vias, int barrels, double radius, cplx kappa, int two, cav_echo *out);
 
 #endif

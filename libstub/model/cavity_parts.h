@@ -30,7 +30,10 @@ typedef struct cav_slab {
     double hole;
     int    top, bottom;                         /* faces; -1: copper without opening                    */
     int    copper;                              /* within a copper layer: its faces share their shape   */
-    int    tap;                                 /* a trace leaves at its lower face                     */
+    int    plane;                               /* its lower face is the (lower) face of a plane        */
+    int    tap;                                 /* number of the trace that leaves at its lower face, -1 */
+    unsigned vias;                              /* which return vias join the planes around it, a bit each */
+    int    answer;                              /* number of (vias, barrel, medium), of what answers its waves */
     int    kernel;
 } cav_slab;
 
@@ -47,12 +50,20 @@ typedef struct cav_span { int same, top_points; const double *x, *log_x; int poi
 /* Everything one barrel is cut into, on the way to a compiled model. */
 #define CAV_SLABS 400
 typedef struct cav_mesh {
-    int slabs, faces, feed_face, tem_face;
-    cav_slab slab[CAV_SLABS];
+    int barrels, slabs, faces;                  /* slabs: of each barrel                                */
+    int feed;                                   /* slabs of the feed, of each barrel: CAV_FEED or 0     */
+    int open_top;                               /* a half-space above                                   */
+    cav_slab slab[CAV_SLABS];                   /* one barrel after the other                           */
     cav_face *face;                             /* [CAV_SLABS + 4] */
     double feed_height;
-    int half_face;                              /* face that looks into a half-space, or -1             */
+    int first_face[2];                          /* of each barrel: feed's opening (the next: its TEM wave), or the face
+                                                   below the upper half-space; -1: a lid on top         */
+    int cap_tap[2];                             /* trace that leaves at that face, -1                   */
+    int half_face[2];                           /* face that looks into the lower half-space, or -1     */
 } cav_mesh;
+
+/* Return vias that join two planes, a bit each; beyond the outermost plane (-INFINITY, INFINITY) those that reach it. */
+unsigned cav_joining(const lstub__cav_returns *returns, double above, double below);
 
 size_t cav_mesh_scratch(void);
 int  cav_mesh_make(const lstub__cav_barrel *barrel, int cells, int refine, void *scratch, cav_mesh *mesh);

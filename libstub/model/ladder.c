@@ -60,7 +60,7 @@ static cplx radial(const lstub__cav_barrel *b, cplx eps, double k0)
         lstub__bessel_zik(cplx_scale(kappa, b->wall), &g);
         q = cplx_mul(cplx_div(g.k0, g.i0), cplx_exp(cplx_scale(kappa, -2.0 * (b->wall - b->radius))));
     } else if (b->outer == LSTUB__CAV_RING) {
-        q = cplx_mul(cplx_neg(cav_ring(&b->returns, kappa)), cplx_exp(cplx_scale(za, 2.0)));
+        q = cplx_mul(cplx_neg(lstub__cavity_answer(&b->returns, 0.0, 0.0, kappa)), cplx_exp(cplx_scale(za, 2.0)));
     }
     return cplx_mul(za, cplx_div(cplx_fma(a.k1, q, a.i1), cplx_fms(a.k0, q, a.i0)));
 }

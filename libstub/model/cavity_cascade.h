@@ -1,0 +1,43 @@
+/* The cascade of one frequency: what hangs below a face, a slab to step over, the axial flux that goes with it. */
+#ifndef LSTUB_CAVITY_CASCADE_H
+#define LSTUB_CAVITY_CASCADE_H
+
+#include "model/cavity_state.h"
+
+#define CAV_CELLS  LSTUB__CAV_CELLS                 /* of all barrels at one face                     */
+#define CAV_WIDE   (CAV_CELLS + 1)                  /* and the flux                                   */
+#define CAV_TRACES (2 * LSTUB__CAV_TAPS)
+
+typedef struct cav_load {           /* I = y V + s I_o, V_o = s.V + zeta I_o                            */
+    int  n, traces;
+    cplx y[CAV_WIDE * CAV_WIDE], s[CAV_WIDE * CAV_TRACES], zeta[CAV_TRACES * CAV_TRACES];
+} cav_load;
+
+typedef struct cav_step {           /* a slab between all its openings above and below                  */
+    int  na, nb, loops;
+    cplx *tt, *bb, *tb;             /* [na][na], [nb][nb], [na][nb]                                    */
+    cplx *top[2], *bottom[2];       /* mode 0 of each loop                                             */
+    cplx loop[4];                   /* [loops][loops]                                                  */
+} cav_step;
+
+typedef struct cav_room {           /* where a step's matrices may lie                                 */
+    cplx own[2][3 * CAV_CELLS * CAV_CELLS], ends[2][2 * CAV_CELLS];
+    cplx tt[CAV_WIDE * CAV_WIDE], bb[CAV_WIDE * CAV_WIDE], tb[CAV_WIDE * CAV_WIDE], column[4][CAV_WIDE];
+} cav_room;
+
+typedef struct cav_w {              /* the axial flux: a line along the barrel, one unknown more a face */
+    int  on;                        /* this model has one                                              */
+    int  started;                   /* ... and the load does too                                       */
+    int  plane;                     /* number of the next plane above                                  */
+    double gamma;
+    cplx y;                         /* characteristic admittance                                       */
+} cav_w;
+
+int  cav_step_up(cav_load *l, const cav_step *c);                                            /* cavity_eval.c */
+void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_step *c);       /* cavity_pair.c */
+
+void cav_flux_start(state *w, cav_w *flux);                                                   /* cavity_flux.c */
+void cav_flux_plane(const state *w, cav_w *flux, const cav_slab *s, cav_load *l);
+void cav_flux_stop(cav_w *flux, cav_load *l);
+
+#endif

@@ -235,16 +235,20 @@ typedef struct lstub_trace {       /* "below" is towards the plane of a microstr
 /*
 ** Characteristic impedance and propagation constant of a trace, lossy and dispersive: Z = sqrt(Z'/Y') ohm and
 ** gamma = sqrt(Z' Y') per metre, with Z' = jw L' + strip and planes, Y' = jw C'.
-** Microstrip  L', C': Hammerstad, Jensen 1980, with their thickness correction, within 0.2 percent for 0.01 < w/h < 100;
-**             dispersion: Kirschning, Jansen 1982, within 0.6 percent for w/h from 0.1, Dk up to 20, h below 0.13 wavelengths.
-** Stripline   exact for a thin strip at any height, of one dielectric (Cohn 1954 where centred); thick: Wheeler 1978.
-**             Two dielectrics mix by their share of the energy.
+** Microstrip  L', C': Hammerstad, Jensen 1980, with their thickness correction: within 0.3 percent of boundary elements;
+**             dispersion: Kirschning, Jansen 1982 and 1983, stated within 0.6 percent, for w/h 0.1 to 100, Dk up to 20, h below a
+**             tenth of the wavelength in what lies above.
+** Stripline   exact for a thin strip of one dielectric at any height (Cohn 1954 where centred); thick: Wheeler 1978 for its
+**             greater width, within 0.2 percent of boundary elements, 0.7 where much nearer to one plane than thick copper
+**             likes (0.1 of the distance). Two dielectrics mix by their share of the energy: within 0.2 percent in Dk for
+**             Dk 10 percent apart, 1 for 50.
 ** Both        causal dielectrics, in-plane Dk by stretching the heights; conductor by the rule of incremental
 **             inductance (Wheeler 1942) with the surface impedance above, down to the direct-current resistance of
-**             the strip. Causal and passive; only the dispersion of a microstrip, one mode's, is real.
+**             the strip. Passive and causal, but for the dispersion of a microstrip, which is one mode's, without loss.
 ** In   freq[n] Hz, 1e3 to 1e12.   Out  z[2 n], gamma[2 n] (re, im; re > 0, im of gamma > 0); each may be null.
-** Ret  LSTUB_W_RANGE outside the ranges above, for a stripline above its first waveguide mode, c/(sqrt(Dk)(2 w + pi b/2)),
-**      where one Dk is more than twice the other, and where a large loss tangent drives a Dk below 1.
+** Ret  LSTUB_W_RANGE outside the ranges above, where the copper is thicker than wide or than a height, for a stripline above
+**      its first waveguide mode, c/(sqrt(Dk)(2 w + pi b/2)), where one Dk is more than twice the other, and where a large loss
+**      tangent drives a Dk below 1.
 */
 LSTUB_API int32_t lstub_trace_line(const lstub_trace *trace, const double *freq, size_t n, double *z, double *gamma,
                                    lstub_error *err);
@@ -271,7 +275,7 @@ LSTUB_API int32_t lstub_network_renormalise_complex(const double *s, size_t n, i
 #define LSTUB_NETWORK_Y    3   /* I = Y V, siemens                                                      */
 #define LSTUB_NETWORK_ABCD 4   /* (V1, I1) = ABCD (V2, -I2) of the left and the right half of the ports; p even */
 
-/* One kind of matrix from another. z[p]: references of S; null: 50 ohm. */
+/* One kind of matrix from another; of 2-ports also LSTUB_NETWORK_G and _H, see Touchstone. z[p]: references of S; null: 50 ohm. */
 LSTUB_API int32_t lstub_network_convert(const double *in, size_t n, int32_t p, int32_t from, int32_t to, const double *z,
                                         double *out, int32_t *status, lstub_error *err);
 
@@ -301,10 +305,11 @@ LSTUB_API int32_t lstub_network_reciprocity(const double *s, size_t n, int32_t p
                                             lstub_error *err);
 
 /*
-** Time domain: freq[n] (n >= 3, 0 to 1e12 Hz, rising) to f_max, the last. Multiples of one step are used as they are; others
-** interpolated, by cubics about the mean delay, to 4 n steps of f_max/(4 n). Missing down to 0: real part even, imaginary
-** part odd in f about the mean delay, through the first point and the first at twice its frequency. Whatever lasts longer
-** than 1/step wraps round. A NaN in the data fails the call.
+** Time domain: freq[n] (n >= 4, 0 to 1e12 Hz, rising) to f_max, the last. Evenly spaced ones keep their step, f_max over a
+** whole number; others get 4 n steps. Points that are no multiples of it are interpolated, by cubics about the mean delay.
+** Missing down to 0 (first > f_max/20: LSTUB_W_RANGE; > f_max/2: refused): real part even, imaginary part odd in f about
+** the mean delay, through the first point and the first at twice its frequency; real at 0. Whatever lasts longer than
+** 1/step wraps round. A NaN in the data fails the call. Time grows as n m, of causality as n^2 p^2.
 **
 ** early[p p]: share of the energy of every impulse response that comes more than `resolution` before t0 (s, >= 0: 0, or the
 ** delay that nothing can undercut). The band is weighted by a Kaiser window (beta 10), which blurs by resolution[1] =
@@ -433,14 +438,15 @@ LSTUB_API int32_t lstub_port_map(const double *src, size_t n, int32_t ports, con
 #define LSTUB_QUALITY_GOOD     0   /* or a sum of:                                                     */
 #define LSTUB_QUALITY_SHALLOW  1   /* less than 6 dB below the trend                                   */
 #define LSTUB_QUALITY_EDGE     2   /* the band ends before a flank is back half its depth              */
-#define LSTUB_QUALITY_RIPPLE   4   /* not much more than the other dips of the band: score < 8         */
-#define LSTUB_QUALITY_WIDE     8   /* f_sigma > 0.02 f, or wider than 0.6 f: several stubs, or none    */
+#define LSTUB_QUALITY_RIPPLE   4   /* not much more than the ripple and noise of the band: score < 8    */
+#define LSTUB_QUALITY_WIDE     8   /* f_sigma > 0.05 f, or wider than 0.6 f: several stubs, or none    */
 #define LSTUB_QUALITY_FLOOR   16   /* noise or the window hides the floor: depth is a bound, q NaN     */
 
 typedef struct lstub_search {      /* for notches. 0: the default                                      */
     size_t size;
     double window;                 /* Hz the power is averaged over; 0: the median distance of minima of
-                                      |S| (a period of the ripple), 3 samples to a 20th of the band    */
+                                      |S| (a period of the ripple), 3 samples to a 20th of the band, and at
+                                      most an eighth of the width of the narrowest notch               */
     double f_low, f_high;          /* Hz, band looked at; 0: all there is                              */
     double depth_least;            /* dB below the trend; 0: 3                            1 to 100     */
     const lstub_allocator *allocator;  /* while it runs; null: malloc                                  */
@@ -452,20 +458,21 @@ typedef struct lstub_measured_notch {
     int32_t reserved;
     double  f, f_sigma;            /* Hz, of the stub alone, trend and window taken out; 1 sigma from noise,
                                       ripple, curvature, window and trend                              */
-    double  depth_db;              /* averaged |S| at f against the trend, dB, negative                */
+    double  depth_db;              /* averaged |S| over the trend where that is least, dB, negative    */
     double  level_db;              /* averaged |S| as it is at f_minimum, dB                           */
     double  f_minimum;             /* Hz, where the averaged |S| itself is least: the channel's slope in it */
     double  width;                 /* Hz, between the flanks at half its depth in dB                   */
     double  q;                     /* as lstub_notch.q, of the shape fitted                            */
     double  impedance;             /* of the open line with these flanks, over that of the channel     */
-    double  score;                 /* its prominence over that of the band's other dips; > 4           */
+    double  score;                 /* its rise on both sides over what trend and stubs leave, dB / dB; > 4 */
     double  window;                /* Hz, as used                                                      */
 } lstub_measured_notch;
 
 /*
 ** Stub notches in a measured S21 or Sdd21, in rising order. The shape of an open stub, S21 = 2/(2 + z y), is fitted to what
-** the channel's loss a0 + a1 sqrt f + a2 f + a4 f^2 (dB, fitted to all but the notches) leaves. Ripple, roll-off, a noise
-** floor and notches outside the band are none: *count = 0, LSTUB_OK.
+** the channel's loss a0 + a1 sqrt f + a2 f + a4 f^2 (dB, fitted to all but the notches) leaves. A notch has nine samples at
+** least and rises again within the band, with the trend and without it. Ripple, roll-off, a noise floor and notches
+** outside the band are none: *count = 0, LSTUB_OK. How and how well: docs/theory.md.
 ** In   freq[n] Hz, rising, any steps, n >= 16; s: re, im of the first element, the next s_stride bytes on (16: side by
 **      side; 16 p p: element (i, j) of an (n, p, p) array from its address). search null: defaults.
 ** Out  notches[capacity], more: LSTUB_W_CAPACITY, the lowest are given; averaged_db[n], trend_db[n] or null, NaN off the band.
@@ -576,6 +583,9 @@ LSTUB_API int32_t lstub_stackup_interval(const lstub_stackup *stackup, double to
 #define LSTUB_PAIR_SEPARATE 1      /* partner barrel at pair_pitch, an antipad each                    */
 #define LSTUB_PAIR_SHARED   2      /* one antipad around both: the union and the band between them     */
 
+#define LSTUB_EDGE_OPEN    0       /* edges of planes: bare                                            */
+#define LSTUB_EDGE_SHORTED 1       /* ... joined to each other all along                               */
+
 #define LSTUB_PADS_REMOVED 0       /* non-functional pads: those on inner layers that do not connect   */
 #define LSTUB_PADS_KEPT    1
 
@@ -627,6 +637,12 @@ typedef struct lstub_via {
     double  outside_dk;            /* of what lies beyond the outer copper; 0: 1, air        1 to 1000 */
     double  lid_distance;          /* m, from the outer copper to a conducting lid; 0: open space      */
     double  hole_dk;               /* of what fills a drilled hole; 0: 1, air                1 to 1000 */
+    const int32_t *return_spans;   /* with return_xy: [2 return_count], first and last layer each joins; null: all */
+    const lstub_backdrill *partner_backdrills; size_t partner_backdrill_count;  /* of a pair's partner, where ... */
+    int32_t partner_own;           /* ... 1: it has its own drills, or none; 0: it is drilled as the barrel is */
+    int32_t edge_kind;             /* LSTUB_EDGE_...                                                   */
+    double  edges[4];              /* m, distances from the axis to straight edges of all planes, towards -x, +x,
+                                      -y, +y: all > 0, or all 0: planes without end                    */
 } lstub_via;
 
 typedef struct lstub_stub {        /* a piece of barrel beyond the outermost layers that connect        */
@@ -766,7 +782,80 @@ LSTUB_API int32_t lstub_fit_coupons(const lstub_stackup *stackup, const lstub_vi
                                     const lstub_model_options *options, const lstub_allocator *allocator,
                                     lstub_stackup **fitted, lstub_fit *out, double *residuals, lstub_error *err);
 
-/* ---- transition: the whole via as a network [section: transition] ---------------------------------- */
+/* ---- transition: the whole via as a network ------------------------------------------------------
+**
+** The cavity model of the whole barrel with the lines that enter and leave, return vias, partner and stubs: S-parameters. */
+
+#define LSTUB_PORT_TRACE 0         /* a trace on one of the layers that connect                         */
+#define LSTUB_PORT_COAX  1         /* a coaxial line above the plane the barrel begins on, its mouth that plane's antipad;
+                                      reference: the plane's lower face                                */
+
+typedef struct lstub_port {
+    size_t  size;
+    int32_t kind;                  /* LSTUB_PORT_...                                                   */
+    int32_t layer;                 /* one of via.connects                                              */
+    const lstub_trace *trace;      /* TRACE: cross-section; null: impedance and dk say it              */
+    double  impedance;             /* ohm, of the line without `trace`                  1 to 1000      */
+    double  dk;                    /* of the line without `trace`, effective; COAX: of its filling; 0: 1   1 to 1000 */
+    double  loss_tangent;          /* of the line without `trace`                       0 to 0.5       */
+    double  width;                 /* m, TRACE without `trace`: of the trace, for what happens over the antipads;
+                                      0: the line is taken to begin at the pad                         */
+    double  distance;              /* m, TRACE: from the axis to the reference plane; 0: the rim of the pad */
+    double  z_ref;                 /* ohm, reference impedance; 0: 50                   1 to 1000      */
+} lstub_port;
+
+#define LSTUB_STUBS_KEPT    0      /* as drilled                                                       */
+#define LSTUB_STUBS_REMOVED 1      /* as if the barrel ended on its outermost connecting layers: what the stubs do is
+                                      the difference                                                   */
+#define LSTUB_MODE_SINGLE 0        /* of one port driven                                               */
+#define LSTUB_MODE_ODD    1        /* of a pair: both barrels with opposite signs, seen on one of them (Sdd)  */
+#define LSTUB_MODE_EVEN   2        /* ... with equal signs (Scc)                                       */
+
+typedef struct lstub_transition_options {
+    size_t  size;
+    int32_t stubs;                 /* LSTUB_STUBS_...                                                  */
+    int32_t annuli;                /* as in lstub_model_options                                        */
+    const lstub_allocator *allocator;
+} lstub_transition_options;
+
+/* What a transition rests on, or not: a sum. Any but RADIATES makes the status LSTUB_W_RANGE. */
+#define LSTUB_REMARK_RADIATES    1 /* no return via, partner or edge near: power leaves between the planes */
+#define LSTUB_REMARK_LAUNCH      2 /* a trace over antipads outside 0.3 to 0.55 mm radius, 0.15 to 0.4 mm plane distance,
+                                      or unequal ones: the fit of its launch is used beyond its data   */
+#define LSTUB_REMARK_OUTER       4 /* a trace on an outer layer: derived, compared with nothing        */
+#define LSTUB_REMARK_SLOT        8 /* a slot with pitch/(antipad + 0.44 h) below 0.8, or pads and drills other than 0.45 and
+                                      0.25 mm in it: the fit is used beyond its data                   */
+#define LSTUB_REMARK_UNEQUAL    16 /* two barrels of their own: without the flux through the openings  */
+
+typedef struct lstub_transition lstub_transition;
+
+/*
+** Ports: those given, in their order; of a pair then the partner's, which mirror them. At least one; no two on one layer; a
+** layer that connects without a port carries no trace. Traces leave anywhere but in each other's way: all stand out from
+** the axis alone. Conductor loss of barrel and planes: the stackup's conductors.
+** Ret  LSTUB_W_RANGE with a handle: see the remarks.
+** Valid to 110e9 Hz. On 21 transitions of three-dimensional full-wave runs (tests/reference, docs/theory.md).
+*/
+LSTUB_API int32_t lstub_transition_create(const lstub_stackup *stackup, const lstub_via *via, const lstub_port *ports,
+                                          size_t count, size_t stride, const lstub_transition_options *options,
+                                          const lstub_allocator *allocator, lstub_transition **out, lstub_error *err);
+LSTUB_API void    lstub_transition_destroy(lstub_transition *transition);        /* null is allowed     */
+LSTUB_API int32_t lstub_transition_ports(const lstub_transition *transition);    /* 0 for null          */
+LSTUB_API int32_t lstub_transition_reference(const lstub_transition *transition, int32_t port, double *z_ref, lstub_error *err);
+LSTUB_API int32_t lstub_transition_remarks(const lstub_transition *transition);
+LSTUB_API const char *lstub_remark_text(int32_t remark);                         /* of one; never null  */
+/* S-parameters, s[2 n p p] as in networks, at freq[n] Hz, 1e6 to 200e9; LSTUB_W_RANGE above 110e9. status[n] or null. */
+LSTUB_API int32_t lstub_transition_s(const lstub_transition *transition, const double *freq, size_t n, double *s,
+                                     int32_t *status, lstub_error *err);
+/*
+** Minima of |S_to,from| up to f_max as lstub_model_notches gives them: f, depth_db against a line without loss, q, error
+** NaN, stub -1; f_series: where the phase of S turns back fastest, NaN where it does not. mode: LSTUB_MODE_...; of a mode, `to` and `from`
+** are ports of the first barrel.
+*/
+LSTUB_API int32_t lstub_transition_notches(const lstub_transition *transition, int32_t mode, int32_t to, int32_t from,
+                                           double f_max, lstub_notch *notches, size_t capacity, size_t stride,
+                                           size_t *count, lstub_error *err);
+
 
 /* ---- criteria: what a signal can bear ------------------------------------------------------------ */
 

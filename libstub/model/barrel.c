@@ -1,6 +1,7 @@
 #include "model/barrel.h"
 
 #include <math.h>
+#include <string.h>
 
 /* The number of a medium, kept once. */
 static int32_t medium(lstub__barrel *b, lstub__wideband law, double ratio, int *number, lstub_error *err)
@@ -49,8 +50,8 @@ static double feed_opening(const lstub__site *site, int arm)
     return 0.5 * own;
 }
 
-/* A slot around a pair is the round antipad that acts like it in odd mode, at the mean height of the spaces beside it. */
-static double seen_antipad(const lstub__site *site, int32_t layer)
+/* A slot around a pair is the round antipad that acts like it in this mode, at the mean height of the spaces beside it. */
+static double seen_antipad(const lstub__site *site, int32_t layer, double sign)
 {
     const lstub__via *via = &site->via;
     const lstub_stackup *s = via->stackup;
@@ -60,7 +61,7 @@ static double seen_antipad(const lstub__site *site, int32_t layer)
     for (int32_t i = layer - 1; i <= layer + 1; i += 2)
         if (i >= 0 && i < s->count)
             height += 0.5 * s->layer[i].thickness;
-    return fmax(lstub__slot_antipad(&via->in, antipad, height), 1.02 * fmax(via->in.drill, lstub__via_pad(via, layer)));
+    return fmax(lstub__slot_antipad(&via->in, antipad, height, sign), 1.02 * fmax(via->in.drill, lstub__via_pad(via, layer)));
 }
 
 static int32_t give_layers(lstub__barrel *b, const lstub__site *site, int arm, lstub_error *err)
@@ -89,7 +90,7 @@ static int32_t give_layers(lstub__barrel *b, const lstub__site *site, int arm, l
             continue;
         }
         b->copper[n].thickness = layer->thickness;
-        b->copper[n].antipad = 0.5 * seen_antipad(site, i);
+        b->copper[n].antipad = 0.5 * seen_antipad(site, i, -1.0);
         b->copper[n].pad = 0.5 * lstub__via_pad(via, i);
         if (i == end)
             status = plain_medium(b, via->in.outside_dk, &b->copper[n].medium, err);
@@ -105,7 +106,7 @@ static int32_t give_layers(lstub__barrel *b, const lstub__site *site, int arm, l
 #define PAIR_RING 6           /* evenly spread vias around a barrel of a pair, at most: their places are not known anyway */
 
 /* Adds a via unless it meets one that is there; a status. */
-static int32_t add_via(lstub__barrel *b, const lstub_via *in, double x, double y, lstub_error *err)
+static int32_t add_via(lstub__barrel *b, const lstub_via *in, int32_t number, double x, double y, lstub_error *err)
 {
     lstub__cav_returns *r = &b->shape.returns;
     for (int i = 0; i < r->vias; i++)
@@ -114,9 +115,15 @@ static int32_t add_via(lstub__barrel *b, const lstub_via *in, double x, double y
     if (r->vias == LSTUB__CAV_VIAS)
         return lstub__fail(err, LSTUB_E_UNSUPPORTED, "return_count", -1, "return_count = %ld: more than %d return vias here, mirror images of a "
                            "pair included, are not computed", (long)in->return_count, LSTUB__CAV_VIAS);
-    b->via[r->vias].x = x;
-    b->via[r->vias].y = y;
-    b->via[r->vias++].radius = 0.5 * in->return_drill;
+    lstub__cav_via *v = &b->via[r->vias++];
+    v->x = x;
+    v->y = y;
+    v->radius = 0.5 * in->return_drill;
+    if (in->return_spans != NULL) {
+        const lstub__layer *first = &b->stackup->layer[in->return_spans[2 * number]], *last = &b->stackup->layer[in->return_spans[2 * number + 1]];
+        v->from = b->up ? b->origin - last->bottom : first->top - b->origin;
+        v->to = b->up ? b->origin - first->top : last->bottom - b->origin;
+    }
     return LSTUB_OK;
 }
 
@@ -138,9 +145,9 @@ static int32_t give_pair_vias(lstub__barrel *b, const lstub_via *in, lstub_error
             return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: touches the partner at %.9g m",
                                (long)i, x, y, in->pair_pitch);
         }
-        int32_t status = add_via(b, in, x, y, err);
+        int32_t status = add_via(b, in, i, x, y, err);
         if (status == LSTUB_OK)
-            status = add_via(b, in, in->pair_pitch - x, y, err);
+            status = add_via(b, in, i, in->pair_pitch - x, y, err);
         if (status < 0)
             return status;
     }
@@ -152,28 +159,62 @@ static int32_t give_vias(lstub__barrel *b, const lstub_via *in, lstub_error *err
 {
     if (in->return_xy == NULL) {
         b->shape.returns.even = in->return_count;
-        return add_via(b, in, in->return_distance, 0.0, err);
+        return add_via(b, in, 0, in->return_distance, 0.0, err);
     }
     for (int32_t i = 0; i < in->return_count; i++) {
-        int32_t status = add_via(b, in, in->return_xy[2 * i], in->return_xy[2 * i + 1], err);
+        int32_t status = add_via(b, in, i, in->return_xy[2 * i], in->return_xy[2 * i + 1], err);
         if (status < 0)
             return status;
     }
     return LSTUB_OK;
 }
 
-static int32_t give_returns(lstub__barrel *b, const lstub_via *in, lstub_error *err)
+/* Mean radius of the openings and mean distance of the planes, for the flux through them. */
+static void mean_openings(const lstub__site *site, double *radius, double *height)
 {
+    const lstub__via *via = &site->via;
+    const lstub_stackup *s = via->stackup;
+    double sum = 0.0, top = 0.0, bottom = 0.0;
+    int planes = 0;
+    for (int32_t i = via->in.start_layer; i <= via->in.end_layer; i++) {
+        double antipad = lstub__is_copper(s->layer[i].kind) ? lstub__via_antipad(via, i) : 0.0;
+        if (antipad == 0.0)
+            continue;
+        sum += 0.5 * antipad;
+        bottom = s->layer[i].top;
+        if (planes++ == 0)
+            top = s->layer[i].bottom;
+    }
+    *radius = sum / planes;
+    *height = planes > 1 ? (bottom - top) / (planes - 1) : 0.2e-3;
+}
+
+/* Pull of the partner's pad on an end that stands in no plane: static 3-D solutions of pads of 0.45 mm, 0.8 to 0.9 mm apart. */
+static double end_pull(const lstub__site *site, int32_t end, double sign)
+{
+    const lstub_via *in = &site->via.in;
+    double pad = 0.5 * lstub__via_pad(&site->via, end), gap = in->pair_pitch - 2.0 * pad;
+    double share = in->pair_kind == LSTUB_PAIR_SHARED ? (sign < 0.0 ? 0.15 : -0.075) : sign < 0.0 ? 0.11 : -0.11;
+    if (pad <= 0.0 || lstub__via_antipad(&site->via, end) > 0.0)
+        return 0.0;
+    return share * LSTUB_EPS0 * 0.5 * (site->via.stackup->layer[end].dielectric.dk + 1.0) * pad * pad / gap;
+}
+
+/* sign: of the partner, driven; 0: it is a barrel of its own. */
+static int32_t give_returns(lstub__barrel *b, const lstub__site *site, double sign, lstub_error *err)
+{
+    const lstub_via *in = &site->via.in;
+    lstub__cav_returns *r = &b->shape.returns;
     int32_t status = LSTUB_OK;
     b->shape.outer = LSTUB__CAV_OPEN;
     b->shape.wall = in->return_distance;
-    b->shape.returns.via = b->via;
+    r->via = b->via;
     if (in->pair_kind != LSTUB_PAIR_NONE) {
         if (in->return_kind == LSTUB_RETURN_WALL)
             return lstub__fail(err, LSTUB_E_UNSUPPORTED, "return_kind", -1, "return_kind: a wall around a pair is not computed; use vias");
         b->shape.outer = LSTUB__CAV_RING;
-        b->shape.returns.pitch = in->pair_pitch;
-        b->shape.returns.sign = -1.0;          /* odd mode */
+        r->pitch = in->pair_pitch;
+        r->sign = sign;
     }
     if (in->return_kind == LSTUB_RETURN_WALL)
         b->shape.outer = LSTUB__CAV_WALL;
@@ -181,6 +222,9 @@ static int32_t give_returns(lstub__barrel *b, const lstub_via *in, lstub_error *
         b->shape.outer = LSTUB__CAV_RING;
         status = in->pair_kind != LSTUB_PAIR_NONE ? give_pair_vias(b, in, err) : give_vias(b, in, err);
     }
+    r->flux = b->shape.outer == LSTUB__CAV_RING && r->even < 2 && (in->pair_kind == LSTUB_PAIR_NONE || sign != 0.0);
+    r->slot = in->pair_kind == LSTUB_PAIR_SHARED;
+    mean_openings(site, &r->opening, &r->height);
     return status;
 }
 
@@ -220,14 +264,135 @@ int32_t lstub__barrel_make(lstub__barrel **out, const lstub__site *site, int arm
     b->shape.copper = b->copper;
     b->shape.layer = b->layer;
     b->shape.medium = b->medium;
+    b->stackup = site->via.stackup;
+    b->up = arm == 0;
+    b->origin = arm == 0 ? b->stackup->layer[site->via.first].top : b->stackup->layer[site->via.last].bottom;
     int32_t status = give_layers(b, site, arm, err);
     if (status == LSTUB_OK)
-        status = give_returns(b, in, err);
+        status = give_returns(b, site, -1.0, err);       /* odd mode */
     if (status == LSTUB_OK)
         status = give_end(b, site, arm, length, err);
+    if (status == LSTUB_OK && in->pair_kind != LSTUB_PAIR_NONE && b->shape.end == 0.0)
+        b->shape.returns.pull = end_pull(site, arm == 0 ? in->start_layer : in->end_layer, -1.0);
     if (status < 0) {
         lstub__barrel_free(b);
         return status;
+    }
+    b->shape.media = b->media;
+    *out = b;
+    return LSTUB_OK;
+}
+
+/* ---- the whole barrel, for a transition ---------------------------------------------------------- */
+
+static int32_t whole_layers(lstub__barrel *b, const lstub__site *site, const lstub__passage *way, lstub_error *err)
+{
+    const lstub__via *via = &site->via;
+    const lstub_stackup *s = via->stackup;
+    double sign = way->sign < 0.0 || way->sign == 0.0 ? -1.0 : 1.0;     /* two barrels of their own: as in odd mode */
+    int32_t status = LSTUB_OK;
+    int n = 0;
+    for (int32_t i = via->in.start_layer; i <= via->in.end_layer; i++) {
+        const lstub__layer *layer = &s->layer[i];
+        lstub__cav_copper *c = &b->copper[n];
+        if (!lstub__is_copper(layer->kind)) {
+            b->layer[n].thickness = layer->thickness;
+            status = medium_of(b, layer, &b->layer[n].medium, err);
+            c = &b->copper[++n];
+            c->thickness = c->antipad = c->pad = 0.0;
+            c->medium = b->layer[n - 1].medium;
+        } else {
+            int fed = way->fed && i == via->in.start_layer;
+            c->thickness = layer->thickness;
+            c->antipad = 0.5 * (fed ? lstub__via_antipad(via, i) : seen_antipad(site, i, sign));
+            c->pad = fed ? 0.0 : 0.5 * lstub__via_pad(via, i);
+            if (fed)
+                status = plain_medium(b, way->feed_dk, &c->medium, err);
+            else if (i == via->in.start_layer || i == via->in.end_layer)
+                status = plain_medium(b, via->in.outside_dk, &c->medium, err);
+            else
+                status = medium_of(b, layer, &c->medium, err);
+        }
+        if (status < 0)
+            return status;
+    }
+    b->shape.layers = n;
+    return LSTUB_OK;
+}
+
+static double tap_depth(const lstub__barrel *b, int32_t layer)
+{
+    const lstub__layer *l = &b->stackup->layer[layer];
+    return 0.5 * (l->top + l->bottom) - b->origin;
+}
+
+static void cut_of(const lstub__barrel *b, const lstub__site *site, const lstub__passage *way, const lstub__ends *ends, lstub__cav_cut *cut)
+{
+    const lstub__layer *layer = b->stackup->layer;
+    double top = way->removed ? layer[site->via.first].top : ends->top, bottom = way->removed ? layer[site->via.last].bottom : ends->bottom;
+    memset(cut, 0, sizeof *cut);
+    if (!way->fed && top > layer[site->via.in.start_layer].top + LSTUB__SLACK)
+        cut->begin = top - b->origin;
+    if (bottom < layer[site->via.in.end_layer].bottom - LSTUB__SLACK)
+        cut->end = bottom - b->origin;
+    cut->taps = way->taps;
+    for (int i = 0; i < way->taps; i++)
+        cut->tap[i] = tap_depth(b, way->layer[i]);
+}
+
+/* The hole that a drill leaves: one radius for all. */
+static double widest_hole(const lstub_via *in)
+{
+    double widest = 0.0;
+    for (size_t i = 0; i < in->backdrill_count; i++)
+        widest = fmax(widest, 0.5 * in->backdrills[i].diameter);
+    for (size_t i = 0; i < in->partner_backdrill_count; i++)
+        widest = fmax(widest, 0.5 * in->partner_backdrills[i].diameter);
+    return widest;
+}
+
+int32_t lstub__barrel_whole(lstub__barrel **out, const lstub__site *site, const lstub__passage *way, lstub_error *err)
+{
+    const lstub_via *in = &site->via.in;
+    const lstub__layer *layer = site->via.stackup->layer;
+    lstub__cav_cut own;
+    lstub__barrel *b = lstub__new(&site->alloc, 1, sizeof *b, err);
+    if (b == NULL)
+        return LSTUB_E_MEMORY;
+    b->alloc = site->alloc;
+    b->stackup = site->via.stackup;
+    b->origin = way->fed ? layer[in->start_layer].bottom : layer[in->start_layer].top;
+    b->shape.radius = 0.5 * in->drill;
+    b->shape.copper = b->copper;
+    b->shape.layer = b->layer;
+    b->shape.medium = b->medium;
+    b->shape.top = way->fed ? LSTUB__CAV_FED : LSTUB__CAV_FREE;
+    b->shape.below = in->lid_distance > 0.0 ? LSTUB__CAV_LID : LSTUB__CAV_HALFSPACE;
+    b->shape.lid = in->lid_distance;
+    int32_t status = whole_layers(b, site, way, err);
+    if (status == LSTUB_OK)
+        status = give_returns(b, site, way->sign, err);
+    if (status == LSTUB_OK)
+        status = plain_medium(b, in->outside_dk, &b->shape.below_medium, err);
+    if (status == LSTUB_OK && !way->removed)
+        status = plain_medium(b, in->hole_dk, &b->shape.fill, err);
+    if (status < 0) {
+        lstub__barrel_free(b);
+        return status;
+    }
+    cut_of(b, site, way, &site->via.ends, &own);
+    b->shape.begin = own.begin;
+    b->shape.end = own.end;
+    b->shape.taps = own.taps;
+    memcpy(b->shape.tap, own.tap, sizeof own.tap);
+    b->shape.hole = widest_hole(in);
+    if (way->removed)
+        b->shape.fill = -1;
+    if (in->pair_kind != LSTUB_PAIR_NONE && way->sign == 0.0) {
+        cut_of(b, site, way, &site->via.partner, &b->partner);
+        b->shape.partner = &b->partner;
+    } else if (in->pair_kind != LSTUB_PAIR_NONE && b->shape.end == 0.0) {
+        b->shape.returns.pull = end_pull(site, in->end_layer, way->sign);
     }
     b->shape.media = b->media;
     *out = b;

@@ -118,8 +118,8 @@ cplx lstub__cavity_zin(const lstub__cavity *cavity, double freq, const cplx *eps
 
 /*
 ** Open-circuit impedances of all ports, z[ports][ports]: of each barrel the feed, where it is fed, then its taps. The feed's are
-** those of the TEM wave in the opening at depth 0; a tap's include the self term of the uniform sheet current, which the
-** caller takes off. Returns the number of ports, -1 (and NaN) where a matrix is singular.
+** those of the TEM wave in the opening at depth 0, a tap's those at the pad's rim, where the trace's own line begins. Returns
+** the number of ports, -1 (and NaN) where a matrix is singular.
 */
 #define LSTUB__CAV_PORTS (2 * (LSTUB__CAV_TAPS + 1))
 int lstub__cavity_ports(const lstub__cavity *cavity, double freq, const cplx *eps, cplx *z);

@@ -40,4 +40,7 @@ void cav_flux_start(state *w, cav_w *flux);                                     
 void cav_flux_plane(const state *w, cav_w *flux, const cav_slab *s, cav_load *l);
 void cav_flux_stop(cav_w *flux, cav_load *l);
 
+
+void cav_take_sheets(state *w, int feeds, int ports, cplx *z);                                /* cavity_sheet.c */
+
 #endif

@@ -492,6 +492,47 @@ static int number_answers(cav_mesh *mesh, cav_answer *list)
     return count;
 }
 
+/* Distances from a depth to the nearest planes above and below, in parallel; without one of them the other. */
+static double between_planes(const lstub__cav_barrel *barrel, double depth)
+{
+    double z = 0.0, up = INFINITY, down = INFINITY;
+    int k;
+
+    for (k = 0; k <= barrel->layers; k++) {
+        const lstub__cav_copper *c = &barrel->copper[k];
+        double top, bottom;
+        if (k > 0) z += barrel->layer[k - 1].thickness;
+        top = z;
+        if (k > 0 || barrel->top == LSTUB__CAV_FREE) z += c->thickness;
+        bottom = z;
+        if (c->antipad <= 0.0) continue;
+        if (bottom <= depth) up = depth - bottom;
+        else if (top >= depth && down == INFINITY) down = top - depth;
+    }
+    return up == INFINITY ? down : down == INFINITY ? up : up * down / (up + down);
+}
+
+static void find_taps(const work *w, lstub__cavity *m)
+{
+    const cav_mesh *mesh = w->mesh;
+    int b, i, k;
+
+    for (b = 0; b < mesh->barrels; b++) {
+        const double *depth = b == 0 ? w->barrel->tap : w->barrel->partner->tap;
+        for (i = 0; i < m->taps[b]; i++) {
+            cav_tap *t = &m->tap[b][i];
+            const cav_face *face;
+            t->slab = 0;
+            for (k = 0; k < mesh->slabs; k++) if (mesh->slab[b * mesh->slabs + k].tap == i) t->slab = k;
+            face = &w->face[m->cap_tap[b] != i ? mesh->slab[b * mesh->slabs + t->slab].bottom : mesh->open_top ? mesh->first_face[b] : mesh->slab[b * mesh->slabs].top];
+            t->depth = depth[i];
+            t->rim_in = face->x[0];
+            t->rim_out = face->x[face->points - 1];
+            t->height = between_planes(w->barrel, depth[i]);
+        }
+    }
+}
+
 static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
 {
     const cav_mesh *mesh = w->mesh;
@@ -544,6 +585,7 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
     m->port_medium = w->barrel->copper[0].medium;
     m->feed_length = mesh->feed_height * CAV_FEED;
     m->slab = slab; m->opening = opening; m->kernel = kernel;
+    find_taps(w, m);
     m->answers = w->answers;
     memcpy(m->answer, w->answer, sizeof m->answer);
     for (i = 0; i < m->media; i++) m->ratio[i] = w->barrel->medium[i].ratio;

@@ -270,6 +270,7 @@ int lstub__cavity_ports(const lstub__cavity *m, double freq, const cplx *eps, cp
     cav_state(&w, m, omega / LSTUB_C0, eps);
     failed = climb(&w, &l);
     if (!failed) failed = ports_of(&l, feeds, cplx_of(0.0, 1.0 / (-2.0 * LSTUB_PI * omega * LSTUB_EPS0)), z);
+    if (!failed) cav_take_sheets(&w, feeds, ports, z);
     if (!failed && feeds > 0) failed = along_feed(&w, feeds, ports, z);
     if (failed) {
         for (i = 0; i < ports * ports; i++) z[i] = cplx_of(NAN, NAN);

@@ -152,7 +152,7 @@ static int mark_taps(parts *all, int *cap)
 
     *cap = -1;
     for (i = 0; i < all->own->taps; i++) {
-        if (fabs(all->own->tap[i] - all->list[0].top) <= TINY) { *cap = i; continue; }
+        if (fabs(all->own->tap[i]) <= TINY) { *cap = i; continue; }
         for (k = 0; k < all->count; k++) if (fabs(all->own->tap[i] - all->list[k].bottom) <= TINY) break;
         if (k == all->count) return -3;
         all->list[k].slab.tap = i;

@@ -30,6 +30,12 @@ typedef struct cav_answer {         /* what answers the waves of some slabs */
     int      medium;
 } cav_answer;
 
+typedef struct cav_tap {            /* where a trace leaves */
+    int    slab;                    /* beside it                                                    */
+    double depth, rim_in, rim_out;
+    double height;                  /* of the planes' distances from it, in parallel                */
+} cav_tap;
+
 struct lstub__cavity {
     size_t  bytes;
     void  (*release)(void *, void *);
@@ -48,6 +54,7 @@ struct lstub__cavity {
     const double      *half[2], *half_top;  /* half-space: [4][cells][cells], factors of 1, k^2, k^4, and -j k^3 */
     lstub__cav_returns returns;         /* its vias lie in the same block                               */
     cav_answer answer[CAV_ANSWERS];
+    cav_tap tap[2][LSTUB__CAV_TAPS];
     double  plane_c[CAV_PLANES];        /* with flux: F over the Dk above, of each plane from the top, its opening seen as a whole */
     int     planes;
     double  ratio[LSTUB__CAV_MEDIA];

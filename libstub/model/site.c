@@ -57,21 +57,22 @@ static void mix_done(mix *m)
 }
 
 /*
-** Antipad that a plane with round holes would need to act like one slot around both barrels of a pair in odd mode:
-** fit (0.2 %) to static two-dimensional solutions of such a slot, valid for pitch/(antipad + 0.44 h) > 0.8.
+** Antipad that a plane with round holes would need to act like one slot around both barrels of a pair in odd (sign -1) or even
+** mode: fit (0.2 %) to static two-dimensional solutions of such a slot, valid for pitch/(antipad + 0.44 h) > 0.8.
 */
-double lstub__slot_antipad(const lstub_via *via, double antipad, double height)
+double lstub__slot_antipad(const lstub_via *via, double antipad, double height, double sign)
 {
-    double d = log(2.0) / LSTUB_PI * height, r = 0.5 * antipad + d, al = 0.5 * via->drill / r, t = 0.5 * via->pair_pitch / r;
-    double equal = r * (1.118 - 0.040 * al * al - (1.883 - 0.559 * al * al) * exp(-3.174 * t)) - d;
-    return 2.0 * equal;
+    double d = log(2.0) / LSTUB_PI * height, r = 0.5 * antipad + d, al2 = 0.25 * via->drill * via->drill / (r * r), t = 0.5 * via->pair_pitch / r;
+    double factor = sign < 0.0 ? 1.118 - 0.040 * al2 - (1.883 - 0.559 * al2) * exp(-3.174 * t)
+                               : 1.118 - 0.042 * al2 + (2.068 - 2.812 * al2) * exp(-3.134 * t);
+    return 2.0 * (r * factor - d);
 }
 
 static double seen_antipad(const lstub__via *via, double antipad, double height)
 {
     if (via->in.pair_kind != LSTUB_PAIR_SHARED)
         return antipad;
-    double slot = lstub__slot_antipad(&via->in, antipad, height);
+    double slot = lstub__slot_antipad(&via->in, antipad, height, -1.0);
     return slot > 1.02 * via->in.drill ? slot : 1.02 * via->in.drill;
 }
 
@@ -325,8 +326,8 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
     for (int i = 0; i < 2; i++) {
         lstub__arm *arm = &site->arm[i];
         make_arm(arm, &site->via, i, lambda, &memory);
-        arm->length = i == 0 ? stackup->layer[site->via.first].top - site->via.top
-                             : site->via.bottom - stackup->layer[site->via.last].bottom;
+        arm->length = i == 0 ? stackup->layer[site->via.first].top - site->via.ends.top
+                             : site->via.ends.bottom - stackup->layer[site->via.last].bottom;
         if (arm->count == 0 || arm->length <= LSTUB__SLACK)
             arm->length = 0.0;
     }

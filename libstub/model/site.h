@@ -40,8 +40,8 @@ int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const 
 /* The stub on a side cut to `length` (0 < length <= full; full: not drilled). */
 void    lstub__site_line(const lstub__site *site, int arm, double length, lstub__line *line);
 
-/* Round antipad that acts like a slot around the pair in odd mode; height: of the space beside the plane. */
-double  lstub__slot_antipad(const lstub_via *via, double antipad, double height);
+/* Round antipad that acts like a slot around the pair in odd (sign -1) or even mode; height: of the space beside the plane. */
+double  lstub__slot_antipad(const lstub_via *via, double antipad, double height, double sign);
 
 static inline int     lstub__arm_of(int32_t side) { return side == LSTUB_SIDE_TOP ? 0 : 1; }
 static inline int32_t lstub__side_of(int arm) { return arm == 0 ? LSTUB_SIDE_TOP : LSTUB_SIDE_BOTTOM; }

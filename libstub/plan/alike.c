@@ -16,7 +16,7 @@ static uint64_t mix_in(uint64_t hash, const void *data, size_t bytes)
     return hash;
 }
 
-#define ARRAYS 6                   /* that a via points to */
+#define ARRAYS 8                   /* that a via points to */
 
 typedef struct array { const void *data; size_t bytes; } array;
 
@@ -27,7 +27,9 @@ static void arrays_of(const lstub_via *via, array *out)
                     {via->clear, via->clear_count * sizeof *via->clear},
                     {via->connects, via->connect_count * sizeof *via->connects},
                     {via->backdrills, via->backdrill_count * sizeof *via->backdrills},
-                    {via->return_xy, via->return_count < 1 ? 0 : 2 * (size_t)via->return_count * sizeof *via->return_xy}};
+                    {via->return_xy, via->return_count < 1 ? 0 : 2 * (size_t)via->return_count * sizeof *via->return_xy},
+                    {via->return_spans, via->return_count < 1 ? 0 : 2 * (size_t)via->return_count * sizeof *via->return_spans},
+                    {via->partner_backdrills, via->partner_backdrill_count * sizeof *via->partner_backdrills}};
     memcpy(out, all, sizeof all);
 }
 
@@ -41,6 +43,8 @@ void lstub__key_make(lstub__key *k, const lstub_via *via, const lstub_job *job)
     k->via.connects = NULL;
     k->via.backdrills = NULL;
     k->via.return_xy = NULL;
+    k->via.return_spans = NULL;
+    k->via.partner_backdrills = NULL;
     k->arrays = via;
     if (job->signal != NULL)       /* wrong sizes come out when the case is decided */
         lstub__take(&k->signal, sizeof k->signal, job->signal, sizeof k->signal, "signal", NULL);

@@ -74,7 +74,7 @@ void lstub__room_make(lstub__room *room, const lstub__site *site, int arm, const
     room->value = room->limit = NAN;
     room->full = room->high = site->arm[arm].full;
     room->low = 0.0;
-    if (arm == 0 ? via->top_drilled : via->bottom_drilled) {
+    if (arm == 0 ? via->ends.top_drilled : via->ends.bottom_drilled) {
         refuse(room, LSTUB_REASON_DRILLED);
         return;
     }

@@ -1,5 +1,7 @@
 #include "via/via.h"
 
+#include <string.h>
+
 #include <math.h>
 
 static const lstub__range DIAMETER = {0.0, 0.01, 1, "m"};
@@ -87,7 +89,7 @@ int32_t lstub__via_counts(const lstub_via *in, lstub_error *err)
     const struct { size_t count, most; const char *field; } list[] = {
         {in->pad_count, LSTUB_LAYERS_MAX, "pad_count"},         {in->antipad_count, LSTUB_LAYERS_MAX, "antipad_count"},
         {in->clear_count, LSTUB_LAYERS_MAX, "clear_count"},     {in->connect_count, LSTUB_LAYERS_MAX, "connect_count"},
-        {in->backdrill_count, 2, "backdrill_count"},      {in->return_count < 0 ? 0 : (size_t)in->return_count, 1000, "return_count"}};
+        {in->backdrill_count, 2, "backdrill_count"}, {in->partner_backdrill_count, 2, "partner_backdrill_count"},      {in->return_count < 0 ? 0 : (size_t)in->return_count, 1000, "return_count"}};
     for (size_t i = 0; i < sizeof list / sizeof list[0]; i++)
         if (list[i].count > list[i].most)
             return lstub__fail(err, LSTUB_E_ARGUMENT, list[i].field, -1, "%s = %lu: must be <= %lu", list[i].field,
@@ -279,7 +281,7 @@ static int32_t check_pin(const lstub_via *in, lstub_error *err)
 }
 
 /* One back-drill: the barrel then ends at its tip, which must lie beyond the layers that connect. */
-static int32_t cut(lstub__via *via, const lstub_backdrill *drill, lstub_error *err)
+static int32_t cut(const lstub__via *via, lstub__ends *ends, const lstub_backdrill *drill, lstub_error *err)
 {
     static const lstub__range DEPTH = {0.0, 0.1, 1, "m"};
     const lstub_stackup *s = via->stackup;
@@ -292,7 +294,7 @@ static int32_t cut(lstub__via *via, const lstub_backdrill *drill, lstub_error *e
         return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)drill->reserved);
     if ((status = lstub__check(drill->depth, &DEPTH, "depth", err)) < 0 || (status = lstub__check(drill->diameter, &bit, "diameter", err)) < 0)
         return status;
-    if (at_top ? via->top_drilled : via->bottom_drilled)
+    if (at_top ? ends->top_drilled : ends->bottom_drilled)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "side", -1, "side = %ld: drilled twice", (long)drill->side);
     if ((at_top ? via->in.start_layer : via->in.end_layer) != outer)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "side", -1, "side = %ld: the barrel does not reach that surface", (long)drill->side);
@@ -303,11 +305,29 @@ static int32_t cut(lstub__via *via, const lstub_backdrill *drill, lstub_error *e
                            drill->depth, (long)(at_top ? via->first : via->last), s->layer[at_top ? via->first : via->last].name,
                            fabs(stop - (at_top ? s->layer[outer].top : s->layer[outer].bottom)));
     if (at_top) {
-        via->top = tip;
-        via->top_drilled = 1;
+        ends->top = tip;
+        ends->top_drilled = 1;
     } else {
-        via->bottom = tip;
-        via->bottom_drilled = 1;
+        ends->bottom = tip;
+        ends->bottom_drilled = 1;
+    }
+    return LSTUB_OK;
+}
+
+static int32_t cut_all(const lstub__via *via, lstub__ends *ends, const lstub_backdrill *drills, size_t count, const char *field,
+                       lstub_error *err)
+{
+    ends->top = via->stackup->layer[via->in.start_layer].top;
+    ends->bottom = via->stackup->layer[via->in.end_layer].bottom;
+    ends->top_drilled = ends->bottom_drilled = 0;
+    if (count > 0 && drills == NULL)
+        return lstub__fail(err, LSTUB_E_NULL, field, -1, "%s = null: must point to %lu entries", field, (unsigned long)count);
+    for (size_t i = 0; i < count; i++) {
+        int32_t status = cut(via, ends, &drills[i], err);
+        if (status < 0) {
+            lstub__fail_where(err, (int64_t)i, "%s[%lu]", field, (unsigned long)i);
+            return status;
+        }
     }
     return LSTUB_OK;
 }
@@ -315,19 +335,70 @@ static int32_t cut(lstub__via *via, const lstub_backdrill *drill, lstub_error *e
 static int32_t take_backdrills(lstub__via *via, lstub_error *err)
 {
     const lstub_via *in = &via->in;
-    via->top = via->stackup->layer[in->start_layer].top;
-    via->bottom = via->stackup->layer[in->end_layer].bottom;
-    via->top_drilled = via->bottom_drilled = 0;
-    if (in->backdrill_count > 0 && in->backdrills == NULL)
-        return lstub__fail(err, LSTUB_E_NULL, "backdrills", -1, "backdrills = null: must point to %lu entries",
-                           (unsigned long)in->backdrill_count);
-    for (size_t i = 0; i < in->backdrill_count; i++) {
-        int32_t status = cut(via, &in->backdrills[i], err);
+    int32_t status = cut_all(via, &via->ends, in->backdrills, in->backdrill_count, "backdrills", err);
+    via->partner = via->ends;
+    via->unequal = 0;
+    if (status < 0)
+        return status;
+    if (in->partner_own != 0 && in->partner_own != 1)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "partner_own", -1, "partner_own = %ld: must be 0 or 1", (long)in->partner_own);
+    if (in->partner_own == 0 && in->partner_backdrill_count > 0)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "partner_backdrill_count", -1, "partner_backdrill_count = %lu: must be 0 without partner_own",
+                           (unsigned long)in->partner_backdrill_count);
+    if (in->partner_own == 0)
+        return LSTUB_OK;
+    if (in->pair_kind == LSTUB_PAIR_NONE)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "partner_own", -1, "partner_own = 1: must be 0 without a pair");
+    status = cut_all(via, &via->partner, in->partner_backdrills, in->partner_backdrill_count, "partner_backdrills", err);
+    via->unequal = memcmp(&via->ends, &via->partner, sizeof via->ends) != 0;
+    return status;
+}
+
+/* Which layers each return via joins. */
+static int32_t check_spans(const lstub__via *via, lstub_error *err)
+{
+    const lstub_via *in = &via->in;
+    if (in->return_spans == NULL)
+        return LSTUB_OK;
+    if (in->return_xy == NULL)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "return_spans", -1, "return_spans: must be null without return_xy");
+    for (int32_t i = 0; i < 2 * in->return_count; i++) {
+        int32_t layer = in->return_spans[i];
+        if (layer < 0 || layer >= via->stackup->count || !lstub__is_copper(via->stackup->layer[layer].kind))
+            return lstub__fail(err, LSTUB_E_ARGUMENT, "return_spans", i / 2, "return_spans[%ld] = %ld: must be the index of a copper layer, 0 to %ld",
+                               (long)i, (long)layer, (long)via->stackup->count - 1);
+        if (i % 2 == 1 && layer <= in->return_spans[i - 1])
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_spans", i / 2, "return_spans[%ld] = %ld: must be below the first layer, %ld",
+                               (long)i, (long)layer, (long)in->return_spans[i - 1]);
+    }
+    return LSTUB_OK;
+}
+
+static int32_t check_edges(const lstub_via *in, lstub_error *err)
+{
+    int given = 0;
+    if (in->edge_kind != LSTUB_EDGE_OPEN && in->edge_kind != LSTUB_EDGE_SHORTED)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "edge_kind", -1, "edge_kind = %ld: must be one of LSTUB_EDGE_...", (long)in->edge_kind);
+    for (int i = 0; i < 4; i++)
+        given += in->edges[i] != 0.0;
+    for (int i = 0; i < 4 && given > 0; i++) {
+        lstub__range range = {0.5 * in->drill, 1.0, 1, "m"};
+        int32_t status = lstub__check(in->edges[i], &range, "edges", err);
         if (status < 0) {
-            lstub__fail_where(err, (int64_t)i, "backdrills[%lu]", (unsigned long)i);
+            lstub__fail_where(err, i, "edges[%d]", i);
             return status;
         }
     }
+    if (given > 0 && in->return_kind == LSTUB_RETURN_WALL)
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "edges", -1, "edges: must be 0 with a closed wall around the barrel");
+    for (int32_t i = 0; given > 0 && in->return_xy != NULL && i < in->return_count; i++) {
+        double x = in->return_xy[2 * i], y = in->return_xy[2 * i + 1], r = 0.5 * in->return_drill;
+        if (x - r <= -in->edges[0] || x + r >= in->edges[1] || y - r <= -in->edges[2] || y + r >= in->edges[3])
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: beyond the edges of the planes", (long)i, x, y);
+    }
+    if (given > 0 && in->pair_kind != LSTUB_PAIR_NONE && in->pair_pitch + 0.5 * in->drill >= in->edges[1])
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "edges", 1, "edges[1] = %.9g m: must be > pair_pitch = %.9g m and the partner's radius", in->edges[1],
+                           in->pair_pitch);
     return LSTUB_OK;
 }
 
@@ -357,7 +428,9 @@ int32_t lstub__via_take(lstub__via *via, const lstub_stackup *stackup, const lst
         || (status = check_list(via, in->antipads, in->antipad_count, "antipads", err)) < 0
         || (status = check_list(via, in->clear, in->clear_count, "clear", err)) < 0
         || (status = take_returns(via, err)) < 0
+        || (status = check_spans(via, err)) < 0
         || (status = check_pair(in, err)) < 0
+        || (status = check_edges(in, err)) < 0
         || (status = check_pin(in, err)) < 0
         || (status = take_surroundings(in, err)) < 0)
         return status;
@@ -377,9 +450,9 @@ int lstub__via_stub(const lstub__via *via, int32_t side, lstub_stub *stub)
     LSTUB_INIT(*stub);
     stub->side = side;
     stub->exit_layer = at_top ? via->first : via->last;
-    stub->end_layer = at_top ? (via->top_drilled ? -1 : via->in.start_layer) : (via->bottom_drilled ? -1 : via->in.end_layer);
-    stub->top = at_top ? via->top : s->layer[stub->exit_layer].bottom;
-    stub->bottom = at_top ? s->layer[stub->exit_layer].top : via->bottom;
+    stub->end_layer = at_top ? (via->ends.top_drilled ? -1 : via->in.start_layer) : (via->ends.bottom_drilled ? -1 : via->in.end_layer);
+    stub->top = at_top ? via->ends.top : s->layer[stub->exit_layer].bottom;
+    stub->bottom = at_top ? s->layer[stub->exit_layer].top : via->ends.bottom;
     stub->length = stub->bottom - stub->top;
     if (stub->exit_layer == stub->end_layer || stub->length <= LSTUB__SLACK)
         return 0;

@@ -4,12 +4,17 @@
 
 #include "stackup/stackup.h"
 
+typedef struct lstub__ends {           /* depths of a barrel's ends, back-drills made                             */
+    double top, bottom;
+    int    top_drilled, bottom_drilled;
+} lstub__ends;
+
 typedef struct lstub__via {
     lstub_via in;                      /* the caller's, defaults in place; its arrays are the caller's        */
     const lstub_stackup *stackup;
     int32_t first, last;               /* highest and lowest layer that connects                              */
-    double  top, bottom;               /* depths of the barrel's ends, back-drills made                       */
-    int     top_drilled, bottom_drilled;
+    lstub__ends ends, partner;         /* of the barrel, and of the partner in a pair                         */
+    int     unequal;                   /* these differ                                                        */
 } lstub__via;
 
 int32_t lstub__via_take(lstub__via *via, const lstub_stackup *stackup, const lstub_via *theirs, lstub_error *err);

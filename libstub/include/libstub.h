@@ -220,7 +220,7 @@ LSTUB_API int32_t lstub_conductor_surface_impedance(const lstub_conductor *condu
 typedef struct lstub_trace {       /* "below" is towards the plane of a microstrip: mirrored on a board's bottom */
     size_t  size;
     int32_t kind;                  /* LSTUB_TRACE_...                                                  */
-    int32_t reserved;
+    int32_t no_dispersion;         /* 1: microstrip: as at low frequency, strictly causal; else 0 */
     double  width;                 /* m                                                 1e-6 to 0.01   */
     double  thickness;             /* of its copper, m; 0: a sheet, and no conductor loss    0 to 1e-3 */
     double  height_below;          /* from its lower face to the plane, m               1e-6 to 0.01   */
@@ -244,7 +244,7 @@ typedef struct lstub_trace {       /* "below" is towards the plane of a microstr
 **             Dk 10 percent apart, 1 for 50.
 ** Both        causal dielectrics, in-plane Dk by stretching the heights; conductor by the rule of incremental
 **             inductance (Wheeler 1942) with the surface impedance above, down to the direct-current resistance of
-**             the strip. Passive and causal, but for the dispersion of a microstrip, which is one mode's, without loss.
+**             the strip. Passive and causal, but for a microstrip's dispersion, which is one mode's, without loss.
 ** In   freq[n] Hz, 1e3 to 1e12.   Out  z[2 n], gamma[2 n] (re, im; re > 0, im of gamma > 0); each may be null.
 ** Ret  LSTUB_W_RANGE outside the ranges above, where the copper is thicker than wide or than a height, for a stripline above
 **      its first waveguide mode, c/(sqrt(Dk)(2 w + pi b/2)), where one Dk is more than twice the other, and where a large loss

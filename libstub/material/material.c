@@ -27,9 +27,14 @@ int32_t lstub__dielectric_take(lstub_dielectric *ours, const lstub_dielectric *t
 int32_t lstub__conductor_take(lstub_conductor *ours, const lstub_conductor *theirs, lstub_error *err)
 {
     static const lstub__range CONDUCTIVITY = {1e5, 1e8, 0, "S/m"}, ROUGHNESS = {0.0, 20e-6, 0, "m"};
-    int32_t status = lstub__take(ours, sizeof *ours, theirs, sizeof *ours, "conductor", err);
+    int32_t status = lstub__take(ours, sizeof *ours, theirs, offsetof(lstub_conductor, roughness_law), "conductor", err);
     if (status < 0)
         return status;
+    if (ours->reserved != 0)
+        return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)ours->reserved);
+    if (ours->roughness_law != LSTUB_ROUGHNESS_HAMMERSTAD && ours->roughness_law != LSTUB_ROUGHNESS_SPHERES)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "roughness_law", -1, "roughness_law = %ld: must be 0 (HAMMERSTAD) or 1 (SPHERES)",
+                           (long)ours->roughness_law);
     if (ours->conductivity == 0.0)
         ours->conductivity = 5.8e7;
     if ((status = lstub__check(ours->conductivity, &CONDUCTIVITY, "conductivity", err)) < 0

@@ -225,7 +225,7 @@ static void name_long(test_board *b)
 static void no_dielectric(test_board *b) { b->layer[5].dielectric = NULL; }
 static void dielectric_dk(test_board *b) { b->dielectric.dk = 0.5; }
 static void dielectric_size(test_board *b) { b->dielectric.size = 3; }
-static lstub_conductor poor = {sizeof(lstub_conductor), 1e3, 0}, rough = {sizeof(lstub_conductor), 0, 1e-3}, fine = {sizeof(lstub_conductor), 0, 0};
+static lstub_conductor poor = {.size = sizeof poor, .conductivity = 1e3}, rough = {.size = sizeof rough, .roughness = 1e-3}, fine = {.size = sizeof fine};
 static void conductor_poor(test_board *b) { b->layer[2].conductor = &poor; }
 static void conductor_rough(test_board *b) { b->layer[2].conductor = &rough; }
 static void conductor_in_dielectric(test_board *b) { b->layer[1].conductor = &fine; }

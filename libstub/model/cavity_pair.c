@@ -4,7 +4,8 @@
 ** Two barrels: each has its own waves as if it were alone (Q = 0), and mode 0 ties them. A barrel's wave K0 comes back to barrel q
 ** as Gamma_qp I0. With T = I0/K0 of each barrel that passes (0 where it has ended) and G = Gamma (1 + T Gamma)^-1 the radial
 ** admittances become R = diag(kappa a K1/K0) - G_qp/(K0_q K0_p), and mode 0's terms are -R/(h k0^2) between the phi of both. Where
-** a barrel has ended its phi is (I0 - 1)/kappa^2, kappa^2 stands for 1/K0 and there is no own term.
+** a barrel has ended its phi is (I0 - 1)/kappa^2, kappa^2 stands for 1/K0 and there is no own term; where a drilled hole is left, it
+** scatters as a rod: phi is its field, T its own, kappa stands for 1/K0.
 */
 #include "model/cavity_cascade.h"
 
@@ -57,8 +58,9 @@ typedef struct two {                /* mode 0 of both, at their own cells */
     cplx *top[2], *bottom[2], r[4];
 } two;
 
-static void admittances(state *w, const cav_slab *s, const int *present, cplx *r)
+static void admittances(state *w, const cav_slab *const *each, const int *present, cplx *r)
 {
+    const cav_slab *s = each[0];
     const cav_echo *echo = cav_echo_of(w, s);
     cplx k = w->kappa[s->medium], k2 = cplx_mul(k, k), t[2], c[2], m[4], det, g[4];
     double a = w->m->radius;
@@ -70,6 +72,12 @@ static void admittances(state *w, const cav_slab *s, const int *present, cplx *r
         cplx e = cplx_exp(cplx_scale(k, a));
         t[i] = present[i] ? cplx_mul(cplx_div(b.i0, b.k0), cplx_mul(e, e)) : cplx_of(0.0, 0.0);
         c[i] = present[i] ? cplx_div(e, b.k0) : k2;
+        if (!present[i] && each[i]->fill >= 0) {
+            mode_form f;
+            cav_make_form(w, each[i], 0, &f);
+            t[i] = f.t;
+            c[i] = k;
+        }
     }
     for (i = 0; i < 4; i++) {           /* 1 + T Gamma */
         m[i] = cplx_mul(t[i / 2], echo->gamma[i]);
@@ -119,13 +127,14 @@ static void add_column(cav_step *c, const two *v, int loop, int q, cplx factor)
 }
 
 /* Mode 0 of both in a slab whose waves they share. */
-static void tie(state *w, const cav_slab *s, const two *v, cav_step *c)
+static void tie(state *w, const cav_slab *const *each, const two *v, cav_step *c)
 {
+    const cav_slab *s = each[0];
     const cplx one = cplx_of(1.0, 0.0);
     cplx r[4], unit = cplx_of(-1.0 / (s->h * w->k0 * w->k0), 0.0), det, ratio;
     int i, q;
 
-    admittances(w, s, v->present, r);
+    admittances(w, each, v->present, r);
     if (v->present[0] && v->present[1]) {
         c->loops = 2;
         add_column(c, v, 0, 0, one);
@@ -185,7 +194,7 @@ static void pair_step(state *w, int slab, cav_room *room, cav_step *c)
     clear(c, room, na, nb);
     for (i = 0; i < 2; i++) place(&b[i], v.na[i], v.nb[i], v.ra[i], v.rb[i], c);
     if (s[0]->outer == LSTUB__CAV_RING) {
-        tie(w, s[0], &v, c);
+        tie(w, s, &v, c);
         return;
     }
     c->loops = 0;

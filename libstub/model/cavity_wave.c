@@ -217,7 +217,7 @@ void cav_make_form(state *w, const cav_slab *s, int mode, mode_form *f)
     double k0 = w->k0;
 
     f->hole = s->fill >= 0;
-    f->small = mode == 0 && !f->hole && cplx_norm(w->kappa[s->medium]) * reach_of(w->m, s) < 30.0;
+    f->small = mode == 0 && !f->hole && cplx_norm(w->kappa[s->medium]) * reach_of(w->m, s) < (w->m->barrels > 1 ? 144.0 : 30.0);    /* two are tied by this form alone */
     f->kappa = mode == 0 ? w->kappa[s->medium] : wave_number(eps, w->m->ratio[s->medium], k0, mode, s->h);
     f->q = reflection(w, s, mode, f->kappa);
     f->t = cplx_of(0.0, 0.0);

@@ -205,6 +205,23 @@ START_TEST(there_and_back)
 }
 END_TEST
 
+/* Complex references are those of the item; real ones as complex ones say the same. */
+START_TEST(references_of_each_frequency)
+{
+    lstub_error err;
+    double s[16], both[16], one[8], plain[8];
+    const double from[8] = {50, 3, 60, -2, 70, 0, 80, 0}, to[8] = {45, -1, 55, 4, 40, 0, 90, 0}, from_real[2] = {70, 80}, to_real[2] = {40, 90};
+    LSTUB_INIT(err);
+    random_matrix(s, 2, 12, 1.0);
+    random_matrix(s + 8, 2, 13, 1.0);
+    assert_ok(lstub_network_renormalise_complex(s, 2, 2, from, to, both, NULL, &err), err);
+    assert_ok(lstub_network_renormalise_complex(s, 1, 2, from, to, one, NULL, &err), err);
+    assert_same(both, one, 2, 0.0, "the first alone");
+    assert_ok(lstub_network_renormalise(s + 8, 1, 2, from_real, to_real, plain, NULL, &err), err);
+    assert_same(both + 8, plain, 2, 0.0, "the second, real");
+}
+END_TEST
+
 /* Z = R + jX, R positive definite, X symmetric: passive; without R lossless. */
 START_TEST(passive_networks)
 {
@@ -386,6 +403,7 @@ int main(void)
     tcase_add_test(identities, chain_matrices);
     tcase_add_test(identities, unequal_references);
     tcase_add_test(identities, there_and_back);
+    tcase_add_test(identities, references_of_each_frequency);
     tcase_add_test(identities, passive_networks);
     tcase_add_test(input, singular);
     tcase_add_test(input, weak_fixtures);

@@ -131,6 +131,23 @@ START_TEST(steps_of_other_grids)
 }
 END_TEST
 
+/* What is extrapolated to 0 leans on points far enough apart: noise of the next one hardly moves where a step settles. */
+START_TEST(noise_at_the_lowest_frequencies)
+{
+    lstub_error err;
+    double before, after;
+    const double late = 10e-9;
+    LSTUB_INIT(err);
+    even(250e6, 50e6, 100e9);
+    fill(delayed);
+    assert_ok(lstub_step_response(freq, s, n, 1, 0, 0, RISE, &late, 1, &before, &err), err);
+    s[2] *= 1.001;
+    s[3] *= 1.001;
+    assert_ok(lstub_step_response(freq, s, n, 1, 0, 0, RISE, &late, 1, &after, &err), err);
+    ck_assert_msg(fabs(after - before) < 5e-4, "moved by %g", after - before);
+}
+END_TEST
+
 START_TEST(impedances)
 {
     lstub_error err;
@@ -421,6 +438,7 @@ int main(void)
     read_table();
     tcase_add_loop_test(steps, steps_exact, 0, (int)COUNT(known));
     tcase_add_loop_test(steps, steps_of_other_grids, 0, (int)COUNT(known));
+    tcase_add_test(steps, noise_at_the_lowest_frequencies);
     tcase_add_test(steps, impedances);
     tcase_add_test(steps, area_of_a_capacitor);
     tcase_add_test(steps, entries);

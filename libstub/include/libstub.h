@@ -220,7 +220,7 @@ LSTUB_API int32_t lstub_conductor_surface_impedance(const lstub_conductor *condu
 typedef struct lstub_trace {       /* "below" is towards the plane of a microstrip: mirrored on a board's bottom */
     size_t  size;
     int32_t kind;                  /* LSTUB_TRACE_...                                                  */
-    int32_t no_dispersion;         /* 1: microstrip: as at low frequency, strictly causal; else 0 */
+    int32_t no_dispersion;         /* 1: a microstrip as at low frequency, strictly causal             */
     double  width;                 /* m                                                 1e-6 to 0.01   */
     double  thickness;             /* of its copper, m; 0: a sheet, and no conductor loss    0 to 1e-3 */
     double  height_below;          /* from its lower face to the plane, m               1e-6 to 0.01   */
@@ -313,8 +313,8 @@ LSTUB_API int32_t lstub_network_reciprocity(const double *s, size_t n, int32_t p
 **
 ** early[p p]: share of the energy of every impulse response that comes more than `resolution` before t0 (s, >= 0: 0, or the
 ** delay that nothing can undercut). The band is weighted by a Kaiser window (beta 10), which blurs by resolution[1] =
-** 1.67/f_max: below 1e-7 nothing can be said against the data, but an advance shorter than that, or beyond the band,
-** does not show. What wraps round counts as early, and so does noise.
+** 1.67/f_max: below 1e-7 (points interpolated: 1e-3) nothing can be said against the data, but an advance shorter than
+** that, or beyond the band, does not show. What wraps round counts as early, and so does noise.
 */
 LSTUB_API int32_t lstub_network_causality(const double *freq, const double *s, size_t n, int32_t p, double t0, double *early,
                                           double *resolution, lstub_error *err);
@@ -807,6 +807,8 @@ typedef struct lstub_port {
 #define LSTUB_STUBS_KEPT    0      /* as drilled                                                       */
 #define LSTUB_STUBS_REMOVED 1      /* as if the barrel ended on its outermost connecting layers: what the stubs do is
                                       the difference                                                   */
+#define LSTUB_METAL_LOSSY   0      /* barrel and planes of the stackup's conductors, the barrel's that of its first layer */
+#define LSTUB_METAL_PERFECT 1
 #define LSTUB_MODE_SINGLE 0        /* of one port driven                                               */
 #define LSTUB_MODE_ODD    1        /* of a pair: both barrels with opposite signs, seen on one of them (Sdd)  */
 #define LSTUB_MODE_EVEN   2        /* ... with equal signs (Scc)                                       */
@@ -815,7 +817,8 @@ typedef struct lstub_transition_options {
     size_t  size;
     int32_t stubs;                 /* LSTUB_STUBS_...                                                  */
     int32_t annuli;                /* as in lstub_model_options                                        */
-    const lstub_allocator *allocator;
+    int32_t metal;                 /* LSTUB_METAL_...                                                  */
+    int32_t reserved;
 } lstub_transition_options;
 
 /* What a transition rests on, or not: a sum. Any but RADIATES makes the status LSTUB_W_RANGE. */
@@ -832,7 +835,7 @@ typedef struct lstub_transition lstub_transition;
 /*
 ** Ports: those given, in their order; of a pair then the partner's, which mirror them. At least one; no two on one layer; a
 ** layer that connects without a port carries no trace. Traces leave anywhere but in each other's way: all stand out from
-** the axis alone. Conductor loss of barrel and planes: the stackup's conductors.
+** the axis alone.
 ** Ret  LSTUB_W_RANGE with a handle: see the remarks.
 ** Valid to 110e9 Hz. On 21 transitions of three-dimensional full-wave runs (tests/reference, docs/theory.md).
 */

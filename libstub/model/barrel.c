@@ -285,6 +285,21 @@ int32_t lstub__barrel_make(lstub__barrel **out, const lstub__site *site, int arm
 
 /* ---- the whole barrel, for a transition ---------------------------------------------------------- */
 
+/* The number of a layer's metal, kept once. */
+static int32_t metal_of(lstub__barrel *b, const lstub__layer *layer, int *number, lstub_error *err)
+{
+    const lstub_conductor *c = &layer->conductor;
+    for (*number = 0; *number < b->metals; ++*number) {
+        const lstub_conductor *k = &b->conductor[*number];
+        if (k->conductivity == c->conductivity && k->roughness == c->roughness && k->roughness_law == c->roughness_law)
+            return LSTUB_OK;
+    }
+    if (b->metals == LSTUB__CAV_METALS)
+        return lstub__fail(err, LSTUB_E_UNSUPPORTED, "conductor", -1, "conductor: more than %d different ones along the barrel", LSTUB__CAV_METALS);
+    b->conductor[b->metals++] = *c;
+    return LSTUB_OK;
+}
+
 static int32_t whole_layers(lstub__barrel *b, const lstub__site *site, const lstub__passage *way, lstub_error *err)
 {
     const lstub__via *via = &site->via;
@@ -306,6 +321,8 @@ static int32_t whole_layers(lstub__barrel *b, const lstub__site *site, const lst
             c->thickness = layer->thickness;
             c->antipad = 0.5 * (fed ? lstub__via_antipad(via, i) : seen_antipad(site, i, sign));
             c->pad = fed ? 0.0 : 0.5 * lstub__via_pad(via, i);
+            if ((status = metal_of(b, layer, &c->metal, err)) < 0)
+                return status;
             if (fed)
                 status = plain_medium(b, way->feed_dk, &c->medium, err);
             else if (i == via->in.start_layer || i == via->in.end_layer)
@@ -405,6 +422,12 @@ void lstub__barrel_free(lstub__barrel *barrel)
         return;
     lstub_allocator alloc = barrel->alloc;
     lstub__free(&alloc, barrel);
+}
+
+void lstub__barrel_metals(const lstub__barrel *barrel, double f, cplx *surface)
+{
+    for (int i = 0; i < barrel->metals; i++)
+        surface[i] = lstub__surface_impedance(&barrel->conductor[i], f);
 }
 
 void lstub__barrel_media(const lstub__barrel *barrel, double f, cplx *eps)

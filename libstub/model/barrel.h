@@ -2,6 +2,7 @@
 #ifndef LSTUB_BARREL_H
 #define LSTUB_BARREL_H
 
+#include "material/conductor.h"
 #include "model/cavity.h"
 #include "model/site.h"
 
@@ -15,6 +16,8 @@ typedef struct lstub__barrel {
     lstub__cav_via    via[LSTUB__CAV_VIAS];
     lstub__cav_cut    partner;
     int media;
+    lstub_conductor conductor[LSTUB__CAV_METALS];   /* whole barrels: [0] of the barrel                      */
+    int metals;
     const lstub_stackup *stackup;          /* while it is made                                              */
     double origin;                         /* depth in the board of its depth 0                             */
     int    up;                             /* an arm that runs upwards                                      */
@@ -33,6 +36,8 @@ typedef struct lstub__passage {            /* how a signal passes a whole barrel
 int32_t lstub__barrel_make(lstub__barrel **out, const lstub__site *site, int arm, double length, lstub_error *err);
 int32_t lstub__barrel_whole(lstub__barrel **out, const lstub__site *site, const lstub__passage *way, lstub_error *err);
 void    lstub__barrel_free(lstub__barrel *barrel);
+/* Impedance of its metals at f. */
+void    lstub__barrel_metals(const lstub__barrel *barrel, double f, cplx *surface);
 /* Complex through-plane permittivity of its media at f. */
 void    lstub__barrel_media(const lstub__barrel *barrel, double f, cplx *eps);
 

@@ -16,6 +16,7 @@
 #define LSTUB__CAV_CELLS    24      /* most annuli of one aperture                                      */
 #define LSTUB__CAV_POINTS   42      /* most rims of annuli, refined                                     */
 #define LSTUB__CAV_MEDIA    64
+#define LSTUB__CAV_METALS   8
 #define LSTUB__CAV_VIAS     16      /* most return vias at given positions                              */
 
 typedef struct lstub__cav_medium {
@@ -28,6 +29,7 @@ typedef struct lstub__cav_copper {
     double antipad;                 /* radius; 0: no plane at the via on this layer                     */
     double pad;                     /* radius; 0: none                                                  */
     int    medium;                  /* what fills the layer where there is no copper                    */
+    int    metal;                   /* of the plane                                                     */
 } lstub__cav_copper;
 
 typedef struct lstub__cav_layer {
@@ -113,16 +115,16 @@ size_t lstub__cavity_bytes(const lstub__cavity *cavity);
 ** 0.7 wavelengths. Above it results are wrong without any sign: the caller must compare. */
 double lstub__cavity_limit(const lstub__cavity *cavity, const cplx *eps);
 
-/* Input impedance of the TEM wave in the opening of copper[0], at z = 0. eps[media]: complex, through-plane. */
+/* Input impedance of the TEM wave in the opening of copper[0], at z = 0. eps[media]: complex, through-plane. Perfect metal. */
 cplx lstub__cavity_zin(const lstub__cavity *cavity, double freq, const cplx *eps);
 
 /*
 ** Open-circuit impedances of all ports, z[ports][ports]: of each barrel the feed, where it is fed, then its taps. The feed's are
-** those of the TEM wave in the opening at depth 0, a tap's those at the pad's rim, where the trace's own line begins. Returns
-** the number of ports, -1 (and NaN) where a matrix is singular.
+** those of the TEM wave in the opening at depth 0, a tap's those at the pad's rim, where the trace's own line begins. surface: impedance
+** of each metal, ohm per square, [0] that of the barrel; null: perfect. Returns the number of ports, -1 (and NaN) where a matrix is singular.
 */
 #define LSTUB__CAV_PORTS (2 * (LSTUB__CAV_TAPS + 1))
-int lstub__cavity_ports(const lstub__cavity *cavity, double freq, const cplx *eps, cplx *z);
+int lstub__cavity_ports(const lstub__cavity *cavity, double freq, const cplx *eps, const cplx *surface, cplx *z);
 /* Amplitude of I0(kappa rho) that answers K0(kappa rho) from the barrel, in a cavity of this medium between two depths. */
 cplx lstub__cavity_answer(const lstub__cav_returns *returns, double from, double to, cplx kappa);
 

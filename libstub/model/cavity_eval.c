@@ -260,14 +260,14 @@ static int climb(state *w, cav_load *l)
     return 0;
 }
 
-int lstub__cavity_ports(const lstub__cavity *m, double freq, const cplx *eps, cplx *z)
+int lstub__cavity_ports(const lstub__cavity *m, double freq, const cplx *eps, const cplx *surface, cplx *z)
 {
     state w;
     cav_load l;
     double omega = 2.0 * LSTUB_PI * freq;
     int feeds = m->feed > 0 ? m->barrels : 0, ports = feeds + m->taps[0] + (m->barrels > 1 ? m->taps[1] : 0), failed, i;
 
-    cav_state(&w, m, omega / LSTUB_C0, eps);
+    cav_state(&w, m, omega / LSTUB_C0, eps, surface);
     failed = climb(&w, &l);
     if (!failed) failed = ports_of(&l, feeds, cplx_of(0.0, 1.0 / (-2.0 * LSTUB_PI * omega * LSTUB_EPS0)), z);
     if (!failed) cav_take_sheets(&w, feeds, ports, z);
@@ -284,7 +284,7 @@ cplx lstub__cavity_zin(const lstub__cavity *m, double freq, const cplx *eps)
 {
     cplx z[LSTUB__CAV_PORTS * LSTUB__CAV_PORTS];
 
-    lstub__cavity_ports(m, freq, eps, z);
+    lstub__cavity_ports(m, freq, eps, NULL, z);
     return z[0];
 }
 

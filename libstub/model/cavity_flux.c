@@ -247,7 +247,7 @@ int cav_flux_prepare(lstub__cavity *m, const lstub__cav_medium *medium, void *sc
     m->planes = 0;
     if (!m->returns.flux) return 0;
     for (i = 0; i < m->media; i++) eps[i] = cplx_of(medium[i].dk, 0.0);
-    cav_state(&s->w, m, 2.0 * LSTUB_PI * 1e9 / LSTUB_C0, eps);
+    cav_state(&s->w, m, 2.0 * LSTUB_PI * 1e9 / LSTUB_C0, eps, NULL);
     if (!(cplx_norm(mean_shape(&s->w)) > NOTHING * NOTHING * pow(m->returns.opening, 4.0))) {
         m->returns.flux = 0;
         return 0;

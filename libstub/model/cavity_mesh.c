@@ -27,12 +27,14 @@ typedef struct part {               /* a slab as it is cut, before faces */
     int      keep;                  /* holds a pad: never joined to a neighbour */
     double   thin_antipad;          /* copper without thickness on its lower face: antipad of a plane, */
     double   thin_pad;              /* radius of a pad, 0: none */
+    int      thin_metal;
 } part;
 
 typedef struct parts {              /* of one barrel */
     part  *list;
     int    count;
     double cap_antipad, cap_pad;    /* copper without thickness on top of all */
+    int    cap_metal;
     const lstub__cav_cut *own;
     double cut[2 * (LSTUB__CAV_TAPS + 2)];      /* depths where both barrels are cut, rising */
     int    cuts;
@@ -46,22 +48,26 @@ static int same_slab(const part *a, const part *b)
         && x->r_in == y->r_in && x->medium == y->medium && x->fill == y->fill && x->outer == y->outer && x->vias == y->vias;
 }
 
-static void add_thin(parts *all, double r_in, double antipad, int keep)
+static void add_thin(parts *all, double r_in, double antipad, int keep, int metal)
 {
     double *thin_antipad = all->count > 0 ? &all->list[all->count - 1].thin_antipad : &all->cap_antipad;
     double *thin_pad = all->count > 0 ? &all->list[all->count - 1].thin_pad : &all->cap_pad;
 
-    if (antipad > 0.0 && (*thin_antipad == 0.0 || antipad < *thin_antipad)) *thin_antipad = antipad;
+    if (antipad > 0.0 && (*thin_antipad == 0.0 || antipad < *thin_antipad)) {
+        *thin_antipad = antipad;
+        if (all->count > 0) all->list[all->count - 1].thin_metal = metal;
+        else all->cap_metal = metal;
+    }
     if (keep && r_in > *thin_pad) *thin_pad = r_in;
 }
 
 static int add_part(const lstub__cav_barrel *barrel, parts *all, double top, double bottom, double r_in, double antipad,
-                    int medium, int keep, int drilled)
+                    int medium, int keep, int drilled, int metal)
 {
     part p;
 
     if (bottom - top < TINY) {                  /* too thin for a slab: what is left is its copper */
-        add_thin(all, r_in, antipad, keep);
+        add_thin(all, r_in, antipad, keep, metal);
         return 0;
     }
     memset(&p, 0, sizeof p);
@@ -78,6 +84,8 @@ static int add_part(const lstub__cav_barrel *barrel, parts *all, double top, dou
     p.slab.outer = antipad > 0.0 ? LSTUB__CAV_WALL : barrel->outer;
     p.slab.r_out = antipad > 0.0 ? antipad : barrel->outer == LSTUB__CAV_WALL ? barrel->wall : 0.0;
     p.slab.tap = -1;
+    p.slab.metal_top = p.slab.metal_bottom = -1;
+    p.slab.metal_wall = antipad > 0.0 ? metal : -1;
     if (p.slab.fill == medium) p.slab.fill = -1;
     if (all->count >= CAV_SLABS / 2) return -2;
     all->list[all->count++] = p;
@@ -86,7 +94,7 @@ static int add_part(const lstub__cav_barrel *barrel, parts *all, double top, dou
 
 /* A level from top to bottom, cut where a barrel begins or ends and where a trace leaves. */
 static int add_level(const lstub__cav_barrel *barrel, parts *all, double top, double bottom, double r_in, double antipad,
-                     int medium, int keep)
+                     int medium, int keep, int metal)
 {
     double end = all->own->end > 0.0 ? all->own->end : INFINITY, at = top;
     int failed = 0, i;
@@ -98,7 +106,7 @@ static int add_level(const lstub__cav_barrel *barrel, parts *all, double top, do
         if (next > bottom) next = bottom;
         middle = 0.5 * (at + next);
         inside = middle >= all->own->begin && middle <= end;
-        failed = add_part(barrel, all, at, next, inside ? r_in : 0.0, antipad, medium, keep && inside, !inside);
+        failed = add_part(barrel, all, at, next, inside ? r_in : 0.0, antipad, medium, keep && inside, !inside, metal);
         at = next;
         if (next >= bottom) break;
     }
@@ -113,18 +121,34 @@ static int cut_barrel(const lstub__cav_barrel *barrel, parts *all)
     all->count = 0;
     all->cap_antipad = all->cap_pad = 0.0;
     if (barrel->top == LSTUB__CAV_FREE && barrel->below == LSTUB__CAV_LID)
-        failed = add_part(barrel, all, -barrel->lid, 0.0, 0.0, 0.0, barrel->below_medium, 1, 0);
+        failed = add_part(barrel, all, -barrel->lid, 0.0, 0.0, 0.0, barrel->below_medium, 1, 0, 0);
     for (k = barrel->top == LSTUB__CAV_FREE ? 0 : 1; k <= barrel->layers && !failed; k++) {
         const lstub__cav_copper *c = &barrel->copper[k];
         double next = k > 0 ? z + barrel->layer[k - 1].thickness : z, pad = c->pad > barrel->radius ? c->pad : barrel->radius;
 
-        if (k > 0) failed = add_level(barrel, all, z, next, barrel->radius, 0.0, barrel->layer[k - 1].medium, 0);
+        if (k > 0) failed = add_level(barrel, all, z, next, barrel->radius, 0.0, barrel->layer[k - 1].medium, 0, 0);
         z = next + c->thickness;
-        if (!failed) failed = add_level(barrel, all, next, z, pad, c->antipad, c->medium, c->pad > 0.0);
+        if (!failed) failed = add_level(barrel, all, next, z, pad, c->antipad, c->medium, c->pad > 0.0, c->metal);
     }
     if (!failed && barrel->below == LSTUB__CAV_LID)
-        failed = add_part(barrel, all, z, z + barrel->lid, 0.0, 0.0, barrel->below_medium, 1, 0);
+        failed = add_part(barrel, all, z, z + barrel->lid, 0.0, 0.0, barrel->below_medium, 1, 0, 0);
     return failed;
+}
+
+/* The planes that each slab touches: what its waves lose. */
+static void mark_metal(const lstub__cav_barrel *barrel, parts *all)
+{
+    int i;
+
+    for (i = 0; i < all->count; i++) {
+        part *p = &all->list[i], *up = i > 0 ? &all->list[i - 1] : NULL, *down = i + 1 < all->count ? &all->list[i + 1] : NULL;
+        if (p->antipad > 0.0) continue;
+        if (up == NULL) p->slab.metal_top = barrel->top == LSTUB__CAV_FED ? barrel->copper[0].metal : all->cap_antipad > 0.0 ? all->cap_metal : -1;
+        else if (up->antipad > 0.0) p->slab.metal_top = up->slab.metal_wall;
+        else if (up->thin_antipad > 0.0) p->slab.metal_top = up->thin_metal;
+        if (down != NULL && down->antipad > 0.0) p->slab.metal_bottom = down->slab.metal_wall;
+        else if (p->thin_antipad > 0.0) p->slab.metal_bottom = p->thin_metal;
+    }
 }
 
 static void add_cut(parts *all, double depth)
@@ -193,6 +217,7 @@ static void join_parts(parts *all, int barrels)
             last->slab.tap = p->slab.tap;
             last->thin_antipad = p->thin_antipad;
             last->thin_pad = p->thin_pad;
+            last->thin_metal = p->thin_metal;
         }
         if (!same) n++;
     }
@@ -379,7 +404,7 @@ static void feed_slabs(const lstub__cav_barrel *barrel, int feed, cav_mesh *mesh
         s->r_out = face->x[1];
         s->outer = LSTUB__CAV_WALL;
         s->medium = barrel->copper[0].medium;
-        s->fill = s->tap = -1;
+        s->fill = s->tap = s->metal_top = s->metal_bottom = s->metal_wall = -1;
         s->top = k == 0 ? feed + 1 : feed;
         s->bottom = feed;
     }
@@ -456,6 +481,7 @@ int cav_mesh_make(const lstub__cav_barrel *barrel, int cells, int refine, void *
     }
     if (failed) return failed;
     join_parts(all, mesh->barrels);
+    for (b = 0; b < mesh->barrels; b++) mark_metal(barrel, &all[b]);
     mesh->feed = barrel->top == LSTUB__CAV_FED ? CAV_FEED : 0;
     mesh->open_top = barrel->top == LSTUB__CAV_FREE && barrel->below == LSTUB__CAV_HALFSPACE;
     mesh->slabs = all[0].count + mesh->feed;

@@ -1,6 +1,9 @@
 /*
 ** A slab of one barrel, with the axial flux, or of two barrels side by side.
 **
+** Loss in metal: mode 0's loops are inductances jw mu0 h/(2 pi rho), in series with the surface impedance of the barrel, Zs h/(2 pi a),
+** and with that of the planes, over which its current spreads as its flux does: n planes make mu0 (1 + n Zs/(jw mu0 h)).
+**
 ** Two barrels: each has its own waves as if it were alone (Q = 0), and mode 0 ties them. A barrel's wave K0 comes back to barrel q
 ** as Gamma_qp I0. With T = I0/K0 of each barrel that passes (0 where it has ended) and G = Gamma (1 + T Gamma)^-1 the radial
 ** admittances become R = diag(kappa a K1/K0) - G_qp/(K0_q K0_p), and mode 0's terms are -R/(h k0^2) between the phi of both. Where
@@ -233,13 +236,40 @@ static void with_flux(const cav_slab *s, const cav_w *flux, cav_room *room, cav_
     }
 }
 
+/* Loops of a slab with the loss of its metal; radius: of what carries the current. */
+static void add_metal(const state *w, const cav_slab *s, cplx *loop, int n, int stride)
+{
+    const cplx *z = w->surface;
+    cplx planes = cplx_of(0.0, 0.0), wall, m;
+    int i, j;
+
+    if (z == NULL || n == 0 || s->r_in <= 0.0) return;
+    if (s->metal_top >= 0) planes = cplx_add(planes, z[s->metal_top]);
+    if (s->metal_bottom >= 0) planes = cplx_add(planes, z[s->metal_bottom]);
+    m = cplx_scale(cplx_of(planes.im, -planes.re), 1.0 / (w->k0 * LSTUB_ETA0 * s->h));
+    m.re += 1.0;
+    wall = cplx_scale(z[0], s->h / s->r_in);
+    if (s->metal_wall >= 0) wall = cplx_add(wall, cplx_scale(z[s->metal_wall], s->h / s->r_out));
+    wall = cplx_scale(cplx_of(-wall.im, wall.re), w->k0 / LSTUB_ETA0);         /* jw eps0 Zs h/a */
+    for (i = 0; i < n; i++)
+        for (j = 0; j < n; j++) {
+            cplx *to = &loop[i * stride + j];
+            *to = cplx_mul(*to, m);
+            if (i == j) *to = cplx_add(*to, wall);
+        }
+}
+
 void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_step *c)
 {
     const lstub__cavity *m = w->m;
     const cav_slab *s = &m->slab[slab];
     block b;
 
-    if (m->barrels > 1) { pair_step(w, slab, room, c); return; }
+    if (m->barrels > 1) {
+        pair_step(w, slab, room, c);
+        if (slab >= m->feed) add_metal(w, s->r_in > 0.0 ? s : &m->slab[m->slabs + slab], c->loop, c->loops, c->loops);
+        return;
+    }
     point(&b, room->own[0], room->ends[0]);
     cav_block(w, s, &b);
     c->na = m->opening[s->top].cells;
@@ -251,5 +281,6 @@ void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_st
     c->bottom[0] = b.bottom;
     c->loop[0] = b.loop;
     c->loops = b.loop.re != 0.0 || b.loop.im != 0.0;
+    if (slab >= m->feed) add_metal(w, s, c->loop, c->loops, 1);
     if (flux->on && flux->started) with_flux(s, flux, room, c);
 }

@@ -35,6 +35,7 @@ typedef struct cav_slab {
     unsigned vias;                              /* which return vias join the planes around it, a bit each */
     int    answer;                              /* number of (vias, barrel, medium), of what answers its waves */
     int    kernel;
+    int    metal_top, metal_bottom, metal_wall; /* of the planes above and below and of the tube around; -1: none */
 } cav_slab;
 
 /* Modes n >= first of a slab, per 1/h and unit permittivity, as Chebyshev series in u = eps_z k0^2 over 0 .. u_max. */

@@ -40,7 +40,7 @@ typedef struct kept_block {         /* of slabs whose faces are alike */
 
 typedef struct state {
     const lstub__cavity *m;
-    const cplx *eps;
+    const cplx *eps, *surface;      /* surface null: perfect metal */
     double k0;
     cplx kappa[LSTUB__CAV_MEDIA];
     int echo_known[CAV_ANSWERS];
@@ -77,7 +77,7 @@ void cav_block(state *w, const cav_slab *s, block *own);
 void cav_sums(const cav_opening *o, const cplx *v, cplx *out);
 void cav_half_admittance(const state *w, const double *half, int cells, cplx *y);
 
-/* The state of one frequency; eps[media] stays the caller's. */
-void cav_state(state *w, const lstub__cavity *m, double k0, const cplx *eps);
+/* The state of one frequency; eps[media] and surface[metals] stay the caller's. */
+void cav_state(state *w, const lstub__cavity *m, double k0, const cplx *eps, const cplx *surface);
 
 #endif

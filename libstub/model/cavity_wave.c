@@ -345,12 +345,13 @@ void cav_mode_on(state *w, const mode_form *f, const cav_slab *s, const cav_open
 }
 
 
-void cav_state(state *w, const lstub__cavity *m, double k0, const cplx *eps)
+void cav_state(state *w, const lstub__cavity *m, double k0, const cplx *eps, const cplx *surface)
 {
     int i;
 
     w->m = m;
     w->eps = eps;
+    w->surface = surface;
     w->k0 = k0;
     w->stored = w->singles = w->blocks = 0;
     for (i = 0; i < m->media; i++) {

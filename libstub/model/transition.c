@@ -66,11 +66,13 @@ static void to_waves(const cplx *z, int n, const line_at *line, const double *z_
 void lstub__transition_mode(const lstub_transition *t, int mode, double f, cplx *s)
 {
     int n = t->modes == 0 ? 2 * t->ways : t->ways, place[MOST];
-    cplx eps[LSTUB__CAV_MEDIA], z[LSTUB__CAV_PORTS * LSTUB__CAV_PORTS], mine[MOST * MOST];
+    cplx eps[LSTUB__CAV_MEDIA], surface[LSTUB__CAV_METALS], z[LSTUB__CAV_PORTS * LSTUB__CAV_PORTS], mine[MOST * MOST];
     line_at line[MOST];
     double z_ref[MOST];
     lstub__barrel_media(t->barrel[mode], f, eps);
-    lstub__cavity_ports(t->cavity[mode], f, eps, z);
+    if (!t->perfect)
+        lstub__barrel_metals(t->barrel[mode], f, surface);
+    lstub__cavity_ports(t->cavity[mode], f, eps, t->perfect ? NULL : surface, z);
     for (int i = 0; i < n; i++) {
         const lstub__way *w = &t->way[i % t->ways];
         place[i] = w->place + (i < t->ways ? 0 : t->ways);

@@ -23,6 +23,7 @@ struct lstub_transition {
     int     ways;                                /* ports of one barrel                                      */
     int     modes;                               /* 1: a single barrel; 2: a pair, odd and even; 0: two barrels in one model */
     int32_t remarks;
+    int     perfect;                             /* metal                                                    */
     double  f_top;                               /* Hz, above which there is no answer                       */
     lstub__barrel *barrel[2];
     lstub__cavity *cavity[2];

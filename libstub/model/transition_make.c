@@ -219,6 +219,10 @@ int32_t lstub_transition_create(const lstub_stackup *stackup, const lstub_via *v
         return status;
     if (ours.stubs != LSTUB_STUBS_KEPT && ours.stubs != LSTUB_STUBS_REMOVED)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "stubs", -1, "stubs = %ld: must be one of LSTUB_STUBS_...", (long)ours.stubs);
+    if (ours.metal != LSTUB_METAL_LOSSY && ours.metal != LSTUB_METAL_PERFECT)
+        return lstub__fail(err, LSTUB_E_ARGUMENT, "metal", -1, "metal = %ld: must be one of LSTUB_METAL_...", (long)ours.metal);
+    if (ours.reserved != 0)
+        return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)ours.reserved);
     LSTUB_INIT(plain);
     plain.annuli = ours.annuli;
     if ((status = lstub__site_make(&site, stackup, via, &plain, err)) < 0)
@@ -229,6 +233,7 @@ int32_t lstub_transition_create(const lstub_stackup *stackup, const lstub_via *v
         return LSTUB_E_MEMORY;
     t->alloc = alloc;
     t->f_top = TOP_FREQUENCY;
+    t->perfect = ours.metal == LSTUB_METAL_PERFECT;
     status = take_ports(t, &site.via, ports, count, stride, &way, err);
     way.removed = ours.stubs == LSTUB_STUBS_REMOVED;
     int pair = site.via.in.pair_kind != LSTUB_PAIR_NONE, two = pair && site.via.unequal && !way.removed;

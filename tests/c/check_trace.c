@@ -425,13 +425,21 @@ END_TEST
 START_TEST(anisotropy)
 {
     for (int32_t kind = 0; kind < 2; kind++) {
-        lstub_dielectric d = dielectric(3.6, 0), same = dielectric(3.6 * sqrt(1.21), 0), air = dielectric(1, 0);
+        lstub_dielectric d = dielectric(3.6, 0), same = dielectric(3.6 * sqrt(1.21), 0), air = dielectric(1, 0),
+                         equal = dielectric(3.6, 0);
         d.in_plane_ratio = 1.21;
         lstub_trace x = trace(kind, 1.5e-4, 0, 1e-4, kind * 1.4e-4, &d), s = trace(kind, 1.5e-4, 0, 1.1e-4, kind * 1.54e-4, &same);
         lstub_trace v = trace(kind, 1.5e-4, 0, 1e-4, kind * 1.4e-4, &air);
         line a = line_at(&x, 1e6), b = line_at(&s, 1e6), c = line_at(&v, 1e6);
         assert_close(a.shunt[1], b.shunt[1], 1e-6, 0, "identity: stretched coordinates");
         assert_close(a.series[1], c.series[1], 1e-6, 0, "identity: no magnetic material");
+        /* with thickness there is no such identity, but no step either */
+        x.thickness = s.thickness = 3e-5;
+        d.in_plane_ratio = 1.0001;
+        s.dielectric_below = &equal;
+        s.height_below = x.height_below;
+        s.height_above = x.height_above;
+        assert_close(line_at(&x, 1e6).shunt[1], line_at(&s, 1e6).shunt[1], 2e-4, 0, "limit: isotropic");
     }
 }
 END_TEST

@@ -157,10 +157,18 @@ static int32_t give_pair_vias(lstub__barrel *b, const lstub_via *in, lstub_error
 /* Vias around a single barrel; evenly spread ones are one via and a number. */
 static int32_t give_vias(lstub__barrel *b, const lstub_via *in, lstub_error *err)
 {
-    if (in->return_xy == NULL) {
+    if (in->return_xy == NULL && in->edges[0] == 0.0) {
         b->shape.returns.even = in->return_count;
         return add_via(b, in, 0, in->return_distance, 0.0, err);
     }
+    for (int32_t i = 0; i < in->return_count && in->return_xy == NULL; i++) {     /* edges: no two of them are alike */
+        double angle = 2.0 * LSTUB_PI * i / in->return_count;
+        int32_t status = add_via(b, in, i, in->return_distance * cos(angle), in->return_distance * sin(angle), err);
+        if (status < 0)
+            return status;
+    }
+    if (in->return_xy == NULL)
+        return LSTUB_OK;
     for (int32_t i = 0; i < in->return_count; i++) {
         int32_t status = add_via(b, in, i, in->return_xy[2 * i], in->return_xy[2 * i + 1], err);
         if (status < 0)
@@ -200,6 +208,11 @@ static double end_pull(const lstub__site *site, int32_t end, double sign)
     return share * LSTUB_EPS0 * 0.5 * (site->via.stackup->layer[end].dielectric.dk + 1.0) * pad * pad / gap;
 }
 
+int lstub__edges_even(const lstub_via *in)
+{
+    return fabs(in->edges[0] - (in->edges[1] - in->pair_pitch)) <= 1e-9;
+}
+
 /* sign: of the partner, driven; 0: it is a barrel of its own. */
 static int32_t give_returns(lstub__barrel *b, const lstub__site *site, double sign, lstub_error *err)
 {
@@ -221,6 +234,14 @@ static int32_t give_returns(lstub__barrel *b, const lstub__site *site, double si
     if (in->return_kind == LSTUB_RETURN_VIAS) {
         b->shape.outer = LSTUB__CAV_RING;
         status = in->pair_kind != LSTUB_PAIR_NONE ? give_pair_vias(b, in, err) : give_vias(b, in, err);
+    }
+    if (in->edges[0] > 0.0) {
+        b->shape.outer = LSTUB__CAV_RING;
+        memcpy(r->edge, in->edges, sizeof r->edge);
+        r->shorted = in->edge_kind == LSTUB_EDGE_SHORTED;
+        if (sign != 0.0 && in->pair_kind != LSTUB_PAIR_NONE && !lstub__edges_even(in))
+            return lstub__fail(err, LSTUB_E_UNSUPPORTED, "edges", -1, "edges: %.9g m beside the barrel and %.9g m beside its partner: a pair in odd mode "
+                               "is computed with equal ones only", in->edges[0], in->edges[1] - in->pair_pitch);
     }
     r->flux = b->shape.outer == LSTUB__CAV_RING && r->even < 2 && (in->pair_kind == LSTUB_PAIR_NONE || sign != 0.0);
     r->slot = in->pair_kind == LSTUB_PAIR_SHARED;

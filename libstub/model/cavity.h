@@ -51,6 +51,8 @@ typedef struct lstub__cav_returns {     /* what answers the barrel's radial wave
     int    flux;                        /* a field across the barrel threads the openings (cavity_flux.c)  */
     int    slot;                        /* ... which are slots around both barrels                        */
     double opening, height;             /* ... their mean radius (of a slot's round ends), mean plate distance */
+    double edge[4];                     /* distances to straight edges of the planes towards -x, +x, -y, +y; 0: none */
+    int    shorted;                     /* these are joined                                                */
     double pull;                        /* F, of the partner's end pad on this one's, counted at the last plane */
 } lstub__cav_returns;
 

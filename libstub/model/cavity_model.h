@@ -75,4 +75,7 @@ void cav_half_space(const cav_face *face, const double *c, double *out);
 typedef struct cav_echo { cplx gamma[4], flux; } cav_echo;
 void cav_ring(const lstub__cav_returns *returns, unsigned vias, int barrels, double radius, cplx kappa, int two, cav_echo *out);
 
+/* What the planes' edges send back to (x, y) of a wave K0(kappa rho) from (xs, ys). */
+cplx cav_edge(const lstub__cav_returns *returns, cplx kappa, double x, double y, double xs, double ys);
+
 #endif

@@ -179,6 +179,46 @@ static cplx flux_shape(const lstub__cav_returns *r, cplx c_minus, cplx c_plus, c
     return cplx_div(j, d);
 }
 
+/* Adds what the planes' edges send back: between order 0 of all vias and the barrels as sources. */
+static void add_edges(const lstub__cav_returns *r, const scatterer *list, int count, cplx kappa, int two, cplx *a, int n, cplx *b, int columns)
+{
+    int i, j, s, sources = r->pitch > 0.0 ? 2 : 1;
+
+    for (j = 0; j < count; j++) {
+        int row = list[j].first + list[j].orders / 2;
+        if (list[j].barrel >= 0) continue;                          /* its order 0 is its own current */
+        for (i = 0; i < count; i++) {
+            cplx *to = &a[row * n + list[i].first + list[i].orders / 2];
+            if (list[i].barrel < 0) *to = cplx_add(*to, cav_edge(r, kappa, list[j].x, list[j].y, list[i].x, list[i].y));
+        }
+        for (s = 0; s < sources; s++) {
+            cplx *to = &b[row * columns + (two ? s : 0)], e = cav_edge(r, kappa, list[j].x, list[j].y, s * r->pitch, 0.0);
+            *to = cplx_sub(*to, cplx_scale(e, s == 1 && !two ? r->sign : 1.0));
+        }
+    }
+}
+
+/* The same arriving at the barrels. */
+static void add_edges_back(const lstub__cav_returns *r, const scatterer *list, int count, cplx kappa, int two, const cplx *b, int columns,
+                           cplx *gamma)
+{
+    int i, j, s, p, sources = r->pitch > 0.0 ? 2 : 1;
+
+    for (s = 0; s < columns; s++) {
+        for (p = 0; p < sources; p++) {
+            cplx e = cav_edge(r, kappa, s * r->pitch, 0.0, p * r->pitch, 0.0), *to = &gamma[columns * s + (two ? p : 0)];
+            *to = cplx_add(*to, cplx_scale(e, p == 1 && !two ? r->sign : 1.0));
+        }
+        for (j = 0; j < count; j++) {
+            int row = list[j].first + list[j].orders / 2;
+            cplx e;
+            if (list[j].barrel >= 0) continue;
+            e = cav_edge(r, kappa, s * r->pitch, 0.0, list[j].x, list[j].y);
+            for (i = 0; i < columns; i++) gamma[columns * s + i] = cplx_fma(gamma[columns * s + i], e, b[row * columns + i]);
+        }
+    }
+}
+
 void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double radius, cplx kappa, int two, cav_echo *out)
 {
     scatterer list[LSTUB__CAV_VIAS + 2];
@@ -213,6 +253,7 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
         }
         for (i = 0; i < j; i++) couple(&list[i], at, kappa, a, n);
     }
+    if (r->edge[0] > 0.0) add_edges(r, list, count, kappa, two, a, n, b, columns);
     if (n > 0 && lstub__zsolve(a, n, n, b, columns, columns) != 0) { out->gamma[0] = cplx_of(NAN, NAN); return; }
     if (r->pitch > 0.0) {
         waves(kappa, r->pitch, 1, k);
@@ -232,6 +273,7 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
             }
         }
     }
+    if (r->edge[0] > 0.0) add_edges_back(r, list, count, kappa, two, b, columns, out->gamma);
     if (r->flux && !two && (barrels & 1)) {
         const scatterer *own = &list[count - 1];
         while (own->barrel != 0) own--;

@@ -3,7 +3,8 @@
 
 #include <math.h>
 
-#define SWEEPS 40
+#define SWEEPS     40
+#define ORTHOGONAL 1e-14   /* cosine between columns; what is left of it costs less of a length than rounding */
 
 /* Columns j and k turned until they are orthogonal; 0 where they were. */
 static int rotate(cplx *s, int p, int j, int k)
@@ -17,7 +18,7 @@ static int rotate(cplx *s, int p, int j, int k)
         jk = cplx_fma(jk, cplx_conj(a), b);
     }
     double g = cplx_abs(jk);
-    if (!(g > 1e-16 * sqrt(jj) * sqrt(kk)) || g == 0.0)
+    if (!(g > ORTHOGONAL * sqrt(jj) * sqrt(kk)) || g == 0.0)
         return 0;
     double zeta = (kk - jj) / (2.0 * g);
     double t = (zeta < 0.0 ? -1.0 : 1.0) / (fabs(zeta) + hypot(1.0, zeta)), c = 1.0 / hypot(1.0, t);

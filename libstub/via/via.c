@@ -153,6 +153,36 @@ static int32_t check_pad_default(double pad, double drill, const char *field, ls
     return status;
 }
 
+/* Whether a return via's axis lies in the opening of a plane that it should join. */
+static int in_opening(const lstub_via *in, double antipad, double x, double y)
+{
+    double r = 0.5 * antipad;
+    if (hypot(x, y) < r || (in->pair_kind != LSTUB_PAIR_NONE && hypot(x - in->pair_pitch, y) < r))
+        return 1;
+    return in->pair_kind == LSTUB_PAIR_SHARED && x > 0.0 && x < in->pair_pitch && fabs(y) < r;
+}
+
+static int32_t check_openings(const lstub__via *via, int32_t layer, double antipad, lstub_error *err)
+{
+    const lstub_via *in = &via->in;
+    const char *name = via->stackup->layer[layer].name;
+    if (in->return_kind != LSTUB_RETURN_VIAS)
+        return LSTUB_OK;
+    if (in->return_xy == NULL)
+        return in->return_distance >= 0.5 * antipad ? LSTUB_OK
+               : lstub__fail(err, LSTUB_E_GEOMETRY, "return_distance", layer, "layer %ld '%s': return_distance = %.9g m: the return vias lie inside "
+                             "the antipad of %.9g m", (long)layer, name, in->return_distance, antipad);
+    for (int32_t i = 0; i < in->return_count; i++) {
+        double x = in->return_xy[2 * i], y = in->return_xy[2 * i + 1];
+        if (in->return_spans != NULL && (layer < in->return_spans[2 * i] || layer > in->return_spans[2 * i + 1]))
+            continue;
+        if (in_opening(in, antipad, x, y))
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "layer %ld '%s': return_xy[%ld] = %.9g, %.9g m: inside the antipad of %.9g m",
+                               (long)layer, name, (long)i, x, y, antipad);
+    }
+    return LSTUB_OK;
+}
+
 static int32_t check_layer(const lstub__via *via, int32_t layer, lstub_error *err)
 {
     double pad = lstub__via_pad(via, layer), antipad = lstub__via_antipad(via, layer), drill = via->in.drill;
@@ -180,7 +210,7 @@ static int32_t check_layer(const lstub__via *via, int32_t layer, lstub_error *er
     if (via->in.pair_kind == LSTUB_PAIR_SEPARATE && antipad >= via->in.pair_pitch)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "pair_pitch", layer, "layer %ld '%s': pair_pitch = %.9g m: antipads of %.9g m "
                            "overlap; LSTUB_PAIR_SHARED is for that", (long)layer, name, via->in.pair_pitch, antipad);
-    return LSTUB_OK;
+    return antipad > 0.0 ? check_openings(via, layer, antipad, err) : LSTUB_OK;
 }
 
 /* Return vias at given places touch neither the barrel nor each other. */

@@ -123,6 +123,17 @@ static const place release_0_1[] = {
         AT(lstub_loss_deviation, a1, 16), AT(lstub_loss_deviation, a2, 24), AT(lstub_loss_deviation, a4, 32),
         AT(lstub_loss_deviation, rms, 40), AT(lstub_loss_deviation, greatest, 48), AT(lstub_loss_deviation, fom, 56),
         AT(lstub_loss_deviation, points, 64),
+    SIZE(lstub_touchstone_row, 12), AT(lstub_touchstone_row, kind, 0), AT(lstub_touchstone_row, port, 4),
+        AT(lstub_touchstone_row, partner, 8),
+    SIZE(lstub_touchstone_data, 104), AT(lstub_touchstone_data, size, 0), AT(lstub_touchstone_data, version, 8),
+        AT(lstub_touchstone_data, ports, 12), AT(lstub_touchstone_data, parameter, 16), AT(lstub_touchstone_data, format, 20),
+        AT(lstub_touchstone_data, unit, 24), AT(lstub_touchstone_data, matrix, 28), AT(lstub_touchstone_data, order, 32),
+        AT(lstub_touchstone_data, digits, 36), AT(lstub_touchstone_data, points, 40),
+        AT(lstub_touchstone_data, noise_points, 48), AT(lstub_touchstone_data, freq, 56), AT(lstub_touchstone_data, data, 64),
+        AT(lstub_touchstone_data, reference, 72), AT(lstub_touchstone_data, rows, 80),
+        AT(lstub_touchstone_data, comments, 88), AT(lstub_touchstone_data, comment_count, 96),
+    SIZE(lstub_source, 24), AT(lstub_source, size, 0), AT(lstub_source, read, 8), AT(lstub_source, user, 16),
+    SIZE(lstub_sink, 24), AT(lstub_sink, size, 0), AT(lstub_sink, write, 8), AT(lstub_sink, user, 16),
     SIZE(lstub_board_options, 32), AT(lstub_board_options, size, 0), AT(lstub_board_options, stackup, 8),
         AT(lstub_board_options, progress, 16), AT(lstub_board_options, progress_user, 24),
     SIZE(lstub_hole, 72), AT(lstub_hole, size, 0), AT(lstub_hole, name, 8), AT(lstub_hole, net, 16),
@@ -153,6 +164,7 @@ START_TEST(fixed_sizes)
         return;
     ck_assert_uint_eq(sizeof(lstub_on_layer), 16);
     ck_assert_uint_eq(sizeof(lstub_backdrill), 24);
+    ck_assert_uint_eq(sizeof(lstub_touchstone_row), 12);
     ck_assert_uint_eq(sizeof(lstub_drill_cut), 80);
     ck_assert_uint_eq(sizeof(lstub_margin), 88);           /* within lstub_decision */
 }

@@ -154,12 +154,31 @@ static int32_t give_pair_vias(lstub__barrel *b, const lstub_via *in, lstub_error
     return LSTUB_OK;
 }
 
+/* Whether given places are those of a regular ring, which is computed by its symmetry. */
+static int regular(const lstub_via *in)
+{
+    double s = hypot(in->return_xy[0], in->return_xy[1]), first = atan2(in->return_xy[1], in->return_xy[0]);
+    if (in->return_spans != NULL)
+        for (int32_t i = 1; i < in->return_count; i++)
+            if (in->return_spans[2 * i] != in->return_spans[0] || in->return_spans[2 * i + 1] != in->return_spans[1])
+                return 0;
+    for (int32_t k = 1; k < in->return_count; k++) {
+        double x = s * cos(first + 2.0 * LSTUB_PI * k / in->return_count), y = s * sin(first + 2.0 * LSTUB_PI * k / in->return_count);
+        int32_t i = 1;
+        while (i < in->return_count && hypot(in->return_xy[2 * i] - x, in->return_xy[2 * i + 1] - y) > 1e-9 * s)
+            i++;
+        if (i == in->return_count)
+            return 0;
+    }
+    return in->return_count > 1;
+}
+
 /* Vias around a single barrel; evenly spread ones are one via and a number. */
 static int32_t give_vias(lstub__barrel *b, const lstub_via *in, lstub_error *err)
 {
-    if (in->return_xy == NULL && in->edges[0] == 0.0) {
+    if ((in->return_xy == NULL || regular(in)) && in->edges[0] == 0.0) {
         b->shape.returns.even = in->return_count;
-        return add_via(b, in, 0, in->return_distance, 0.0, err);
+        return add_via(b, in, 0, in->return_xy == NULL ? in->return_distance : hypot(in->return_xy[0], in->return_xy[1]), 0.0, err);
     }
     for (int32_t i = 0; i < in->return_count && in->return_xy == NULL; i++) {     /* edges: no two of them are alike */
         double angle = 2.0 * LSTUB_PI * i / in->return_count;

@@ -7,6 +7,7 @@
 #define CAV_CELLS  LSTUB__CAV_CELLS                 /* of all barrels at one face                     */
 #define CAV_WIDE   (CAV_CELLS + 1)                  /* and the flux                                   */
 #define CAV_TRACES (2 * LSTUB__CAV_TAPS)
+#define CAV_ALL    (CAV_WIDE + 2 + CAV_TRACES)      /* LSTUB__GRAM_WIDE is enough for that              */
 
 typedef struct cav_load {           /* I = y V + s I_o, V_o = s.V + zeta I_o                            */
     int  n, traces;

@@ -540,8 +540,8 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
     cav_opening *opening;
     cav_kernel *kernel;
     lstub__cav_via *via;
-    double *half[3] = { NULL, NULL, NULL };
-    int half_face[3], i, b;
+    double *half[3] = { NULL, NULL, NULL }, *plane_c;
+    int half_face[3], planes = 0, i, b;
 
     half_face[0] = mesh->half_face[0];
     half_face[1] = mesh->barrels > 1 ? mesh->half_face[1] : -1;
@@ -555,6 +555,8 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
         size_t cells = half_face[i] >= 0 ? (size_t)w->face[half_face[i]].cells : 0;
         half[i] = take(p, 4 * cells * cells * sizeof *half[i]);
     }
+    for (i = 0; i < mesh->slabs && w->barrel->returns.flux; i++) planes += mesh->slab[i].plane;
+    plane_c = take(p, (size_t)planes * sizeof *plane_c);
     pack_openings(w, n, p, opening);
     pack_kernels(w, n, p, opening, kernel);
     if (m == NULL) return;
@@ -586,6 +588,7 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
     m->feed_length = mesh->feed_height * CAV_FEED;
     m->slab = slab; m->opening = opening; m->kernel = kernel;
     find_taps(w, m);
+    m->plane_c = plane_c;
     m->answers = w->answers;
     memcpy(m->answer, w->answer, sizeof m->answer);
     for (i = 0; i < m->media; i++) m->ratio[i] = w->barrel->medium[i].ratio;

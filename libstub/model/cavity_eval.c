@@ -22,70 +22,56 @@ static void invert(const cplx *a, int n, cplx *out)
     out[1] = out[2] = cplx_neg(cplx_mul(a[1], det));
 }
 
-static cplx dot(const cplx *a, const cplx *b, int n, int stride)
+/* Traces seen through a slab; g: see cav_step_up. */
+static void traces_up(cav_load *l, const cav_step *c, const cplx *g, int wide, const cplx *gamma, cplx d[2][CAV_WIDE])
 {
-    cplx sum = cplx_of(0.0, 0.0);
-    int i;
+    cplx turned[2 * CAV_TRACES];
+    int t = l->traces, n = c->loops, at = c->na + n, i, j, k, q;
 
-    for (i = 0; i < n; i++) sum = cplx_fma(sum, a[i], b[i * stride]);
-    return sum;
-}
-
-/* Traces seen through a slab. z: M^-1 (C', bottom, s), sigma: bottom' M^-1 s. */
-static void traces_up(cav_load *l, const cav_step *c, const cplx *z, int wide, const cplx *gamma, cplx d[2][CAV_WIDE])
-{
-    cplx next[CAV_WIDE * CAV_TRACES], sigma[2 * CAV_TRACES], turned[2 * CAV_TRACES], sum;
-    const cplx *zs = z + c->na + c->loops;
-    int t = l->traces, i, j, k, q;
-
-    for (q = 0; q < c->loops; q++)
-        for (j = 0; j < t; j++) sigma[q * t + j] = dot(c->bottom[q], zs + j, c->nb, wide);
-    for (q = 0; q < c->loops; q++)
+    for (q = 0; q < n; q++)                     /* gamma bottom' M^-1 s */
         for (j = 0; j < t; j++) {
             turned[q * t + j] = cplx_of(0.0, 0.0);
-            for (k = 0; k < c->loops; k++) turned[q * t + j] = cplx_fma(turned[q * t + j], gamma[q * c->loops + k], sigma[k * t + j]);
+            for (k = 0; k < n; k++) turned[q * t + j] = cplx_fma(turned[q * t + j], gamma[q * n + k], g[(c->na + k) * wide + at + j]);
         }
     for (i = 0; i < t; i++)
         for (j = 0; j < t; j++) {
             cplx *to = &l->zeta[i * t + j];
-            for (k = 0; k < c->nb; k++) *to = cplx_fms(*to, l->s[k * t + i], zs[k * wide + j]);
-            for (q = 0; q < c->loops; q++) *to = cplx_fma(*to, sigma[q * t + i], turned[q * t + j]);
+            *to = cplx_sub(*to, g[(at + i) * wide + at + j]);
+            for (q = 0; q < n; q++) *to = cplx_fma(*to, g[(c->na + q) * wide + at + i], turned[q * t + j]);
         }
     for (i = 0; i < c->na; i++)
         for (j = 0; j < t; j++) {
-            sum = dot(c->tb + i * c->nb, zs + j, c->nb, wide);
-            for (q = 0; q < c->loops; q++) sum = cplx_fma(sum, d[q][i], turned[q * t + j]);
-            next[i * t + j] = sum;
+            cplx sum = g[i * wide + at + j];
+            for (q = 0; q < n; q++) sum = cplx_fma(sum, d[q][i], turned[q * t + j]);
+            l->s[i * t + j] = sum;
         }
-    memcpy(l->s, next, (size_t)(c->na * t) * sizeof next[0]);
 }
 
 /*
 ** With mode 0's terms (top, -bottom) loop^-1 (top, -bottom)' kept apart,
 **
-**     Y <- T - C M^-1 C' + d gamma d',  M = Y + B,  d = top - C M^-1 bottom,  1/gamma = loop + bottom' M^-1 bottom
+**     Y <- T - C M^-1 C' + d gamma d',  M = Y + B,  d = top - C M^-1 bottom,  1/gamma = loop + bottom' M^-1 bottom,
+**
+** all of it found in g = (C', bottom, s)' M^-1 (C', bottom, s).
 */
 int cav_step_up(cav_load *l, const cav_step *c)
 {
     int na = c->na, nb = c->nb, n = c->loops, wide = na + n + l->traces, i, j, k, q;
-    cplx m[CAV_WIDE * CAV_WIDE], z[CAV_WIDE * (CAV_WIDE + 2 + CAV_TRACES)], d[2][CAV_WIDE], e[2][CAV_WIDE], loop[4], gamma[4];
+    cplx m[CAV_WIDE * CAV_WIDE], r[CAV_WIDE * CAV_ALL], g[CAV_ALL * CAV_ALL], d[2][CAV_WIDE], e[2][CAV_WIDE], loop[4], gamma[4];
 
-    for (i = 0; i < nb * nb; i++) m[i] = cplx_add(c->bb[i], l->y[i]);
     for (i = 0; i < nb; i++) {
-        for (j = 0; j < na; j++) z[i * wide + j] = c->tb[j * nb + i];
-        for (q = 0; q < n; q++) z[i * wide + na + q] = c->bottom[q][i];
-        for (j = 0; j < l->traces; j++) z[i * wide + na + n + j] = l->s[i * l->traces + j];
+        for (j = i; j < nb; j++) m[i * nb + j] = cplx_add(c->bb[i * nb + j], l->y[i * nb + j]);
+        for (j = 0; j < na; j++) r[i * wide + j] = c->tb[j * nb + i];
+        for (q = 0; q < n; q++) r[i * wide + na + q] = c->bottom[q][i];
+        for (j = 0; j < l->traces; j++) r[i * wide + na + n + j] = l->s[i * l->traces + j];
     }
-    if (nb > 0 && lstub__zsolve(m, nb, nb, z, wide, wide) != 0) return -1;
+    if (lstub__zgram(m, nb, r, wide, g) != 0) return -1;
     for (q = 0; q < n; q++) {
-        for (k = 0; k < n; k++) loop[q * n + k] = nb > 0 ? cplx_add(c->loop[q * n + k], dot(c->bottom[q], z + na + k, nb, wide)) : c->loop[q * n + k];
-        for (i = 0; i < na; i++) {
-            d[q][i] = c->top[q][i];
-            for (k = 0; k < nb; k++) d[q][i] = cplx_fms(d[q][i], c->tb[i * nb + k], z[k * wide + na + q]);
-        }
+        for (k = 0; k < n; k++) loop[q * n + k] = cplx_add(c->loop[q * n + k], g[(na + q) * wide + na + k]);
+        for (i = 0; i < na; i++) d[q][i] = cplx_sub(c->top[q][i], g[i * wide + na + q]);
     }
     if (n > 0) invert(loop, n, gamma);
-    if (l->traces > 0) traces_up(l, c, z, wide, gamma, d);
+    if (l->traces > 0) traces_up(l, c, g, wide, gamma, d);
     for (q = 0; q < n; q++)
         for (i = 0; i < na; i++) {
             e[q][i] = cplx_mul(gamma[q * n], d[0][i]);
@@ -93,9 +79,8 @@ int cav_step_up(cav_load *l, const cav_step *c)
         }
     for (i = 0; i < na; i++) {
         for (j = 0; j <= i; j++) {
-            cplx sum = c->tt[i * na + j];
+            cplx sum = cplx_sub(c->tt[i * na + j], g[i * wide + j]);
             for (q = 0; q < n; q++) sum = cplx_fma(sum, e[q][i], d[q][j]);
-            for (k = 0; k < nb; k++) sum = cplx_fms(sum, c->tb[i * nb + k], z[k * wide + j]);
             l->y[i * na + j] = l->y[j * na + i] = sum;
         }
     }

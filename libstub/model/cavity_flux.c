@@ -207,7 +207,6 @@ static int find_capacitances(lstub__cavity *m, const lstub__cav_medium *medium, 
                 n = s->load.n;
                 memcpy(s->below, s->load.y, (size_t)(n * n) * sizeof s->below[0]);
             } else {
-                if (m->planes == CAV_PLANES) return -2;
                 m->plane_c[m->planes++] = opening_c(s->below, &s->chain, n) / dk;
                 n = s->chain.na;
                 if (s->chain.nb == n)
@@ -227,7 +226,6 @@ static int find_capacitances(lstub__cavity *m, const lstub__cav_medium *medium, 
         first = 0;
     }
     if (!first) {
-        if (m->planes == CAV_PLANES) return -2;
         m->plane_c[m->planes++] = opening_c(s->below, &s->chain, n) / dk;
     }
     for (i = 0; i < m->planes / 2; i++) {       /* found upwards, kept downwards */

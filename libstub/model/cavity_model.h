@@ -21,7 +21,6 @@ typedef struct cav_kernel {         /* modes n >= first of slabs that are alike 
 } cav_kernel;
 
 #define CAV_ANSWERS 32
-#define CAV_PLANES  128
 
 
 typedef struct cav_answer {         /* what answers the waves of some slabs */
@@ -55,7 +54,7 @@ struct lstub__cavity {
     lstub__cav_returns returns;         /* its vias lie in the same block                               */
     cav_answer answer[CAV_ANSWERS];
     cav_tap tap[2][LSTUB__CAV_TAPS];
-    double  plane_c[CAV_PLANES];        /* with flux: F over the Dk above, of each plane from the top, its opening seen as a whole */
+    double *plane_c;                    /* with flux: F over the Dk above, of each plane from the top, its opening seen as a whole */
     int     planes;
     double  ratio[LSTUB__CAV_MEDIA];
 };

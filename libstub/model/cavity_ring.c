@@ -140,15 +140,18 @@ static int list_scatterers(const lstub__cav_returns *r, unsigned mask, int barre
 /* What the wave of scatterer i becomes at scatterer j, and back. */
 static void couple(const scatterer *i, const scatterer *j, cplx kappa, cplx *a, int n)
 {
-    cplx k[2 * ORDERS + 1];
-    double dx = j->x - i->x, dy = j->y - i->y;
-    int u, v;
+    cplx k[2 * ORDERS + 1], turns[2 * ORDERS + 1];
+    double dx = j->x - i->x, dy = j->y - i->y, d = hypot(dx, dy);
+    int top = i->order[i->orders - 1] + j->order[j->orders - 1], u, v;
 
-    waves(kappa, hypot(dx, dy), i->order[i->orders - 1] + j->order[j->orders - 1], k);
+    waves(kappa, d, top, k);
+    turns[0] = cplx_of(1.0, 0.0);
+    for (u = 1; u <= top; u++) turns[u] = cplx_mul(turns[u - 1], cplx_of(dx / d, dy / d));
     for (v = 0; v < j->orders; v++) {
         for (u = 0; u < i->orders; u++) {
-            int p = i->order[u], q = j->order[v];
-            cplx there = cplx_mul(k[abs(p - q)], turn(dx, dy, p - q)), here = cplx_mul(k[abs(p - q)], turn(-dx, -dy, q - p));
+            int p = i->order[u], q = j->order[v], m = abs(p - q);
+            cplx turn_there = p < q ? cplx_conj(turns[m]) : turns[m];           /* e^(j (p - q) theta) */
+            cplx there = cplx_mul(k[m], turn_there), here = cplx_scale(cplx_mul(k[m], cplx_conj(turn_there)), m & 1 ? -1.0 : 1.0);
             a[(j->first + v) * n + i->first + u] = cplx_scale(there, q & 1 ? -1.0 : 1.0);
             a[(i->first + u) * n + j->first + v] = cplx_scale(here, p & 1 ? -1.0 : 1.0);
         }

@@ -59,7 +59,7 @@ static void plain_release(void *user, void *memory) { (void)user; free(memory); 
 */
 START_TEST(radial_guide_of_one_cavity)
 {
-    static const lstub__cav_copper copper[2] = {{1e-3, 51e-6, 0, 0}, {10e-3, 51e-6, 0, 0}};
+    static const lstub__cav_copper copper[2] = {{1e-3, 51e-6, 0, 0, 0}, {10e-3, 51e-6, 0, 0, 0}};
     static const lstub__cav_layer layer[1] = {{1e-6, 0}};
     static const lstub__cav_medium medium[2] = {{3.6, 1.0}, {1.0, 1.0}};
     static const double wall[] = {0.05, 0.3, 0.7, 1.6};

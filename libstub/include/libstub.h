@@ -62,16 +62,13 @@ extern "C" {
 #endif
 
 /* ---- versions ----------------------------------------------------------------------------------- */
-
 #define LSTUB_VERSION "0.1.0"
 #define LSTUB_ABI     0          /* raised when an old program could no longer run with the library   */
-
 LSTUB_API const char *lstub_version(void);        /* of the library in use, "0.1.0"                   */
 LSTUB_API int32_t     lstub_abi(void);            /* LSTUB_ABI of the library in use: compare at load */
 LSTUB_API int32_t     lstub_model_revision(void); /* raised whenever numbers change                   */
 
 /* ---- status, messages, memory ------------------------------------------------------------------- */
-
 #define LSTUB_OK             0
 #define LSTUB_W_RANGE        1   /* done, outside the stated range of the model                       */
 #define LSTUB_W_CAPACITY     2   /* done, but there were more results than the array holds            */
@@ -87,7 +84,6 @@ LSTUB_API int32_t     lstub_model_revision(void); /* raised whenever numbers cha
 #define LSTUB_E_READ      (-10)  /* a file cannot be read                                             */
 #define LSTUB_E_WRITE     (-11)  /* a file cannot be written; what stood there before still stands    */
 #define LSTUB_E_FORMAT    (-12)  /* a file is not what it should be; the message has the line         */
-
 LSTUB_API const char *lstub_status_name(int32_t status);   /* "LSTUB_E_ARGUMENT"; never null          */
 
 typedef struct lstub_error {     /* the caller's; filled on every status but LSTUB_OK                 */
@@ -127,7 +123,6 @@ LSTUB_API int32_t lstub_quarter_wave_length(double f, double dk, int32_t n, doub
 LSTUB_API int32_t lstub_quarter_wave_dk(double f, double length, int32_t n, double *dk, lstub_error *err);
 /* Dk of a line that delays by `delay` seconds per metre: (c delay)^2. */
 LSTUB_API int32_t lstub_delay_dk(double delay, double *dk, lstub_error *err);
-
 /* Nulls with a capacitance at the open end: the root number n = 1, 2, 3 ... of
 ** cot(2 pi f L sqrt(Dk)/c) = 2 pi f Ce Zs. end_capacitance >= 0. Source: open-end correction (Pozar). */
 LSTUB_API int32_t lstub_loaded_stub_frequency(double length, double dk, double zs, double end_capacitance,
@@ -140,7 +135,6 @@ LSTUB_API int32_t lstub_stub_skirt(double zs, double z0, double f_over_f1, doubl
 /* Longest stub by the rule of thumb 0.3 inch Gb/s: 0.0254 * 0.3e9/bit_rate, in m.
 ** Source: E. Bogatin, rule of thumb 18, EDN Asia, 19 Jan 2015. For comparison only. */
 LSTUB_API int32_t lstub_rule_of_thumb_length(double bit_rate, double *length, lstub_error *err);
-
 /* Coaxial line of a barrel in an antipad: capacitance (F/m), inductance (H/m), impedance (ohm).
 ** C' = 2 pi eps0 Dk/ln(b/a), L' = (mu0/2 pi) ln(b/a). Textbook. Any output may be null. */
 LSTUB_API int32_t lstub_coax(double inner_diameter, double outer_diameter, double dk,
@@ -169,7 +163,6 @@ LSTUB_API int32_t lstub_handbook_capacitance(double thickness, double pad, doubl
 LSTUB_API int32_t lstub_handbook_inductance(double length, double diameter, double *inductance, lstub_error *err);
 
 /* ---- material ----------------------------------------------------------------------------------- */
-
 typedef struct lstub_dielectric {
     size_t size;
     double dk;              /* through-plane (data sheet) Dk at f_ref               1 to 1000          */
@@ -180,43 +173,35 @@ typedef struct lstub_dielectric {
 
 #define LSTUB_ROUGHNESS_HAMMERSTAD 0  /* 1 + (2/pi) atan(1.4 (rms/skin depth)^2) times the loss, at most 2  */
 #define LSTUB_ROUGHNESS_SPHERES    1  /* fourteen spheres stacked on a smooth surface, at most 8.3 times     */
-
 typedef struct lstub_conductor {
     size_t  size;
     double  conductivity;   /* S/m; 0: 5.8e7                                        1e5 to 1e8         */
     double  roughness;      /* rms height, m; 0: smooth                             0 to 20e-6         */
-    int32_t roughness_law;  /* LSTUB_ROUGHNESS_...                                                     */
-    int32_t reserved;
+    int32_t roughness_law, reserved; /* LSTUB_ROUGHNESS_...                                                     */
 } lstub_conductor;
 
-/*
-** Complex relative permittivity over frequency, causal: wideband model of Djordjevic, Biljic,
+/* Complex relative permittivity over frequency, causal: wideband model of Djordjevic, Biljic,
 ** Likar-Smiljanic, Sarkar, IEEE T-EMC 43(4), 2001, through (dk, loss_tangent) at f_ref, between 1 kHz and
 ** 1 THz; the in-plane value is the through-plane one times in_plane_ratio.
 ** In   freq[n] Hz, 1e3 to 1e12.   Out  through_plane[2 n], in_plane[2 n] (re, im; im <= 0); each may be null.
-** Ret  LSTUB_W_RANGE where a large loss tangent drives the real part below 1.
-*/
+** Ret  LSTUB_W_RANGE where a large loss tangent drives the real part below 1. */
 LSTUB_API int32_t lstub_dielectric_permittivity(const lstub_dielectric *dielectric, const double *freq, size_t n,
                                                 double *through_plane, double *in_plane, lstub_error *err);
 
-/* ---- traces: lines from their cross-section [section: traces] ------------------------------------- */
-
+/* ---- traces: lines from their cross-section ------------------------------------------------------- */
 /* Skin depth sqrt(1/(pi f mu0 conductivity)), m. Textbook. conductivity 1e5 to 1e8 S/m, f 1e3 to 1e12 Hz. */
 LSTUB_API int32_t lstub_skin_depth(double conductivity, double f, double *depth, lstub_error *err);
-/*
-** Impedance of the surface of thick copper, ohm per square: (1 + j)/(conductivity depth) K. K is complex and causal:
+/* Impedance of the surface of thick copper, ohm per square: (1 + j)/(conductivity depth) K. K is complex and causal:
 ** its effect on the resistance is the published one of the law, the reactance follows from it (docs/theory.md).
 ** In   freq[n] Hz, 1e3 to 1e12.   Out  z[2 n], 0 < re <= im.
 ** HAMMERSTAD  Hammerstad, Jensen, MTT-S 1980.
 ** SPHERES     Huray et al., DesignCon 2010, for the stack of Simonovich, 2015: 14 spheres of radius 0.06 Rz on a square
-**             of six radii. Rz = 2 sqrt(3) rms, as of a surface of triangles: with a measured Rz, roughness = Rz/3.4641.
-*/
+**             of six radii. Rz = 2 sqrt(3) rms, as of a surface of triangles: with a measured Rz, roughness = Rz/3.4641. */
 LSTUB_API int32_t lstub_conductor_surface_impedance(const lstub_conductor *conductor, const double *freq, size_t n,
                                                     double *z, lstub_error *err);
 
 #define LSTUB_TRACE_MICROSTRIP 0   /* one plane, below                                                 */
 #define LSTUB_TRACE_STRIPLINE  1   /* a plane below and a plane above                                  */
-
 typedef struct lstub_trace {       /* "below" is towards the plane of a microstrip: mirrored on a board's bottom */
     size_t  size;
     int32_t kind;                  /* LSTUB_TRACE_...                                                  */
@@ -232,8 +217,7 @@ typedef struct lstub_trace {       /* "below" is towards the plane of a microstr
     const lstub_conductor  *conductor;         /* of trace and planes; null: smooth, 5.8e7 S/m         */
 } lstub_trace;
 
-/*
-** Characteristic impedance and propagation constant of a trace, lossy and dispersive: Z = sqrt(Z'/Y') ohm and
+/* Characteristic impedance and propagation constant of a trace, lossy and dispersive: Z = sqrt(Z'/Y') ohm and
 ** gamma = sqrt(Z' Y') per metre, with Z' = jw L' + strip and planes, Y' = jw C'.
 ** Microstrip  L', C': Hammerstad, Jensen 1980, with their thickness correction: within 0.3 percent of boundary elements;
 **             dispersion: Kirschning, Jansen 1982 and 1983, stated within 0.6 percent, for w/h 0.1 to 100, Dk up to 20, h below a
@@ -248,12 +232,11 @@ typedef struct lstub_trace {       /* "below" is towards the plane of a microstr
 ** In   freq[n] Hz, 1e3 to 1e12.   Out  z[2 n], gamma[2 n] (re, im; re > 0, im of gamma > 0); each may be null.
 ** Ret  LSTUB_W_RANGE outside the ranges above, where the copper is thicker than wide or than a height, for a stripline above
 **      its first waveguide mode, c/(sqrt(Dk)(2 w + pi b/2)), where one Dk is more than twice the other, and where a large loss
-**      tangent drives a Dk below 1.
-*/
+**      tangent drives a Dk below 1. */
 LSTUB_API int32_t lstub_trace_line(const lstub_trace *trace, const double *freq, size_t n, double *z, double *gamma,
                                    lstub_error *err);
 
-/* ---- networks: S-parameters [section: networks] ---------------------------------------------------
+/* ---- networks: S-parameters ---------------------------------------------------------------------
 **
 ** Sums on the caller's arrays. A network of p ports (1 to LSTUB_PORTS_MAX) at n frequencies is double[2 n p p]: for each
 ** frequency p rows of p complex numbers, row: port the wave comes out of, column: port driven. Reference impedances in
@@ -289,7 +272,6 @@ LSTUB_API int32_t lstub_network_deembed(const double *measured, const double *le
                                         double *out, int32_t *status, lstub_error *err);
 /* A stub as a 2-port s[2 n 4]: zin[2 n] across a line of z_ref; infinite: nothing there. */
 LSTUB_API int32_t lstub_network_shunt(const double *zin, size_t n, double z_ref, double *s, int32_t *status, lstub_error *err);
-
 /* Mixed modes of `pair_count` pairs of ports, pairs[2 i] positive and pairs[2 i + 1] negative, and back. Order of modes:
 ** the pairs' differential ones, their common ones, then the ports of no pair in rising order. Vd = Vp - Vn,
 ** Id = (Ip - In)/2, Vc = (Vp + Vn)/2, Ic = Ip + In. z[p]: single-ended references, also unequal ones; those of the modes
@@ -304,8 +286,7 @@ LSTUB_API int32_t lstub_network_passivity(const double *s, size_t n, int32_t p, 
 LSTUB_API int32_t lstub_network_reciprocity(const double *s, size_t n, int32_t p, double *difference, int32_t *status,
                                             lstub_error *err);
 
-/*
-** Time domain: freq[n] (n >= 4, 0 to 1e12 Hz, rising) to f_max, the last. Evenly spaced ones keep their step, f_max over a
+/* Time domain: freq[n] (n >= 4, 0 to 1e12 Hz, rising) to f_max, the last. Evenly spaced ones keep their step, f_max over a
 ** whole number; others get 4 n steps. Points that are no multiples of it are interpolated, by cubics about the mean delay.
 ** Missing down to 0 (first > f_max/20: LSTUB_W_RANGE; > f_max/2: refused): real part even, imaginary part odd in f about
 ** the mean delay, through the first point and the first at twice its frequency; real at 0. Whatever lasts longer than
@@ -314,8 +295,7 @@ LSTUB_API int32_t lstub_network_reciprocity(const double *s, size_t n, int32_t p
 ** early[p p]: share of the energy of every impulse response that comes more than `resolution` before t0 (s, >= 0: 0, or the
 ** delay that nothing can undercut). The band is weighted by a Kaiser window (beta 10), which blurs by resolution[1] =
 ** 1.67/f_max: below 1e-7 (points interpolated: 1e-3) nothing can be said against the data, but an advance shorter than
-** that, or beyond the band, does not show. What wraps round counts as early, and so does noise.
-*/
+** that, or beyond the band, does not show. What wraps round counts as early, and so does noise. */
 LSTUB_API int32_t lstub_network_causality(const double *freq, const double *s, size_t n, int32_t p, double t0, double *early,
                                           double *resolution, lstub_error *err);
 /* Response at port `to` to a unit step into port `from` at times t[m] (s; 0: the middle of the edge), out[m]. The edge is an
@@ -351,8 +331,7 @@ typedef struct lstub_loss_deviation {
 LSTUB_API int32_t lstub_insertion_loss_deviation(const double *freq, const double *loss, size_t n, const lstub_loss_fit *fit,
                                                  double *deviation, lstub_loss_deviation *out, lstub_error *err);
 
-/* ---- Touchstone [section: touchstone] -------------------------------------------------------------- */
-
+/* ---- Touchstone ----------------------------------------------------------------------------------- */
 #define LSTUB_NETWORK_G 5          /* of files only, two ports: (I1, V2) = G (V1, I2)                  */
 #define LSTUB_NETWORK_H 6          /* of files only, two ports: (V1, I2) = H (I1, V2)                  */
 #define LSTUB_FORMAT_RI 0          /* real and imaginary part                                          */
@@ -370,7 +349,6 @@ LSTUB_API int32_t lstub_insertion_loss_deviation(const double *freq, const doubl
 #define LSTUB_ROW_SINGLE       0
 #define LSTUB_ROW_DIFFERENTIAL 1
 #define LSTUB_ROW_COMMON       2
-
 typedef struct lstub_touchstone_row {  /* what a row, and the column of its number, of the matrix is   */
     int32_t kind;                  /* LSTUB_ROW_...                                                    */
     int32_t port, partner;         /* from 0; differential: port is the positive one; single: partner -1 */
@@ -406,13 +384,10 @@ typedef struct lstub_sink {        /* for bytes: 0, or else writing ends        
 } lstub_sink;
 
 typedef struct lstub_touchstone lstub_touchstone;
-
-/*
-** Reads a file of Touchstone 1.0, 1.1, 2.0 or 2.1 as a stream: only the numbers and the head's comments are kept, correctly
+/* Reads a file of Touchstone 1.0, 1.1, 2.0 or 2.1 as a stream: only the numbers and the head's comments are kept, correctly
 ** rounded. Version 1 does not say how many ports it has: ports > 0 does, else a path that ends in .sNp, else the lines:
 ** a point begins a line and has 1 + 2 p^2 numbers, all other lines hold whole pairs. Noise data are counted only. What the
-** standard forbids is refused: LSTUB_E_FORMAT, "line 12, column 7: ...", and so is a second option line that differs.
-*/
+** standard forbids is refused: LSTUB_E_FORMAT, "line 12, column 7: ...", and so is a second option line that differs. */
 LSTUB_API int32_t lstub_touchstone_load(const char *path, int32_t ports, const lstub_allocator *allocator,
                                         lstub_touchstone **out, lstub_error *err);
 LSTUB_API int32_t lstub_touchstone_parse(const char *text, size_t bytes, int32_t ports, const lstub_allocator *allocator,
@@ -422,26 +397,22 @@ LSTUB_API int32_t lstub_touchstone_read(const lstub_source *source, int32_t port
 LSTUB_API void    lstub_touchstone_destroy(lstub_touchstone *file);              /* null is allowed     */
 /* Its pointers live with the handle. */
 LSTUB_API int32_t lstub_touchstone_get(const lstub_touchstone *file, lstub_touchstone_data *out, lstub_error *err);
-
 /* Writes version 1.1 or 2.0. LOWER and UPPER want symmetry to 1e-12 of the matrix's largest entry. A file appears whole
 ** or not at all: LSTUB_E_WRITE leaves what was there. Index of an error: the point. */
 LSTUB_API int32_t lstub_touchstone_write(const lstub_touchstone_data *data, const lstub_sink *sink, lstub_error *err);
 LSTUB_API int32_t lstub_touchstone_save(const lstub_touchstone_data *data, const char *path, lstub_error *err);
-
 /* Ports in another order, or some of them: dst[k][i][j] = src[k][map[i]][map[j]], k < n, i, j < count, no port twice.
 ** dst may be src. */
 LSTUB_API int32_t lstub_port_map(const double *src, size_t n, int32_t ports, const int32_t *map, int32_t count,
                                  double *dst, lstub_error *err);
 
-/* ---- measurements [section: measurements] ---------------------------------------------------------- */
-
+/* ---- measurements --------------------------------------------------------------------------------- */
 #define LSTUB_QUALITY_GOOD     0   /* or a sum of:                                                     */
 #define LSTUB_QUALITY_SHALLOW  1   /* less than 6 dB below the trend                                   */
 #define LSTUB_QUALITY_EDGE     2   /* the band ends before a flank is back half its depth              */
 #define LSTUB_QUALITY_RIPPLE   4   /* not much more than the ripple and noise of the band: score < 8    */
 #define LSTUB_QUALITY_WIDE     8   /* f_sigma > 0.05 f, or wider than 0.6 f: several stubs, or none    */
 #define LSTUB_QUALITY_FLOOR   16   /* noise or the window hides the floor: depth is a bound, q NaN     */
-
 typedef struct lstub_search {      /* for notches. 0: the default                                      */
     size_t size;
     double window;                 /* Hz the power is averaged over; 0: the median distance of minima of
@@ -454,8 +425,7 @@ typedef struct lstub_search {      /* for notches. 0: the default               
 
 typedef struct lstub_measured_notch {
     size_t  size;
-    int32_t quality;               /* LSTUB_QUALITY_...                                                */
-    int32_t reserved;
+    int32_t quality, reserved;     /* LSTUB_QUALITY_...                                                */
     double  f, f_sigma;            /* Hz, of the stub alone, trend and window taken out; 1 sigma from noise,
                                       ripple, curvature, window and trend                              */
     double  depth_db;              /* averaged |S| over the trend where that is least, dB, negative    */
@@ -468,15 +438,13 @@ typedef struct lstub_measured_notch {
     double  window;                /* Hz, as used                                                      */
 } lstub_measured_notch;
 
-/*
-** Stub notches in a measured S21 or Sdd21, in rising order. The shape of an open stub, S21 = 2/(2 + z y), is fitted to what
+/* Stub notches in a measured S21 or Sdd21, in rising order. The shape of an open stub, S21 = 2/(2 + z y), is fitted to what
 ** the channel's loss a0 + a1 sqrt f + a2 f + a4 f^2 (dB, fitted to all but the notches) leaves. A notch has nine samples at
 ** least and rises again within the band, with the trend and without it. Ripple, roll-off, a noise floor and notches
 ** outside the band are none: *count = 0, LSTUB_OK. How and how well: docs/theory.md.
 ** In   freq[n] Hz, rising, any steps, n >= 16; s: re, im of the first element, the next s_stride bytes on (16: side by
 **      side; 16 p p: element (i, j) of an (n, p, p) array from its address). search null: defaults.
-** Out  notches[capacity], more: LSTUB_W_CAPACITY, the lowest are given; averaged_db[n], trend_db[n] or null, NaN off the band.
-*/
+** Out  notches[capacity], more: LSTUB_W_CAPACITY, the lowest are given; averaged_db[n], trend_db[n] or null, NaN off the band. */
 LSTUB_API int32_t lstub_find_notches(const double *freq, size_t n, const double *s, size_t s_stride, const lstub_search *search,
                                      lstub_measured_notch *notches, size_t capacity, size_t stride, size_t *count,
                                      double *averaged_db, double *trend_db, lstub_error *err);
@@ -500,17 +468,14 @@ typedef struct lstub_fit {
 
 /* First notch of a coupon in Hz; a status < 0 ends the fit and is returned. */
 typedef int32_t lstub_predict(void *user, double ratio, double offset, size_t coupon, double *f);
-/*
-** In-plane Dk ratio (0.5 to 2), with_offset != 0: and a common offset of length (to 1e-2 m), by least squares over
+/* In-plane Dk ratio (0.5 to 2), with_offset != 0: and a common offset of length (to 1e-2 m), by least squares over
 ** coupons: f[count], f_sigma[count] > 0 Hz. residuals[count] or null: measured less predicted, Hz.
-** Ret  LSTUB_E_NONE: no minimum within the limits; LSTUB_E_GEOMETRY: these coupons do not tell the two apart.
-*/
+** Ret  LSTUB_E_NONE: no minimum within the limits; LSTUB_E_GEOMETRY: these coupons do not tell the two apart. */
 LSTUB_API int32_t lstub_fit_in_plane_dk(lstub_predict *predict, void *user, const double *f, const double *f_sigma,
                                         size_t count, int32_t with_offset, lstub_fit *out, double *residuals,
                                         lstub_error *err);
 
 /* ---- stackup ------------------------------------------------------------------------------------ */
-
 #define LSTUB_LAYER_DIELECTRIC 1
 #define LSTUB_LAYER_SIGNAL     2   /* copper with traces: no plane around a barrel                     */
 #define LSTUB_LAYER_PLANE      3   /* copper plane                                                     */
@@ -518,7 +483,6 @@ LSTUB_API int32_t lstub_fit_in_plane_dk(lstub_predict *predict, void *user, cons
 
 #define LSTUB_NAME_MAX 127         /* bytes of a layer's name                                          */
 #define LSTUB_LAYERS_MAX 256
-
 typedef struct lstub_layer {
     size_t      size;
     const char *name;       /* 1 to LSTUB_NAME_MAX bytes, no other layer has it                        */
@@ -533,15 +497,11 @@ typedef struct lstub_layer {
 } lstub_layer;
 
 typedef struct lstub_stackup lstub_stackup;
-
-/*
-** A stackup from its layers, top first. At least one copper layer; copper layers are kept apart by
-** dielectrics; dielectrics may stand outside the outer copper (solder mask). Everything is checked.
-*/
+/* A stackup from its layers, top first. At least one copper layer; copper layers are kept apart by
+** dielectrics; dielectrics may stand outside the outer copper (solder mask). Everything is checked. */
 LSTUB_API int32_t lstub_stackup_create(const lstub_layer *layers, size_t count, size_t stride,
                                        const lstub_allocator *allocator, lstub_stackup **out, lstub_error *err);
 LSTUB_API void    lstub_stackup_destroy(lstub_stackup *stackup);                 /* null is allowed     */
-
 LSTUB_API int32_t lstub_stackup_count(const lstub_stackup *stackup);             /* layers; 0 for null  */
 LSTUB_API int32_t lstub_stackup_copper_count(const lstub_stackup *stackup);
 /* Layer `index` as stored; its pointers live as long as the stackup. */
@@ -570,7 +530,6 @@ LSTUB_API int32_t lstub_stackup_interval(const lstub_stackup *stackup, double to
                                          lstub_interval *out, lstub_error *err);
 
 /* ---- via ---------------------------------------------------------------------------------------- */
-
 #define LSTUB_SIDE_TOP    1
 #define LSTUB_SIDE_BOTTOM 2
 #define LSTUB_SIDE_BOTH   3
@@ -588,16 +547,13 @@ LSTUB_API int32_t lstub_stackup_interval(const lstub_stackup *stackup, double to
 
 #define LSTUB_PADS_REMOVED 0       /* non-functional pads: those on inner layers that do not connect   */
 #define LSTUB_PADS_KEPT    1
-
 typedef struct lstub_on_layer {    /* a value for one layer                                            */
-    int32_t layer;                 /* index in the stackup                                             */
-    int32_t reserved;
+    int32_t layer, reserved;       /* index in the stackup                                             */
     double  value;                 /* m                                                                */
 } lstub_on_layer;
 
 typedef struct lstub_backdrill {   /* a back-drill that has been made or is to be made                 */
-    int32_t side;                  /* LSTUB_SIDE_TOP or LSTUB_SIDE_BOTTOM                              */
-    int32_t reserved;
+    int32_t side, reserved;        /* LSTUB_SIDE_TOP or LSTUB_SIDE_BOTTOM                              */
     double  depth;                 /* m, from the outer face of that side's outer copper to the tip    */
     double  diameter;              /* m, of the bit, at least the drill                                */
 } lstub_backdrill;
@@ -626,8 +582,7 @@ typedef struct lstub_via {
     int32_t pair_kind;             /* LSTUB_PAIR_...                                                   */
     double  pair_pitch;            /* m, axis to axis, > drill                                         */
     const lstub_backdrill *backdrills; size_t backdrill_count;  /* at most one a side                  */
-    int32_t pin_side;              /* side a component's pin enters from; 0: no pin                    */
-    int32_t reserved;
+    int32_t pin_side, reserved;    /* side a component's pin enters from; 0: no pin                    */
     double  pin_length;            /* press-fit: least barrel to keep from that side's surface, m; 0: the pin
                                       is soldered and fills the hole, which is then never drilled      */
     const double *return_xy;       /* m, [2 return_count]: x, y of the return vias about the axis; null:
@@ -649,8 +604,7 @@ typedef struct lstub_stub {        /* a piece of barrel beyond the outermost lay
     size_t  size;
     int32_t side;                  /* the side it lies on: LSTUB_SIDE_TOP or LSTUB_SIDE_BOTTOM         */
     int32_t exit_layer;            /* connecting layer it hangs on                                     */
-    int32_t end_layer;             /* outer layer its barrel ends on, -1 where it was drilled          */
-    int32_t reserved;
+    int32_t end_layer, reserved;   /* outer layer its barrel ends on, -1 where it was drilled          */
     double  top, bottom;           /* depths of its two ends, m: face of the exit layer, end of barrel */
     double  length;                /* nominal, m                                                       */
     double  length_min, length_max;          /* worst case over the stackup's tolerances; of a drilled end
@@ -661,16 +615,13 @@ typedef struct lstub_stub {        /* a piece of barrel beyond the outermost lay
 
 /* Checks a via against a stackup: LSTUB_OK, or what is wrong with it, by member, value and layer. */
 LSTUB_API int32_t lstub_via_check(const lstub_stackup *stackup, const lstub_via *via, lstub_error *err);
-/*
-** The stub pieces, top one first: none, one or two. A bottom stub runs from the lower face of the lowest
+/* The stub pieces, top one first: none, one or two. A bottom stub runs from the lower face of the lowest
 ** connecting copper to the outer face of the copper the barrel ends on, or to the tip of the back-drill; a
-** top stub likewise. Out  stubs[2], *count.
-*/
+** top stub likewise. Out  stubs[2], *count. */
 LSTUB_API int32_t lstub_via_stubs(const lstub_stackup *stackup, const lstub_via *via, lstub_stub *stubs,
                                   size_t stride, int32_t *count, lstub_error *err);
 
 /* ---- model: the electrical behaviour of one geometry, compiled once ------------------------------ */
-
 #define LSTUB_FIDELITY_DEFAULT 0   /* the most accurate one of this version: CAVITY                    */
 #define LSTUB_FIDELITY_BULK    1   /* quarter wave in the laminate's through-plane Dk, coaxial impedance */
 #define LSTUB_FIDELITY_LOADED  2   /* uniform line: L' from the returns, C' from each cavity's via-plate
@@ -684,8 +635,7 @@ LSTUB_API int32_t lstub_via_stubs(const lstub_stackup *stackup, const lstub_via 
 
 typedef struct lstub_model_options {
     size_t  size;
-    int32_t fidelity;              /* LSTUB_FIDELITY_...                                               */
-    int32_t reserved;
+    int32_t fidelity, reserved;    /* LSTUB_FIDELITY_...                                               */
     double  z_ref;                 /* ohm, line that the stubs load; of a pair: of one of the two; 0: 50 */
     int32_t annuli;                /* CAVITY: annuli an opening is cut into at least; 0: 4    2 to 12  */
     int32_t reserved2;
@@ -693,21 +643,18 @@ typedef struct lstub_model_options {
 } lstub_model_options;
 
 typedef struct lstub_model lstub_model;
-
 /* Compiles the geometry. options null: defaults. A via without any stub compiles, and loads nothing. */
 LSTUB_API int32_t lstub_model_create(const lstub_stackup *stackup, const lstub_via *via,
                                      const lstub_model_options *options, const lstub_allocator *allocator,
                                      lstub_model **out, lstub_error *err);
 LSTUB_API void    lstub_model_destroy(lstub_model *model);                       /* null is allowed     */
-
 LSTUB_API int32_t lstub_model_stub_count(const lstub_model *model);              /* 0, 1 or 2           */
 LSTUB_API int32_t lstub_model_stub(const lstub_model *model, int32_t stub, lstub_stub *out, lstub_error *err);
 
 typedef struct lstub_stub_line {   /* a stub as a line, at 1 GHz. LADDER and CAVITY, which are no lines: as the
                                       uniform line of the same first notch that holds the same charge  */
     size_t  size;
-    int32_t fidelity;              /* the one that made these numbers                                  */
-    int32_t reserved;
+    int32_t fidelity, reserved;    /* the one that made these numbers                                  */
     double  dk_effective;          /* (c/(4 L f1))^2 of the first notch: end effects included          */
     double  dk_line;               /* c^2 L' C' of the line without its end                            */
     double  impedance;             /* sqrt(L'/C'), ohm                                                 */
@@ -719,18 +666,15 @@ typedef struct lstub_stub_line {   /* a stub as a line, at 1 GHz. LADDER and CAV
     double  f_range;               /* Hz, top of the stated range. BULK, LOADED: an antipad radius or a plate
                                       spacing is a tenth of the wavelength in the laminate; else 110e9 */
 } lstub_stub_line;
-
 LSTUB_API int32_t lstub_model_line(const lstub_model *model, int32_t stub, lstub_stub_line *out, lstub_error *err);
 
-/*
-** Input impedance of a stub where it hangs on the signal path, ohm.
+/* Input impedance of a stub where it hangs on the signal path, ohm.
 ** In   freq[n] Hz, 1e6 to 1e12, LADDER and CAVITY to 200e9; stub: number or LSTUB_ALL_STUBS.
 ** Out  zin[2 n]; status[n] or null.
 ** Ret  LSTUB_W_RANGE above f_range of the line: an antipad radius or a plate spacing is more than a tenth
 **      of the wavelength in the laminate.
 ** Source  BULK, LOADED: Zin = Zs coth(gamma L) with the end load, Pozar; all else: docs/theory.md. A stub that hangs on a
-**         layer without plane is fed through a thin plane there of the nearest plane's antipad.
-*/
+**         layer without plane is fed through a thin plane there of the nearest plane's antipad. */
 LSTUB_API int32_t lstub_model_zin(const lstub_model *model, int32_t stub, const double *freq, size_t n,
                                   double *zin, int32_t *status, lstub_error *err);
 /* Transmission past the stub on a line of z_ref matched at both ends: 2 Zin/(2 Zin + z_ref). s21[2 n]. */
@@ -742,8 +686,7 @@ LSTUB_API int32_t lstub_model_added_loss(const lstub_model *model, int32_t stub,
 
 typedef struct lstub_notch {
     size_t  size;
-    int32_t stub;                  /* number of the stub that makes it                                 */
-    int32_t reserved;
+    int32_t stub, reserved;        /* number of the stub that makes it                                 */
     double  f;                     /* Hz, minimum of |S21|: the notch as it is measured                */
     double  f_series;              /* Hz, zero of Im Zin next to it; NaN where there is none           */
     double  depth_db;              /* 20 log10 |S21| at f, negative; -inf never: -300 at least         */
@@ -753,19 +696,15 @@ typedef struct lstub_notch {
                                       of other annuli; others: stated_error of the line                */
 } lstub_notch;
 
-/*
-** All notches of one stub, or of all, from 1e6 Hz up to f_max (to 1e12), in rising order: minima of |S21| found by
+/* All notches of one stub, or of all, from 1e6 Hz up to f_max (to 1e12), in rising order: minima of |S21| found by
 ** bracketing, not multiples of the first. LADDER and CAVITY find none above 200e9. More than `capacity`: LSTUB_W_CAPACITY, the
-** lowest are given, *count says how many there are. None: *count = 0, LSTUB_OK.
-*/
+** lowest are given, *count says how many there are. None: *count = 0, LSTUB_OK. */
 LSTUB_API int32_t lstub_model_notches(const lstub_model *model, int32_t stub, double f_max, lstub_notch *notches,
                                       size_t capacity, size_t stride, size_t *count, lstub_error *err);
 
-/*
-** First notch of many vias on one stackup. vias: count structs, stride bytes apart. Out, each count long,
+/* First notch of many vias on one stackup. vias: count structs, stride bytes apart. Out, each count long,
 ** each may be null: f1 (Hz, lowest over the via's stubs; NaN where it has none below 1e12), dk_effective of
-** that stub, length of that stub (m), status. The answer for an item does not depend on its neighbours.
-*/
+** that stub, length of that stub (m), status. The answer for an item does not depend on its neighbours. */
 LSTUB_API int32_t lstub_first_notch_batch(const lstub_stackup *stackup, const lstub_via *vias, size_t count,
                                           size_t stride, const lstub_model_options *options, double *f1,
                                           double *dk_effective, double *length, int32_t *status, lstub_error *err);
@@ -773,10 +712,8 @@ LSTUB_API int32_t lstub_first_notch_batch(const lstub_stackup *stackup, const ls
 /* The same stackup with that in-plane ratio (0.5 to 2) in all its dielectrics, resin between copper included. */
 LSTUB_API int32_t lstub_stackup_with_in_plane_ratio(const lstub_stackup *stackup, double ratio,
                                                     const lstub_allocator *allocator, lstub_stackup **out, lstub_error *err);
-/*
-** lstub_fit_in_plane_dk with the model: vias are the coupons, f[count] their measured first notches. An offset makes
-** a stub of length L a quarter wave of L + offset. fitted: the stackup with the ratio found, or null.
-*/
+/* lstub_fit_in_plane_dk with the model: vias are the coupons, f[count] their measured first notches. An offset makes
+** a stub of length L a quarter wave of L + offset. fitted: the stackup with the ratio found, or null. */
 LSTUB_API int32_t lstub_fit_coupons(const lstub_stackup *stackup, const lstub_via *vias, size_t count, size_t stride,
                                     const double *f, const double *f_sigma, int32_t with_offset,
                                     const lstub_model_options *options, const lstub_allocator *allocator,
@@ -812,13 +749,11 @@ typedef struct lstub_port {
 #define LSTUB_MODE_SINGLE 0        /* of one port driven                                               */
 #define LSTUB_MODE_ODD    1        /* of a pair: both barrels with opposite signs, seen on one of them (Sdd)  */
 #define LSTUB_MODE_EVEN   2        /* ... with equal signs (Scc)                                       */
-
 typedef struct lstub_transition_options {
     size_t  size;
     int32_t stubs;                 /* LSTUB_STUBS_...                                                  */
     int32_t annuli;                /* as in lstub_model_options                                        */
-    int32_t metal;                 /* LSTUB_METAL_...                                                  */
-    int32_t reserved;
+    int32_t metal, reserved;       /* LSTUB_METAL_...                                                  */
 } lstub_transition_options;
 
 /* What a transition rests on, or not: a sum. Any but RADIATES makes the status LSTUB_W_RANGE. */
@@ -829,16 +764,12 @@ typedef struct lstub_transition_options {
 #define LSTUB_REMARK_SLOT        8 /* a slot with pitch/(antipad + 0.44 h) below 0.8, or pads and drills other than 0.45 and
                                       0.25 mm in it: the fit is used beyond its data                   */
 #define LSTUB_REMARK_UNEQUAL    16 /* two barrels of their own: without the flux through the openings  */
-
 typedef struct lstub_transition lstub_transition;
-
-/*
-** Ports: those given, in their order; of a pair then the partner's, which mirror them. At least one; no two on one layer; a
+/* Ports: those given, in their order; of a pair then the partner's, which mirror them. At least one; no two on one layer; a
 ** layer that connects without a port carries no trace. Traces leave anywhere but in each other's way: all stand out from
 ** the axis alone.
 ** Ret  LSTUB_W_RANGE with a handle: see the remarks.
-** Valid to 110e9 Hz. On 21 transitions of three-dimensional full-wave runs (tests/reference, docs/theory.md).
-*/
+** Valid to 110e9 Hz. On 21 transitions of three-dimensional full-wave runs (tests/reference, docs/theory.md). */
 LSTUB_API int32_t lstub_transition_create(const lstub_stackup *stackup, const lstub_via *via, const lstub_port *ports,
                                           size_t count, size_t stride, const lstub_transition_options *options,
                                           const lstub_allocator *allocator, lstub_transition **out, lstub_error *err);
@@ -850,25 +781,19 @@ LSTUB_API const char *lstub_remark_text(int32_t remark);                        
 /* S-parameters, s[2 n p p] as in networks, at freq[n] Hz, 1e6 to 200e9; LSTUB_W_RANGE above 110e9. status[n] or null. */
 LSTUB_API int32_t lstub_transition_s(const lstub_transition *transition, const double *freq, size_t n, double *s,
                                      int32_t *status, lstub_error *err);
-/*
-** Minima of |S_to,from| up to f_max as lstub_model_notches gives them: f, depth_db against a line without loss, q, error
-** NaN, stub -1; f_series: where the phase of S turns back fastest, NaN where it does not. mode: LSTUB_MODE_...; of a mode, `to` and `from`
-** are ports of the first barrel.
-*/
+/* Minima of |S_to,from| up to f_max that rise by 1 dB on both sides, as lstub_model_notches gives them: stub -1, f_series
+** and error NaN. mode: LSTUB_MODE_...; of a mode, `to` and `from` are ports of the first barrel. */
 LSTUB_API int32_t lstub_transition_notches(const lstub_transition *transition, int32_t mode, int32_t to, int32_t from,
                                            double f_max, lstub_notch *notches, size_t capacity, size_t stride,
                                            size_t *count, lstub_error *err);
 
 
 /* ---- criteria: what a signal can bear ------------------------------------------------------------ */
-
 typedef struct lstub_signal {
     size_t  size;
-    int32_t levels;                /* 2: NRZ, 4: PAM4 ...; 0: 2                         2 to 64        */
-    int32_t reserved;
+    int32_t levels, reserved;      /* 2: NRZ, 4: PAM4 ...; 0: 2                         2 to 64        */
     double  symbol_rate;           /* Bd                                                1e6 to 1e12    */
 } lstub_signal;
-
 LSTUB_API int32_t lstub_signal_nyquist(const lstub_signal *signal, double *nyquist, lstub_error *err);   /* Hz  */
 LSTUB_API int32_t lstub_signal_bit_rate(const lstub_signal *signal, double *bit_rate, lstub_error *err); /* b/s */
 
@@ -882,7 +807,6 @@ typedef struct lstub_criteria {    /* each asked for when > 0; at least one     
 #define LSTUB_LIMIT_NONE  0        /* no stub, or nothing below the band: nothing limits               */
 #define LSTUB_LIMIT_NOTCH 1
 #define LSTUB_LIMIT_LOSS  2
-
 typedef struct lstub_margin {
     size_t  size;
     int32_t pass;                  /* 1: every criterion asked for is met                              */
@@ -898,26 +822,22 @@ typedef struct lstub_margin {
     double  rule_length;           /* 0.3 inch Gb/s over the bit rate, m: for comparison only          */
     double  rule_margin;           /* rule_length - stub_length, m                                     */
 } lstub_margin;
-
 LSTUB_API int32_t lstub_model_margin(const lstub_model *model, const lstub_signal *signal,
                                      const lstub_criteria *criteria, lstub_margin *out, lstub_error *err);
 
 typedef struct lstub_stub_limit {
     size_t  size;
-    int32_t limited_by;            /* LSTUB_LIMIT_NONE: even the whole barrel passes                   */
-    int32_t reserved;
+    int32_t limited_by, reserved;  /* LSTUB_LIMIT_NONE: even the whole barrel passes                   */
     double  length;                /* longest stub that passes, m; the whole stub if nothing limits; 0 if
                                       none does                                                        */
     double  stub_length;           /* of the via as it is, m                                           */
     double  margin;                /* length - stub_length, m; where nothing limits: 0, a lower bound  */
 } lstub_stub_limit;
 
-/*
-** Longest tolerable stub: the barrel on `side`, drilled back as little as the criteria allow, the other side
+/* Longest tolerable stub: the barrel on `side`, drilled back as little as the criteria allow, the other side
 ** as it is. Found by bracketing on drilled geometries, to 1 nm (LADDER, CAVITY: 0.1 um, for a bit 0.2 mm over the
 ** drill). A via without a stub there: LSTUB_E_NONE.
-** Valid as the model is; the criteria are taken to get no better as the stub grows.
-*/
+** Valid as the model is; the criteria are taken to get no better as the stub grows. */
 LSTUB_API int32_t lstub_longest_stub(const lstub_stackup *stackup, const lstub_via *via, int32_t side,
                                      const lstub_model_options *options, const lstub_signal *signal,
                                      const lstub_criteria *criteria, lstub_stub_limit *out, lstub_error *err);
@@ -940,10 +860,8 @@ LSTUB_API int32_t lstub_margin_batch(const lstub_stackup *stackup, const lstub_v
                                      int32_t *status, lstub_error *err);
 
 /* ---- plan: what to do about it ------------------------------------------------------------------- */
-
 #define LSTUB_TOLERANCE_WORST 0    /* drill and stackup tolerances added                               */
 #define LSTUB_TOLERANCE_RSS   1    /* root of the sum of squares                                       */
-
 typedef struct lstub_capability {  /* of the fabricator. Zero is a value but where said                */
     size_t  size;
     int32_t sides;                 /* LSTUB_SIDE_...; 0: both                                          */
@@ -989,12 +907,10 @@ typedef struct lstub_job {         /* one via of a board. Pointers are read whil
 #define LSTUB_REASON_DRILLED        12   /* that side has been drilled already                         */
 #define LSTUB_REASON_ERROR          13   /* the via is in error                                        */
 #define LSTUB_REASON_ONE_LAYER      14   /* connects on one layer only and holds no pin: no path       */
-
 typedef struct lstub_drill_cut {   /* what is done on one side of a via                                */
     int32_t drilled;               /* 1: a back-drill is planned on this side                          */
     int32_t must_not_cut;          /* layer index                                                      */
-    int32_t group;                 /* row of the drill table                                           */
-    int32_t reserved;
+    int32_t group, reserved;       /* row of the drill table                                           */
     double  depth;                 /* target, from that side's outer copper face, m                    */
     double  depth_least, depth_most;        /* any target between these would do, m                    */
     double  diameter;              /* of the bit, m                                                    */
@@ -1045,32 +961,26 @@ typedef struct lstub_plan_summary {
 } lstub_plan_summary;
 
 typedef struct lstub_plan lstub_plan;
-
-/*
-** Plans a board. Vias in error do not stop it: they come out as REFUSED, and the call returns LSTUB_OK; it
+/* Plans a board. Vias in error do not stop it: they come out as REFUSED, and the call returns LSTUB_OK; it
 ** fails only for what concerns all of them. capability must not be null.
 **
 ** A via that meets its criteria is kept. Otherwise the one drill that makes it pass is taken, the shorter cut
 ** first; then both. The tip may lie anywhere between the deepest place that keeps cut_clearance (or
 ** residual_min) clear of the must-not-cut layer and the shallowest that still passes, tolerances used up. Per
 ** side the fewest depths that serve all vias are found by stabbing these intervals from the right, which is
-** optimal; each depth then moves as near to the residuals aimed at as its vias allow.
-*/
+** optimal; each depth then moves as near to the residuals aimed at as its vias allow. */
 LSTUB_API int32_t lstub_plan_create(const lstub_stackup *stackup, const lstub_job *jobs, size_t count,
                                     size_t stride, const lstub_capability *capability,
                                     const lstub_model_options *options, const lstub_allocator *allocator,
                                     lstub_plan **out, lstub_error *err);
 LSTUB_API void    lstub_plan_destroy(lstub_plan *plan);                          /* null is allowed     */
-
 LSTUB_API size_t  lstub_plan_count(const lstub_plan *plan);                      /* jobs                */
 LSTUB_API int32_t lstub_plan_decision(const lstub_plan *plan, size_t index, lstub_decision *out, lstub_error *err);
 LSTUB_API int32_t lstub_plan_group_count(const lstub_plan *plan);                /* rows                */
 LSTUB_API int32_t lstub_plan_group(const lstub_plan *plan, int32_t index, lstub_drill_group *out, lstub_error *err);
 LSTUB_API int32_t lstub_plan_totals(const lstub_plan *plan, lstub_plan_summary *out, lstub_error *err);
-/*
-** One line of plain English that says why: "first notch 12.9 GHz is 0.97 x Nyquist (2 wanted), adds 3.1 dB
-** (0.3 allowed); drill from the bottom 1.7020 mm deep, clear of IN3". Needs a buffer of LSTUB_REASON_MAX bytes at most; ends with a zero byte.
-*/
+/* One line of plain English that says why: "first notch 12.9 GHz is 0.97 x Nyquist (2 wanted), adds 3.1 dB (0.3
+** allowed); drill from the bottom 1.7020 mm deep, clear of IN3". A buffer of LSTUB_REASON_MAX bytes always does. */
 #define LSTUB_REASON_MAX 256
 LSTUB_API int32_t lstub_plan_reason(const lstub_plan *plan, size_t index, char *text, size_t bytes, lstub_error *err);
 /* Plain word for an action or a reason: "keep", "drill bottom"; never null. */

@@ -19,7 +19,7 @@ from setuptools.command.sdist import sdist
 
 HERE = os.path.dirname(os.path.abspath(__file__))
 LIBRARY = os.path.normpath(os.path.join(HERE, "..", "..", "libstub"))
-PARTS = "base num material stackup via model criteria plan ipc2581".split()
+PARTS = "base num material network touchstone measure stackup via model criteria plan ipc2581".split()
 FLAGS = ["-std=c99", "-O2", "-fvisibility=hidden", "-ffp-contract=off"]
 LINK = ["-Wl,--version-script=" + os.path.join(HERE, "src", "exports.map")] if sys.platform == "linux" else []
 

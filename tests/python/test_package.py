@@ -131,12 +131,15 @@ def test_words_cover_the_constants():
 
     for words, prefix in (
         (_frozen.SIDES, "SIDE_"), (_frozen.KIND, "LAYER_"), (_frozen.FIDELITY, "FIDELITY_"), (_frozen.TOLERANCE, "TOLERANCE_"),
-        (_frozen.HOLE, "HOLE_"), (_frozen.SEVERITY, "NOTICE_"),
+        (_frozen.HOLE, "HOLE_"), (_frozen.SEVERITY, "NOTICE_"), (_frozen.ROUGHNESS, "ROUGHNESS_"), (_frozen.NETWORK, "NETWORK_"),
+        (_frozen.FORMAT, "FORMAT_"), (_frozen.UNIT, "UNIT_"), (_frozen.MATRIX, "MATRIX_"), (_frozen.ORDER, "ORDER_"),
+        (_frozen.ROW, "ROW_"), (_frozen.STUBS, "STUBS_"), (_frozen.METAL, "METAL_"), (_frozen.MODE, "MODE_"),
     ):
         codes = {name[len(prefix):].lower(): getattr(_core, name) for name in dir(_core) if name.startswith(prefix)}
-        assert {word: words.code("", word) for word in codes} == codes and all(words.word(code) for code in codes.values())
-    for enum, prefix in ((ls.Action, "ACTION_"), (ls.Reason, "REASON_"), (ls.Limit, "LIMIT_")):
-        assert {prefix + item.name for item in enum} == {name for name in dir(_core) if name.startswith(prefix)}
+        assert {words.word(code).lower(): code for code in codes.values()} == codes
+        assert all(words.code("", words.word(code)) == code for code in codes.values())
+    for enum, prefix in ((ls.Action, "ACTION_"), (ls.Reason, "REASON_"), (ls.Limit, "LIMIT_"), (ls.Quality, "QUALITY_")):
+        assert {prefix + name for name in enum.__members__} == {name for name in dir(_core) if name.startswith(prefix)}
 
 
 STRUCTS = {
@@ -145,6 +148,7 @@ STRUCTS = {
     "group": (ls.DrillGroup, {}), "summary": (ls.PlanSummary, {}), "hole": (ls.Hole, {}), "notice": (ls.Notice, {}),
     "capability": (ls.Capability, {"tolerance_method": "tolerance"}), "job": (ls.Job, {}), "layer": (ls.Layer, {}),
     "conductor": (ls.Conductor, {}), "criteria": (ls.Criteria, {}), "signal": (ls.Signal, {"symbol_rate": "baud"}),
+    "measured": (ls.MeasuredNotch, {}),
 }
 
 
@@ -157,15 +161,22 @@ def test_members_are_in_the_order_of_the_struct(shape):
 
 @pytest.mark.parametrize("shape, struct", [("via", "via"), ("margin", "margin"), ("layer", "layer"), ("capability", "capability"),
                                            ("decision", "decision"), ("limit", "stub_limit"), ("line", "stub_line"),
-                                           ("summary", "plan_summary"), ("group", "drill_group"), ("cut", "drill_cut")])
+                                           ("summary", "plan_summary"), ("group", "drill_group"), ("cut", "drill_cut"),
+                                           ("trace", "trace"), ("port", "port"), ("measured", "measured_notch"), ("fit", "fit"),
+                                           ("deviation", "loss_deviation"), ("loss_fit", "loss_fit"), ("conductor", "conductor")])
 def test_no_member_of_a_struct_is_left_out(shape, struct):
     body = re.search(rf"typedef struct lstub_{struct} \{{(.*?)\}} lstub_{struct};", header("libstub.h"), re.S).group(1)
-    body = re.sub(r"/\*.*?\*/", "", body, flags=re.S)
+    body = re.sub(r"/\*.*?\*/|\[\d+\]", "", body, flags=re.S)
     names = set()
     for declaration in body.split(";"):
         names |= set(re.findall(r"(\w+)\s*(?=,|$)", declaration.strip()))
     counts = {name for name in names if name.endswith("_count") and name not in ("return_count", "stub_count")}
     assert names - counts - {"size", "reserved"} == {name for name, _ in _core.members(shape)}
+
+
+def test_results_with_arrays_have_the_members_of_their_structs():
+    assert [f.name for f in dataclasses.fields(ls.Fit)] == [name for name, _ in _core.members("fit")] + ["residuals", "stackup"]
+    assert ls.LossDeviation._fields == tuple(name for name, _ in _core.members("deviation")) + ("deviation",)
 
 
 def test_batches_have_the_members_of_their_structs():

@@ -50,29 +50,44 @@ from ._errors import (
 from ._formulas import (
     Coax, TwinRod, coax, delay_dk, handbook_capacitance, handbook_inductance, loaded_stub_frequency, notch_floor,
     plate_capacitance, quarter_wave_dk, quarter_wave_frequency, quarter_wave_length, return_inductance,
-    rule_of_thumb_length, stub_skirt, twin_rod,
+    rule_of_thumb_length, skin_depth, stub_skirt, twin_rod,
 )
 from ._frozen import Status
 from ._material import Conductor, Dielectric, Permittivity
+from ._measure import (
+    Estimate, Fit, FoundNotches, MeasuredNotch, Quality, find_notches, fit_coupons, fit_effective_dk, fit_in_plane_dk, fit_length,
+)
 from ._model import ALL_STUBS, Model, Notch, StubLine
+from ._network import (
+    Causality, LossDeviation, MixedMode, cascade, causality, convert, deembed, insertion_loss_deviation, passivity, port_map,
+    reciprocity, renormalise, shunt, step_response, tdr, to_mixed, to_single,
+)
 from ._plan import Action, Capability, Decision, DrillCut, DrillGroup, Job, Plan, PlanSummary, Reason, plan
 from ._stackup import Depth, Interval, Layer, Stackup
-from ._via import BackDrill, Pair, Pin, Ring, Stub, Via, Vias, Wall
+from ._touchstone import Touchstone, TouchstoneRow, touchstone_save, touchstone_write
+from ._trace import Microstrip, Stripline, TraceLine
+from ._transition import CoaxPort, TracePort, Transition
+from ._via import BackDrill, Edges, Pair, Pin, Ring, Stub, Via, Vias, Wall
 from .units import ff, gbd, gbps, ghz, inch, mbd, mhz, mil, mm, nh, ns, pf, ph, ps, um
 
 __version__: str = _core.version
 model_revision: int = _core.model_revision
 
 __all__ = [
-    "ALL_STUBS", "Action", "ArgumentError", "BackDrill", "BatchError", "Board", "Capability", "Coax", "ComplexArray",
-    "Conductor", "Criteria", "Decision", "Depth", "Dielectric", "DrillCut", "DrillGroup", "FirstNotches", "FormatError",
-    "GeometryError", "Hole", "Interval", "Job", "Layer", "LibstubError", "Limit", "Margin", "Margins", "Model",
-    "NoSuchError", "Notch", "Notice", "Pair", "Permittivity", "Pin", "Plan", "PlanSummary", "RangeWarning", "ReadError",
-    "Reason", "Ring", "Rules", "RulesSignal", "Signal", "Stackup", "Status", "Stub", "StubLimit", "StubLimits",
-    "StubLine", "SymbolRateLimit", "TwinRod", "UnsupportedError", "Via", "Vias", "Wall", "WriteError", "coax", "delay_dk", "ff",
-    "first_notch_batch", "gbd", "gbps", "ghz", "handbook_capacitance", "handbook_inductance", "inch",
-    "loaded_stub_frequency", "longest_stub", "longest_stub_batch", "margin_batch", "mbd", "mhz", "mil", "mm",
-    "model_revision", "nh", "notch_floor", "ns", "pf", "ph", "plan", "plate_capacitance", "ps", "quarter_wave_dk",
-    "quarter_wave_frequency", "quarter_wave_length", "return_inductance", "rule_of_thumb_length", "stub_skirt",
-    "twin_rod", "um", "units",
+    "ALL_STUBS", "Action", "ArgumentError", "BackDrill", "BatchError", "Board", "Capability", "Causality", "Coax",
+    "CoaxPort", "ComplexArray", "Conductor", "Criteria", "Decision", "Depth", "Dielectric", "DrillCut", "DrillGroup",
+    "Edges", "Estimate", "FirstNotches", "Fit", "FormatError", "FoundNotches", "GeometryError", "Hole", "Interval",
+    "Job", "Layer", "LibstubError", "Limit", "LossDeviation", "Margin", "Margins", "MeasuredNotch", "Microstrip",
+    "MixedMode", "Model", "NoSuchError", "Notch", "Notice", "Pair", "Permittivity", "Pin", "Plan", "PlanSummary",
+    "Quality", "RangeWarning", "ReadError", "Reason", "Ring", "Rules", "RulesSignal", "Signal", "Stackup", "Status",
+    "Stripline", "Stub", "StubLimit", "StubLimits", "StubLine", "SymbolRateLimit", "Touchstone", "TouchstoneRow",
+    "TraceLine", "TracePort", "Transition", "TwinRod", "UnsupportedError", "Via", "Vias", "Wall", "WriteError",
+    "cascade", "causality", "coax", "convert", "deembed", "delay_dk", "ff", "find_notches", "first_notch_batch",
+    "fit_coupons", "fit_effective_dk", "fit_in_plane_dk", "fit_length", "gbd", "gbps", "ghz", "handbook_capacitance",
+    "handbook_inductance", "inch", "insertion_loss_deviation", "loaded_stub_frequency", "longest_stub",
+    "longest_stub_batch", "margin_batch", "mbd", "mhz", "mil", "mm", "model_revision", "nh", "notch_floor", "ns",
+    "passivity", "pf", "ph", "plan", "plate_capacitance", "port_map", "ps", "quarter_wave_dk",
+    "quarter_wave_frequency", "quarter_wave_length", "reciprocity", "renormalise", "return_inductance",
+    "rule_of_thumb_length", "shunt", "skin_depth", "step_response", "stub_skirt", "tdr", "to_mixed", "to_single",
+    "touchstone_save", "touchstone_write", "twin_rod", "um", "units",
 ]

@@ -9,19 +9,13 @@ from typing import Any, Callable, Literal, NamedTuple, Union
 from . import _core
 from ._criteria import Criteria, Signal
 from ._errors import NoSuchError
-from ._frozen import HOLE, SEVERITY, SIDE, Frozen, Immutable, Status, fill, instance
+from ._frozen import HOLE, SEVERITY, SIDE, Frozen, Immutable, Status, fill, instance, path_bytes
 from ._model import Fidelity, options
 from ._plan import Capability, Plan
 from ._stackup import Stackup, _layer
-from ._via import BackDrill, Pair, Pin, Ring, Via, Vias, Wall
+from ._via import BackDrill, Edges, Pair, Pin, Ring, Via, Vias, Wall
 
 Path = Union[str, "os.PathLike[str]"]
-
-
-def _path(path: Any) -> bytes:
-    if not isinstance(path, (str, os.PathLike)):
-        raise TypeError(f"path: must be text or a path, not {type(path).__name__}")
-    return os.fsencode(path)
 
 
 def _signal(symbol_rate: float, levels: int) -> Signal:
@@ -78,7 +72,7 @@ class Rules(Immutable):
     @classmethod
     def load(cls, path: Path) -> Rules:
         """Rules from a file; `ReadError`, `FormatError` with the line. Pickled as the path."""
-        return cls._of(_core.rules_load(_path(path)), ("load", os.fspath(path)))
+        return cls._of(_core.rules_load(path_bytes(path)), ("load", os.fspath(path)))
 
     @classmethod
     def parse(cls, text: str) -> Rules:
@@ -194,7 +188,7 @@ class Board(Immutable):
         instance("stackup", stackup, (str, type(None)), "text or None")
         if progress is not None and not callable(progress):
             raise TypeError(f"progress: must be callable, not {type(progress).__name__}")
-        handle = _core.board_load(_path(path), None if rules is None else rules._handle, stackup, progress)
+        handle = _core.board_load(path_bytes(path), None if rules is None else rules._handle, stackup, progress)
         self = object.__new__(cls)
         layers = Stackup(_layer(values) for values in _core.board_layers(handle))
         fill(
@@ -303,7 +297,7 @@ class Board(Immutable):
 
     def _write(self, call: Any, plan: Any, path: Path) -> None:
         instance("plan", plan, Plan, "a Plan")
-        call(self._handle, plan._handle, _path(path))
+        call(self._handle, plan._handle, path_bytes(path))
 
     def summary(self, plan: Plan) -> str:
         """The summary a person reads, plain text, lines of at most 100 characters."""
@@ -330,22 +324,27 @@ def _plan_again(
     return board.plan(rules, capability, fidelity=fidelity, z_ref=z_ref, annuli=annuli)
 
 
-def _returns(kind: int, distance: float, drill: float, count: int, places: Any) -> Ring | Vias | Wall | None:
+def _returns(kind: int, distance: float, drill: float, count: int, places: Any, spans: Any) -> Ring | Vias | Wall | None:
     if kind == _core.RETURN_VIAS and places:
-        return Vias(places, drill or None)
+        return Vias(places, drill or None, spans or None)
     if kind == _core.RETURN_VIAS:
         return Ring(count, distance, drill or None)
     return Wall(distance) if kind == _core.RETURN_WALL else None
+
+
+def _backdrills(values: Any) -> tuple[BackDrill, ...]:
+    return tuple(BackDrill(SIDE.word(side), depth, size) for side, depth, size in values)  # type: ignore[arg-type]
 
 
 def _via(stackup: Stackup, values: tuple[Any, ...]) -> Via:
     (
         start, end, drill, pad_start, pad_inner, pad_end, antipad, pads, antipads, clear, nonfunctional, return_kind,
         connects, return_distance, return_drill, return_count, pair_kind, pitch, backdrills, pin_side, pin_length,
-        places, outside_dk, lid_distance, hole_dk,
+        places, outside_dk, lid_distance, hole_dk, spans, partner_backdrills, partner_own, edge_kind, edges,
     ) = values
     pair_shared = pair_kind == _core.PAIR_SHARED
-    backs: Any = [BackDrill(SIDE.word(side), depth, size) for side, depth, size in backdrills]  # type: ignore[arg-type]
+    backs = _backdrills(backdrills)
+    left, right, front, back = edges
     return Via(
         stackup,
         drill=drill,
@@ -355,8 +354,10 @@ def _via(stackup: Stackup, values: tuple[Any, ...]) -> Via:
         pad_end=pad_end,
         antipad=antipad,
         span=(start, end) if (start, end) != (0, 0) else None,
-        returns=_returns(return_kind, return_distance, return_drill, return_count, places),
-        pair=None if pair_kind == _core.PAIR_NONE else Pair(pitch, pair_shared),
+        returns=_returns(return_kind, return_distance, return_drill, return_count, places, spans),
+        pair=None
+        if pair_kind == _core.PAIR_NONE
+        else Pair(pitch, pair_shared, _backdrills(partner_backdrills) if partner_own else None),
         backdrills=backs,
         pin=Pin(SIDE.word(pin_side), pin_length) if pin_side else None,  # type: ignore[arg-type]
         pads=dict(pads),
@@ -366,4 +367,5 @@ def _via(stackup: Stackup, values: tuple[Any, ...]) -> Via:
         outside_dk=outside_dk or 1.0,
         lid_distance=lid_distance or None,
         hole_dk=hole_dk or 1.0,
+        edges=Edges(left, right, front, back, edge_kind == _core.EDGE_SHORTED) if any(edges) else None,
     )

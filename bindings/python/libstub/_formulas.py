@@ -9,7 +9,7 @@ from . import _core
 __all__ = [
     "quarter_wave_frequency", "quarter_wave_length", "quarter_wave_dk", "delay_dk", "loaded_stub_frequency",
     "notch_floor", "stub_skirt", "rule_of_thumb_length", "Coax", "coax", "return_inductance", "TwinRod", "twin_rod",
-    "plate_capacitance", "handbook_capacitance", "handbook_inductance",
+    "plate_capacitance", "handbook_capacitance", "handbook_inductance", "skin_depth",
 ]
 
 
@@ -244,3 +244,19 @@ def handbook_inductance(length: float, diameter: float) -> float:
     (from memory). Raises `ArgumentError` out of range.
     """
     return _one("handbook_inductance", length, diameter)
+
+
+def skin_depth(conductivity: float, f: float) -> float:
+    """Skin depth, in m: sqrt(1/(pi f mu0 conductivity)).
+
+    Parameters
+    ----------
+    conductivity : S/m, 1e5 to 1e8
+    f : Hz, 1e3 to 1e12
+
+    Textbook. Raises `ArgumentError` out of range.
+
+    >>> round(skin_depth(5.8e7, 1e9) * 1e6, 3)
+    2.09
+    """
+    return _one("skin_depth", conductivity, f)

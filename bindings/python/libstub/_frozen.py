@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import enum
 import math
+import os
 from typing import Any, Sequence
 
 from . import _core
@@ -38,6 +39,12 @@ def fill(self: Any, **values: Any) -> None:
 def instance(name: str, value: Any, cls: type | tuple[type, ...], wanted: str) -> None:
     if not isinstance(value, cls):
         raise TypeError(f"{name}: must be {wanted}, not {type(value).__name__}")
+
+
+def path_bytes(path: Any) -> bytes:
+    if not isinstance(path, (str, os.PathLike)):
+        raise TypeError(f"path: must be text or a path, not {type(path).__name__}")
+    return os.fsencode(path)
 
 
 # ---- words --------------------------------------------------------------------------------------------
@@ -76,6 +83,18 @@ FIDELITY = Words(
 )
 TOLERANCE = Words(worst=_core.TOLERANCE_WORST, rss=_core.TOLERANCE_RSS)
 HOLE = Words(via=_core.HOLE_VIA, pin=_core.HOLE_PIN)
+ROUGHNESS = Words(hammerstad=_core.ROUGHNESS_HAMMERSTAD, spheres=_core.ROUGHNESS_SPHERES)
+NETWORK = Words(
+    S=_core.NETWORK_S, Z=_core.NETWORK_Z, Y=_core.NETWORK_Y, ABCD=_core.NETWORK_ABCD, G=_core.NETWORK_G, H=_core.NETWORK_H
+)
+FORMAT = Words(RI=_core.FORMAT_RI, MA=_core.FORMAT_MA, DB=_core.FORMAT_DB)
+UNIT = Words(Hz=_core.UNIT_HZ, kHz=_core.UNIT_KHZ, MHz=_core.UNIT_MHZ, GHz=_core.UNIT_GHZ)
+MATRIX = Words(full=_core.MATRIX_FULL, lower=_core.MATRIX_LOWER, upper=_core.MATRIX_UPPER)
+ORDER = Words(**{"21_12": _core.ORDER_21_12, "12_21": _core.ORDER_12_21})
+ROW = Words(single=_core.ROW_SINGLE, differential=_core.ROW_DIFFERENTIAL, common=_core.ROW_COMMON)
+STUBS = Words(kept=_core.STUBS_KEPT, removed=_core.STUBS_REMOVED)
+METAL = Words(lossy=_core.METAL_LOSSY, perfect=_core.METAL_PERFECT)
+MODE = Words(single=_core.MODE_SINGLE, odd=_core.MODE_ODD, even=_core.MODE_EVEN)
 SEVERITY = Words(note=_core.NOTICE_NOTE, warning=_core.NOTICE_WARNING, refused=_core.NOTICE_REFUSED)
 
 
@@ -121,11 +140,11 @@ _UNITS = {
         "m": "thickness tol_plus tol_minus tol_rss_plus tol_rss_minus roughness distance drill pitch depth depth_least "
         "depth_most diameter length stub_length rule_length rule_margin margin depth_tolerance cut_clearance "
         "residual_min residual_target bit_oversize wall_clearance residual residual_least residual_most limit tolerance "
-        "x y",
-        "Hz": "f_ref f_range f f_series f1 nyquist notch_margin",
+        "x y width height_below height_above left right front back",
+        "Hz": "f_ref f_range f f_series f1 nyquist notch_margin f_sigma f_minimum window",
         "Bd": "baud",
-        "dB": "added_loss_db loss_margin_db depth_db worst_added_loss_db",
-        "ohm": "impedance",
+        "dB": "added_loss_db loss_margin_db depth_db worst_added_loss_db level_db",
+        "ohm": "impedance z_ref",
         "S/m": "conductivity",
         "H/m": "inductance",
         "F/m": "capacitance",

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import functools
 from dataclasses import KW_ONLY, dataclass
-from typing import Any, NamedTuple
+from typing import Any, Literal, NamedTuple
 
 from . import _arrays, _core
-from ._frozen import Frozen, fill, nonzero, number
+from ._frozen import ROUGHNESS, Frozen, fill, nonzero, number
 
 
 class Permittivity(NamedTuple):
@@ -74,18 +75,25 @@ class Dielectric(Frozen):
 
 @dataclass(frozen=True, repr=False)
 class Conductor(Frozen):
-    """Copper. Carried with the stackup; no model of this version uses it.
+    """Copper.
 
     Parameters
     ----------
     conductivity : S/m, 1e5 to 1e8
     roughness : rms height, m, 0 (smooth) to 20e-6
+    roughness_law : "hammerstad": 1 + (2/pi) atan(1.4 (rms/skin depth)^2) times the loss, at most 2 (Hammerstad, Jensen,
+        MTT-S 1980). "spheres": fourteen spheres stacked on a smooth surface, at most 8.3 times (Huray et al., DesignCon
+        2010, for the stack of Simonovich, 2015): with a measured Rz, roughness = Rz/3.4641
 
-    Raises `ArgumentError` for what is not a number; ranges are checked with the stackup.
+    Raises `ArgumentError` for what is not a number; ranges are checked where it is used.
+
+    >>> Conductor(roughness=4e-7, roughness_law="spheres")
+    Conductor(roughness=0.4 um, roughness_law='spheres')
     """
 
     conductivity: float = 5.8e7
     roughness: float = 0.0
+    roughness_law: Literal["hammerstad", "spheres"] = "hammerstad"
 
     def __post_init__(self) -> None:
         fill(
@@ -93,4 +101,17 @@ class Conductor(Frozen):
             conductivity=nonzero("conductivity", self.conductivity),
             roughness=number("roughness", self.roughness),
         )
-        fill(self, _record=_core.record("conductor", (self.conductivity, self.roughness)))
+        law = ROUGHNESS.code("roughness_law", self.roughness_law)
+        fill(self, _record=_core.record("conductor", (self.conductivity, self.roughness, law)))
+
+    def surface_impedance(self, f: Any) -> Any:
+        """Impedance of the surface of thick copper, ohm per square, complex: (1 + j)/(conductivity skin depth) K.
+
+        Parameters
+        ----------
+        f : Hz, 1e3 to 1e12: a number or an array of any shape
+
+        K is complex and causal: its effect on the resistance is the published one of the law, the reactance follows from
+        it. Returns complex128 of the shape of f, 0 < re <= im. Raises `ArgumentError` out of range.
+        """
+        return _arrays.evaluate(functools.partial(_core.surface_impedance, self._record), f, "Z", None)

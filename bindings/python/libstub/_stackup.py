@@ -8,7 +8,7 @@ from typing import Any, Iterable, Literal, NamedTuple, Union
 
 from . import _core
 from ._errors import ArgumentError, NoSuchError
-from ._frozen import KIND, Frozen, Immutable, fill, instance, number, show
+from ._frozen import KIND, ROUGHNESS, Frozen, Immutable, fill, instance, number, show
 from ._material import Conductor, Dielectric
 
 LayerRef = Union[str, int]  # a layer by its name or by its index from the top
@@ -72,6 +72,10 @@ def _layer(values: tuple[Any, ...]) -> Layer:
     if dielectric is not None:
         dk, in_plane_ratio, loss_tangent, f_ref = dielectric
         material = Dielectric(dk, loss_tangent, in_plane_ratio=in_plane_ratio, f_ref=f_ref)
+    metal = None
+    if conductor is not None:
+        conductivity, roughness, law = conductor
+        metal = Conductor(conductivity, roughness, ROUGHNESS.word(law))  # type: ignore[arg-type]
     return Layer(
         name,
         KIND.word(kind),  # type: ignore[arg-type]
@@ -79,7 +83,7 @@ def _layer(values: tuple[Any, ...]) -> Layer:
         tol_plus=tol_plus,
         tol_minus=tol_minus,
         dielectric=material,
-        conductor=None if conductor is None else Conductor(*conductor),
+        conductor=metal,
     )
 
 
@@ -157,6 +161,15 @@ class Stackup(Immutable):
         from ._board import Board
 
         return Board.load(path, stackup=stackup).stackup
+
+    @classmethod
+    def _of(cls, handle: Any) -> Stackup:
+        return cls(_layer(values) for values in _core.stackup_layers(handle))
+
+    def with_in_plane_ratio(self, ratio: float) -> Stackup:
+        """The same stackup with that ratio of in-plane to through-plane Dk (0.5 to 2) in all its dielectrics, the resin
+        between copper included; `ArgumentError`. `Fit.ratio` is such a one."""
+        return Stackup._of(_core.with_in_plane_ratio(self._handle, ratio))
 
     @property
     def layers(self) -> tuple[Layer, ...]:

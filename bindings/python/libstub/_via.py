@@ -12,6 +12,7 @@ from ._stackup import LayerRef, Stackup, named_layers
 
 if TYPE_CHECKING:
     from ._model import Fidelity, Model
+    from ._transition import Metal, Port, Stubs, Transition
 
 Side = Literal["top", "bottom"]
 
@@ -48,13 +49,15 @@ class Vias(Frozen):
     ----------
     positions : 1 to 1000 pairs x, y about the axis of the barrel, m. The partner of a pair is at (pitch, 0)
     drill : diameter of the return vias, m; None: that of the via
+    spans : for each the first and the last layer it joins, names or indices; None, as a whole or for one: all copper
 
-    >>> Vias([(0.65e-3, 0.0), (-0.65e-3, 0.0)])
-    Vias(positions=((0.65 mm, 0 m), (-0.65 mm, 0 m)))
+    >>> Vias([(0.65e-3, 0.0), (-0.65e-3, 0.0)], spans=[("L2", "L5"), None])
+    Vias(positions=((0.65 mm, 0 m), (-0.65 mm, 0 m)), spans=(('L2', 'L5'), None))
     """
 
     positions: tuple[tuple[float, float], ...]
     drill: float | None = None
+    spans: Sequence[tuple[LayerRef, LayerRef] | None] | None = None
 
     def __post_init__(self) -> None:
         if isinstance(self.positions, str) or not hasattr(self.positions, "__iter__"):
@@ -65,11 +68,43 @@ class Vias(Frozen):
             raise ArgumentError(text, _core.E_ARGUMENT, "positions")
         if self.drill is not None:
             fill(self, drill=nonzero("drill", self.drill))
+        if self.spans is not None:
+            fill(self, spans=_pairs_of_layers(self.spans, len(self.positions)))
+
+    def _on(self, stackup: Stackup) -> Vias:
+        """The same with layers by name."""
+        if self.spans is None:
+            return self
+        spans = [None if span is None else named_layers(stackup, f"spans[{i}]", span) for i, span in enumerate(self.spans)]
+        return Vias(self.positions, self.drill, spans)  # type: ignore[arg-type]
+
+    def _span_indices(self, stackup: Stackup) -> tuple[tuple[int, int], ...]:
+        if self.spans is None:
+            return ()
+        copper = stackup.copper
+        whole = (copper[0], copper[-1])
+        return tuple((stackup.index(first), stackup.index(last)) for first, last in (span or whole for span in self.spans))
 
     def __repr__(self) -> str:
         places = [f"({show(x, 'm')}, {show(y, 'm')})" for x, y in self.positions]
         drill = "" if self.drill is None else f", drill={show(self.drill, 'm')}"
-        return f"Vias(positions=({', '.join(places)}{',' if len(places) == 1 else ''}){drill})"
+        spans = "" if self.spans is None else f", spans={self.spans!r}"
+        return f"Vias(positions=({', '.join(places)}{',' if len(places) == 1 else ''}){drill}{spans})"
+
+
+def _pairs_of_layers(spans: Any, count: int) -> tuple[tuple[LayerRef, LayerRef] | None, ...]:
+    if isinstance(spans, str) or not hasattr(spans, "__iter__"):
+        raise TypeError(f"spans: must be a sequence of pairs of layers, not {type(spans).__name__}")
+    result = []
+    for i, span in enumerate(spans):
+        if span is not None and (isinstance(span, str) or not hasattr(span, "__iter__")):
+            raise TypeError(f"spans[{i}]: must be a pair of layers or None, not {type(span).__name__}")
+        result.append(None if span is None else tuple(span))
+        if span is not None and len(result[-1]) != 2:  # type: ignore[arg-type]
+            raise ArgumentError(f"spans[{i}]: {len(tuple(span))} layers: must be two", _core.E_ARGUMENT, "spans")
+    if len(result) != count:
+        raise ArgumentError(f"spans: {len(result)}: must be as many as positions ({count})", _core.E_ARGUMENT, "spans")
+    return tuple(result)
 
 
 def _point(name: str, point: Any) -> tuple[float, float]:
@@ -99,14 +134,45 @@ class Pair(Frozen):
     ----------
     pitch : axis to axis, m, > drill
     shared : one antipad around both (the union and the band between them) instead of one each
+    backdrills : sequence of `BackDrill` of the partner, which may be empty; None: it is drilled as the barrel is
     """
 
     pitch: float
     shared: bool = False
+    backdrills: Sequence[BackDrill] | None = None
 
     def __post_init__(self) -> None:
         instance("shared", self.shared, bool, "True or False")
         fill(self, pitch=number("pitch", self.pitch))
+        if self.backdrills is not None:
+            fill(self, backdrills=_backdrills(self.backdrills))
+
+
+@dataclass(frozen=True, repr=False)
+class Edges(Frozen):
+    """Straight edges of all planes: a rectangle around the via, seen from above. Distances from the axis, m, > 0.
+
+    Parameters
+    ----------
+    left, right : towards -x, +x
+    front, back : towards -y, +y
+    shorted : the planes are joined to each other all along them; else bare
+
+    The partner of a pair is at (pitch, 0).
+
+    >>> Edges(4e-3, 6e-3, 5e-3, 5e-3)
+    Edges(left=4 mm, right=6 mm, front=5 mm, back=5 mm)
+    """
+
+    left: float
+    right: float
+    front: float
+    back: float
+    shorted: bool = False
+
+    def __post_init__(self) -> None:
+        instance("shorted", self.shorted, bool, "True or False")
+        fill(self, **{name: nonzero(name, getattr(self, name)) for name in ("left", "right", "front", "back")})
 
 
 @dataclass(frozen=True, repr=False)
@@ -127,6 +193,13 @@ class BackDrill(Frozen):
     def __post_init__(self) -> None:
         SIDE.code("side", self.side)
         fill(self, depth=number("depth", self.depth), diameter=number("diameter", self.diameter))
+
+
+def _backdrills(values: Any) -> tuple[BackDrill, ...]:
+    instance("backdrills", values, (list, tuple), "a sequence of BackDrill")
+    for item in values:
+        instance("backdrills", item, BackDrill, "a sequence of BackDrill")
+    return tuple(values)
 
 
 @dataclass(frozen=True, repr=False)
@@ -222,6 +295,7 @@ class Via(Immutable):
     outside_dk : of what lies beyond the outer copper, 1 to 1000
     lid_distance : from the outer copper to a conducting lid; None: open space
     hole_dk : of what fills a drilled hole, 1 to 1000
+    edges : `Edges` of the planes, or None: planes without end
 
     Raises `ArgumentError`, `GeometryError` or `NoSuchError` with the member, value and layer.
 
@@ -240,7 +314,7 @@ class Via(Immutable):
     __slots__ = (
         "stackup", "drill", "connects", "pad_start", "pad_inner", "pad_end", "antipad", "span", "returns", "pair",
         "backdrills", "pin", "_pads", "_antipads", "_clear", "nonfunctional_pads",
-        "outside_dk", "lid_distance", "hole_dk", "_record", "__weakref__",
+        "outside_dk", "lid_distance", "hole_dk", "edges", "_record", "__weakref__",
     )
     stackup: Stackup
     drill: float
@@ -258,6 +332,7 @@ class Via(Immutable):
     outside_dk: float
     lid_distance: float | None
     hole_dk: float
+    edges: Edges | None
     _pads: tuple[tuple[str, float], ...]
     _antipads: tuple[tuple[str, float], ...]
     _clear: tuple[tuple[str, float], ...]
@@ -286,15 +361,14 @@ class Via(Immutable):
         outside_dk: float = 1.0,
         lid_distance: float | None = None,
         hole_dk: float = 1.0,
+        edges: Edges | None = None,
     ):
         instance("stackup", stackup, Stackup, "a Stackup")
         instance("returns", returns, (Ring, Vias, Wall, type(None)), "a Ring, Vias, a Wall or None")
         instance("pair", pair, (Pair, type(None)), "a Pair or None")
         instance("pin", pin, (Pin, type(None)), "a Pin or None")
         instance("nonfunctional_pads", nonfunctional_pads, bool, "True or False")
-        instance("backdrills", backdrills, (list, tuple), "a sequence of BackDrill")
-        for item in backdrills:
-            instance("backdrills", item, BackDrill, "a sequence of BackDrill")
+        instance("edges", edges, (Edges, type(None)), "Edges or None")
         common = _diameter("pad", pad, 0.0)
         fill(
             self,
@@ -306,9 +380,9 @@ class Via(Immutable):
             pad_end=_diameter("pad_end", pad_end, common),
             antipad=_diameter("antipad", antipad, 0.0),
             span=_span(stackup, span),
-            returns=returns,
+            returns=returns._on(stackup) if isinstance(returns, Vias) else returns,
             pair=pair,
-            backdrills=tuple(backdrills),
+            backdrills=_backdrills(backdrills),
             pin=pin,
             _pads=_values_on_layers(stackup, "pads", pads),
             _antipads=_values_on_layers(stackup, "antipads", antipads),
@@ -317,6 +391,7 @@ class Via(Immutable):
             outside_dk=nonzero("outside_dk", outside_dk),
             lid_distance=None if lid_distance is None else nonzero("lid_distance", lid_distance),
             hole_dk=nonzero("hole_dk", hole_dk),
+            edges=edges,
         )
         record = _core.record("via", self._values())
         _core.via_check(stackup._handle, record)
@@ -332,6 +407,7 @@ class Via(Immutable):
         pair = _core.PAIR_NONE
         if self.pair is not None:
             pair = _core.PAIR_SHARED if self.pair.shared else _core.PAIR_SEPARATE
+        own, edges = self.pair.backdrills if self.pair is not None else None, self.edges
         kind = _core.RETURN_NONE
         if self.returns is not None:
             kind = _core.RETURN_WALL if isinstance(self.returns, Wall) else _core.RETURN_VIAS
@@ -354,13 +430,18 @@ class Via(Immutable):
             ring.count if ring is not None else len(places),
             pair,
             self.pair.pitch if self.pair is not None else 0.0,
-            tuple((SIDE.code("side", b.side), b.depth, b.diameter) for b in self.backdrills),
+            _drill_values(self.backdrills),
             SIDE.code("side", self.pin.side) if self.pin is not None else 0,
             self.pin.length if self.pin is not None else 0.0,
             places,
             self.outside_dk,
             self.lid_distance if self.lid_distance is not None else 0.0,
             self.hole_dk,
+            self.returns._span_indices(self.stackup) if isinstance(self.returns, Vias) else (),
+            _drill_values(own or ()),
+            int(own is not None),
+            _core.EDGE_SHORTED if edges is not None and edges.shorted else _core.EDGE_OPEN,
+            (edges.left, edges.right, edges.front, edges.back) if edges is not None else (0.0,) * 4,
         )
 
     @property
@@ -389,6 +470,14 @@ class Via(Immutable):
 
         return Model(self, fidelity=fidelity, z_ref=z_ref, annuli=annuli)
 
+    def transition(
+        self, ports: Sequence[Port], *, stubs: Stubs = "kept", metal: Metal = "lossy", annuli: int | None = None
+    ) -> Transition:
+        """The whole via as a network, compiled; ports, stubs, metal and annuli as `Transition`."""
+        from ._transition import Transition
+
+        return Transition(self, ports, stubs=stubs, metal=metal, annuli=annuli)
+
     def replace(self, **changes: Any) -> Via:
         """The same via but for some arguments, also on another stackup (layers are carried over by name).
 
@@ -407,14 +496,14 @@ class Via(Immutable):
             "returns": self.returns, "pair": self.pair, "backdrills": self.backdrills, "pin": self.pin,
             "pads": self.pads, "antipads": self.antipads, "clear": self.clear,
             "nonfunctional_pads": self.nonfunctional_pads, "outside_dk": self.outside_dk,
-            "lid_distance": self.lid_distance, "hole_dk": self.hole_dk,
+            "lid_distance": self.lid_distance, "hole_dk": self.hole_dk, "edges": self.edges,
         }
 
     def _key(self) -> tuple[Any, ...]:
         return (
             self.stackup, self.drill, self.connects, self.pad_start, self.pad_inner, self.pad_end, self.antipad,
             self.span, self.returns, self.pair, self.backdrills, self.pin, self._pads, self._antipads, self._clear,
-            self.nonfunctional_pads, self.outside_dk, self.lid_distance, self.hole_dk,
+            self.nonfunctional_pads, self.outside_dk, self.lid_distance, self.hole_dk, self.edges,
         )
 
     def __eq__(self, other: object) -> bool:
@@ -442,7 +531,7 @@ class Via(Immutable):
             values = getattr(self, name)
             if values:
                 parts.append(f"{name}={{{', '.join(f'{k!r}: ' + show(v, 'm') for k, v in values.items())}}}")
-        for name in ("returns", "pair", "backdrills", "pin", "nonfunctional_pads"):
+        for name in ("returns", "pair", "backdrills", "pin", "nonfunctional_pads", "edges"):
             if getattr(self, name):
                 parts.append(f"{name}={getattr(self, name)!r}")
         for name in ("outside_dk", "hole_dk"):
@@ -451,6 +540,10 @@ class Via(Immutable):
         if self.lid_distance is not None:
             parts.append(f"lid_distance={show(self.lid_distance, 'm')}")
         return f"Via({', '.join(parts)})"
+
+
+def _drill_values(drills: Iterable[BackDrill]) -> tuple[tuple[int, float, float], ...]:
+    return tuple((SIDE.code("side", b.side), b.depth, b.diameter) for b in drills)
 
 
 def _rebuild_via(arguments: dict[str, Any]) -> Via:

@@ -16,6 +16,7 @@ static PyObject *name_of(PyObject *module, PyObject *value, const char *(*name)(
 static PyObject *status_name(PyObject *module, PyObject *value) { return name_of(module, value, lstub_status_name); }
 static PyObject *action_name(PyObject *module, PyObject *value) { return name_of(module, value, lstub_action_name); }
 static PyObject *reason_name(PyObject *module, PyObject *value) { return name_of(module, value, lstub_reason_name); }
+static PyObject *remark_text(PyObject *module, PyObject *value) { return name_of(module, value, lstub_remark_text); }
 
 static PyObject *number(PyObject *module, PyObject *args)
 {
@@ -71,6 +72,7 @@ static PyMethodDef methods[] = {
     {"status_name", status_name, METH_O, NULL},
     {"action_name", action_name, METH_O, NULL},
     {"reason_name", reason_name, METH_O, NULL},
+    {"remark_text", remark_text, METH_O, NULL},
     {"number", number, METH_VARARGS, NULL},
     {"integer", integer, METH_VARARGS, NULL},
     {"record", record, METH_VARARGS, NULL},
@@ -103,6 +105,18 @@ static const struct { const char *name; int value; } constants[] = {
     CONSTANT(REASON_ASPECT), CONSTANT(REASON_DEPTHS), CONSTANT(REASON_PIN), CONSTANT(REASON_BURIED),
     CONSTANT(REASON_DRILLED), CONSTANT(REASON_ERROR), CONSTANT(REASON_ONE_LAYER),
     CONSTANT(HOLE_VIA), CONSTANT(HOLE_PIN), CONSTANT(NOTICE_NOTE), CONSTANT(NOTICE_WARNING), CONSTANT(NOTICE_REFUSED),
+    CONSTANT(ROUGHNESS_HAMMERSTAD), CONSTANT(ROUGHNESS_SPHERES), CONSTANT(TRACE_MICROSTRIP),
+    CONSTANT(TRACE_STRIPLINE), CONSTANT(PORTS_MAX), CONSTANT(NETWORK_S), CONSTANT(NETWORK_Z), CONSTANT(NETWORK_Y),
+    CONSTANT(NETWORK_ABCD), CONSTANT(NETWORK_G), CONSTANT(NETWORK_H), CONSTANT(FORMAT_RI), CONSTANT(FORMAT_MA),
+    CONSTANT(FORMAT_DB), CONSTANT(UNIT_HZ), CONSTANT(UNIT_KHZ), CONSTANT(UNIT_MHZ), CONSTANT(UNIT_GHZ),
+    CONSTANT(MATRIX_FULL), CONSTANT(MATRIX_LOWER), CONSTANT(MATRIX_UPPER), CONSTANT(ORDER_21_12),
+    CONSTANT(ORDER_12_21), CONSTANT(ROW_SINGLE), CONSTANT(ROW_DIFFERENTIAL), CONSTANT(ROW_COMMON),
+    CONSTANT(QUALITY_GOOD), CONSTANT(QUALITY_SHALLOW), CONSTANT(QUALITY_EDGE), CONSTANT(QUALITY_RIPPLE),
+    CONSTANT(QUALITY_WIDE), CONSTANT(QUALITY_FLOOR), CONSTANT(EDGE_OPEN), CONSTANT(EDGE_SHORTED),
+    CONSTANT(PORT_TRACE), CONSTANT(PORT_COAX), CONSTANT(STUBS_KEPT), CONSTANT(STUBS_REMOVED), CONSTANT(METAL_LOSSY),
+    CONSTANT(METAL_PERFECT), CONSTANT(MODE_SINGLE), CONSTANT(MODE_ODD), CONSTANT(MODE_EVEN),
+    CONSTANT(REMARK_RADIATES), CONSTANT(REMARK_LAUNCH), CONSTANT(REMARK_OUTER), CONSTANT(REMARK_SLOT),
+    CONSTANT(REMARK_UNEQUAL),
 };
 
 /* ---- set-up -------------------------------------------------------------------------------------- */
@@ -139,7 +153,9 @@ static int add_constants(PyObject *module)
 static int execute(PyObject *module)
 {
     PyMethodDef *const parts[] = {methods, core_formula_methods, core_geometry_methods, core_model_methods,
-                                  core_criteria_methods, core_plan_methods, core_board_methods};
+                                  core_criteria_methods, core_plan_methods, core_board_methods, core_trace_methods,
+                                  core_network_methods, core_touchstone_methods, core_measure_methods,
+                                  core_transition_methods};
     core_state *state = core_of(module);
     size_t i;
     if (lstub_abi() != LSTUB_ABI) {

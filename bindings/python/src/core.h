@@ -41,16 +41,18 @@ PyObject *core_batch_result(int32_t status, const lstub_error *err);
 
 enum {  /* inputs first */
     SHAPE_DIELECTRIC, SHAPE_CONDUCTOR, SHAPE_LAYER, SHAPE_VIA, SHAPE_SIGNAL, SHAPE_CRITERIA, SHAPE_CAPABILITY,
-    SHAPE_OPTIONS, SHAPE_JOB, SHAPE_INPUTS,
+    SHAPE_OPTIONS, SHAPE_JOB, SHAPE_TRACE, SHAPE_PORT, SHAPE_TRANSITION, SHAPE_SEARCH, SHAPE_LOSS_FIT, SHAPE_INPUTS,
     SHAPE_INTERVAL = SHAPE_INPUTS, SHAPE_STUB, SHAPE_LINE, SHAPE_NOTCH, SHAPE_MARGIN, SHAPE_LIMIT, SHAPE_CUT,
-    SHAPE_DECISION, SHAPE_GROUP, SHAPE_SUMMARY, SHAPE_HOLE, SHAPE_NOTICE, SHAPE_COUNT
+    SHAPE_DECISION, SHAPE_GROUP, SHAPE_SUMMARY, SHAPE_HOLE, SHAPE_NOTICE, SHAPE_MEASURED, SHAPE_FIT, SHAPE_DEVIATION,
+    SHAPE_COUNT
 };
 
 typedef struct core_member {
     const char *name;
     char        type;         /* d double, i int32, l int64, s text, r pointer to a struct, n struct inside,
                                  D doubles, I int32s, L values on layers, B back-drills (pointer and count),
-                                 P points: two doubles each (pointer and an int32 count, which is a member too) */
+                                 P points: two doubles each (pointer and an int32 count, which is a member too),
+                                 S spans: two int32s each (pointer, and the same count), E four doubles inside */
     int         shape;        /* of r and n                                                             */
     size_t      offset, count_offset;
 } core_member;
@@ -96,6 +98,7 @@ typedef struct core_buffer {
 } core_buffer;
 
 int core_buffer_read(PyObject *object, const char *name, core_buffer *out);              /* doubles         */
+int core_buffer_complex(PyObject *object, const char *name, core_buffer *out);           /* Zd, or pairs of doubles */
 /* type: d doubles, Z complex (as complex128, or as twice as many doubles), i int32 */
 int core_buffer_write(PyObject *object, const char *name, char type, size_t count, core_buffer *out);
 int core_buffers_apart(const core_buffer *in, const core_buffer *out, const char *name);
@@ -106,7 +109,7 @@ PyObject *core_complex_array(PyObject *module, PyObject *count);
 
 /* ---- handles (handle.c) -------------------------------------------------------------------------- */
 
-enum { HANDLE_STACKUP, HANDLE_MODEL, HANDLE_PLAN, HANDLE_RULES, HANDLE_BOARD };
+enum { HANDLE_STACKUP, HANDLE_MODEL, HANDLE_PLAN, HANDLE_RULES, HANDLE_BOARD, HANDLE_TRANSITION, HANDLE_TOUCHSTONE };
 
 PyType_Spec *core_handle_spec(void);
 PyObject *core_handle_new(core_state *state, int kind, void *pointer);   /* takes the pointer over      */
@@ -115,6 +118,7 @@ void *core_handle_get(core_state *state, PyObject *object, int kind);    /* null
 /* ---- functions, by part of the header ------------------------------------------------------------ */
 
 extern PyMethodDef core_formula_methods[], core_geometry_methods[], core_model_methods[], core_criteria_methods[],
-    core_plan_methods[], core_board_methods[];
+    core_plan_methods[], core_board_methods[], core_trace_methods[], core_network_methods[], core_touchstone_methods[],
+    core_measure_methods[], core_transition_methods[];
 
 #endif

@@ -27,6 +27,9 @@ FORMULA(twin_rod, a[0], a[1], a[2], out, out + 1)
 FORMULA(plate_capacitance, a[0], a[1], a[2], a[3], a[4], out)
 FORMULA(handbook_capacitance, a[0], a[1], a[2], a[3], out)
 FORMULA(handbook_inductance, a[0], a[1], out)
+FORMULA(skin_depth, a[0], a[1], out)
+FORMULA(fit_effective_dk, a[0], a[1], a[2], a[3], n, out, out + 1)
+FORMULA(fit_length, a[0], a[1], a[2], a[3], n, out, out + 1)
 
 static const struct {
     const char  *name;
@@ -49,6 +52,9 @@ static const struct {
     {"plate_capacitance", {"drill", "antipad", "spacing", "dk_through_plane", "dk_in_plane"}, -1, 1, plate_capacitance},
     {"handbook_capacitance", {"thickness", "pad", "antipad", "dk"}, -1, 1, handbook_capacitance},
     {"handbook_inductance", {"length", "diameter"}, -1, 1, handbook_inductance},
+    {"skin_depth", {"conductivity", "f"}, -1, 1, skin_depth},
+    {"fit_effective_dk", {"f", "f_sigma", "length", "length_sigma", "n"}, 4, 2, fit_effective_dk},
+    {"fit_length", {"f", "f_sigma", "dk", "dk_sigma", "n"}, 4, 2, fit_length},
 };
 
 static int find(const char *name)

@@ -7,7 +7,7 @@ typedef struct handle {
     void *pointer;
 } handle;
 
-static const char *const kinds[] = {"stackup", "model", "plan", "rules", "board"};
+static const char *const kinds[] = {"stackup", "model", "plan", "rules", "board", "transition", "touchstone"};
 
 static void destroy(int kind, void *pointer)
 {
@@ -16,6 +16,8 @@ static void destroy(int kind, void *pointer)
     case HANDLE_MODEL:   lstub_model_destroy(pointer); break;
     case HANDLE_PLAN:    lstub_plan_destroy(pointer); break;
     case HANDLE_RULES:   lstub_rules_destroy(pointer); break;
+    case HANDLE_TRANSITION: lstub_transition_destroy(pointer); break;
+    case HANDLE_TOUCHSTONE: lstub_touchstone_destroy(pointer); break;
     default:             lstub_board_destroy(pointer); break;
     }
 }

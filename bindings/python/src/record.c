@@ -24,6 +24,11 @@ typedef struct record {
         lstub_capability    capability;
         lstub_model_options options;
         lstub_job           job;
+        lstub_trace         trace;
+        lstub_port          port;
+        lstub_transition_options transition;
+        lstub_search        search;
+        lstub_loss_fit      loss_fit;
     } data;
 } record;
 
@@ -75,12 +80,21 @@ static int pack_point(core_state *state, PyObject *item, const char *name, doubl
     return core_number(state, x, name, &out[0]) < 0 ? -1 : core_number(state, y, name, &out[1]);
 }
 
+static int pack_span(core_state *state, PyObject *item, const char *name, int32_t *out)
+{
+    PyObject *from, *to;
+    if (!PyTuple_Check(item) || !PyArg_ParseTuple(item, "OO", &from, &to))
+        return core_bad_argument(state, name, "%s: must be pairs of layers", name);
+    return core_int(state, from, name, &out[0]) < 0 ? -1 : core_int(state, to, name, &out[1]);
+}
+
 static int pack_item(core_state *state, PyObject *item, const core_member *member, void *array, size_t i)
 {
     switch (member->type) {
     case 'D': return core_number(state, item, member->name, (double *)array + i);
     case 'I': return core_int(state, item, member->name, (int32_t *)array + i);
     case 'P': return pack_point(state, item, member->name, (double *)array + 2 * i);
+    case 'S': return pack_span(state, item, member->name, (int32_t *)array + 2 * i);
     case 'L': return pack_layer_value(state, item, member->name, (lstub_on_layer *)array + i);
     default:  return pack_backdrill(state, item, member->name, (lstub_backdrill *)array + i);
     }
@@ -89,7 +103,7 @@ static int pack_item(core_state *state, PyObject *item, const core_member *membe
 static size_t item_size(char type)
 {
     return type == 'D' ? sizeof(double) : type == 'P' ? 2 * sizeof(double) : type == 'I' ? sizeof(int32_t)
-         : type == 'L' ? sizeof(lstub_on_layer) : sizeof(lstub_backdrill);
+         : type == 'S' ? 2 * sizeof(int32_t) : type == 'L' ? sizeof(lstub_on_layer) : sizeof(lstub_backdrill);
 }
 
 static int pack_array(core_state *state, record *rec, const core_member *member, PyObject *value)
@@ -111,11 +125,27 @@ static int pack_array(core_state *state, record *rec, const core_member *member,
         if (pack_item(state, PyTuple_GetItem(value, (Py_ssize_t)i), member, array, i) < 0)
             return -1;
     memcpy(base + member->offset, &array, sizeof array);
-    if (member->type == 'P') {
+    if (member->type == 'S') {      /* as many as there are points, which have come before */
+        int32_t points;
+        memcpy(&points, base + member->count_offset, sizeof points);
+        if (points < 0 || (size_t)points != count)
+            return core_bad_argument(state, member->name, "%s: must be as many as there are points", member->name);
+    } else if (member->type == 'P') {
         int32_t points = (int32_t)count;
         memcpy(base + member->count_offset, &points, sizeof points);
     } else
         memcpy(base + member->count_offset, &count, sizeof count);
+    return 0;
+}
+
+static int pack_four(core_state *state, PyObject *value, const char *name, double *out)
+{
+    int i;
+    if (!PyTuple_Check(value) || PyTuple_Size(value) != 4)
+        return core_bad_argument(state, name, "%s: must be a tuple of four numbers", name);
+    for (i = 0; i < 4; i++)
+        if (core_number(state, PyTuple_GetItem(value, i), name, &out[i]) < 0)
+            return -1;
     return 0;
 }
 
@@ -142,6 +172,7 @@ static int pack_member(core_state *state, record *rec, const core_member *member
     switch (member->type) {
     case 'd': return core_number(state, value, member->name, at);
     case 'i': return core_int(state, value, member->name, at);
+    case 'E': return pack_four(state, value, member->name, at);
     case 's':
         if ((pointer = pack_text(state, value, member->name)) == NULL)
             return -1;

@@ -14,6 +14,7 @@ static const core_member dielectric[] = {
 };
 static const core_member conductor[] = {
     VALUE(lstub_conductor, conductivity, 'd'), VALUE(lstub_conductor, roughness, 'd'),
+    VALUE(lstub_conductor, roughness_law, 'i'),
 };
 static const core_member layer[] = {
     VALUE(lstub_layer, name, 's'), VALUE(lstub_layer, kind, 'i'), VALUE(lstub_layer, thickness, 'd'),
@@ -31,7 +32,9 @@ static const core_member via[] = {
     VALUE(lstub_via, pair_pitch, 'd'), ARRAY(lstub_via, backdrills, backdrill_count, 'B'),
     VALUE(lstub_via, pin_side, 'i'), VALUE(lstub_via, pin_length, 'd'),
     ARRAY(lstub_via, return_xy, return_count, 'P'), VALUE(lstub_via, outside_dk, 'd'),
-    VALUE(lstub_via, lid_distance, 'd'), VALUE(lstub_via, hole_dk, 'd'),
+    VALUE(lstub_via, lid_distance, 'd'), VALUE(lstub_via, hole_dk, 'd'), ARRAY(lstub_via, return_spans, return_count, 'S'),
+    ARRAY(lstub_via, partner_backdrills, partner_backdrill_count, 'B'), VALUE(lstub_via, partner_own, 'i'),
+    VALUE(lstub_via, edge_kind, 'i'), VALUE(lstub_via, edges, 'E'),
 };
 static const core_member signal[] = {
     VALUE(lstub_signal, symbol_rate, 'd'), VALUE(lstub_signal, levels, 'i'),
@@ -53,6 +56,30 @@ static const core_member options[] = {
 static const core_member job[] = {
     NESTED(lstub_job, via, 'r', SHAPE_VIA), NESTED(lstub_job, signal, 'r', SHAPE_SIGNAL),
     NESTED(lstub_job, criteria, 'r', SHAPE_CRITERIA),
+};
+static const core_member trace[] = {
+    VALUE(lstub_trace, kind, 'i'), VALUE(lstub_trace, no_dispersion, 'i'), VALUE(lstub_trace, width, 'd'),
+    VALUE(lstub_trace, thickness, 'd'), VALUE(lstub_trace, height_below, 'd'), VALUE(lstub_trace, height_above, 'd'),
+    NESTED(lstub_trace, dielectric_below, 'r', SHAPE_DIELECTRIC), NESTED(lstub_trace, dielectric_above, 'r', SHAPE_DIELECTRIC),
+    NESTED(lstub_trace, conductor, 'r', SHAPE_CONDUCTOR),
+};
+static const core_member port[] = {
+    VALUE(lstub_port, kind, 'i'), VALUE(lstub_port, layer, 'i'), NESTED(lstub_port, trace, 'r', SHAPE_TRACE),
+    VALUE(lstub_port, impedance, 'd'), VALUE(lstub_port, dk, 'd'), VALUE(lstub_port, loss_tangent, 'd'),
+    VALUE(lstub_port, width, 'd'), VALUE(lstub_port, distance, 'd'), VALUE(lstub_port, z_ref, 'd'),
+};
+static const core_member transition[] = {
+    VALUE(lstub_transition_options, stubs, 'i'), VALUE(lstub_transition_options, annuli, 'i'),
+    VALUE(lstub_transition_options, metal, 'i'),
+};
+static const core_member search[] = {
+    VALUE(lstub_search, window, 'd'), VALUE(lstub_search, f_low, 'd'), VALUE(lstub_search, f_high, 'd'),
+    VALUE(lstub_search, depth_least, 'd'),
+};
+static const core_member loss_fit[] = {
+    VALUE(lstub_loss_fit, f_low, 'd'), VALUE(lstub_loss_fit, f_high, 'd'), VALUE(lstub_loss_fit, constant, 'i'),
+    VALUE(lstub_loss_fit, weighted, 'i'), VALUE(lstub_loss_fit, symbol_rate, 'd'),
+    VALUE(lstub_loss_fit, transition_time, 'd'), VALUE(lstub_loss_fit, receiver_bandwidth, 'd'),
 };
 static const core_member interval[] = {
     VALUE(lstub_interval, thickness, 'd'), VALUE(lstub_interval, tol_plus, 'd'), VALUE(lstub_interval, tol_minus, 'd'),
@@ -128,16 +155,38 @@ static const core_member notice[] = {
     VALUE(lstub_notice, message, 's'),
 };
 
+static const core_member measured[] = {
+    VALUE(lstub_measured_notch, quality, 'i'), VALUE(lstub_measured_notch, f, 'd'), VALUE(lstub_measured_notch, f_sigma, 'd'),
+    VALUE(lstub_measured_notch, depth_db, 'd'), VALUE(lstub_measured_notch, level_db, 'd'),
+    VALUE(lstub_measured_notch, f_minimum, 'd'), VALUE(lstub_measured_notch, width, 'd'), VALUE(lstub_measured_notch, q, 'd'),
+    VALUE(lstub_measured_notch, impedance, 'd'), VALUE(lstub_measured_notch, score, 'd'),
+    VALUE(lstub_measured_notch, window, 'd'),
+};
+static const core_member fit[] = {
+    VALUE(lstub_fit, describes, 'i'), VALUE(lstub_fit, dof, 'i'), VALUE(lstub_fit, ratio, 'd'), VALUE(lstub_fit, ratio_sigma, 'd'),
+    VALUE(lstub_fit, ratio_low, 'd'), VALUE(lstub_fit, ratio_high, 'd'), VALUE(lstub_fit, offset, 'd'),
+    VALUE(lstub_fit, offset_sigma, 'd'), VALUE(lstub_fit, offset_low, 'd'), VALUE(lstub_fit, offset_high, 'd'),
+    VALUE(lstub_fit, chi2, 'd'),
+};
+static const core_member deviation[] = {
+    VALUE(lstub_loss_deviation, a0, 'd'), VALUE(lstub_loss_deviation, a1, 'd'), VALUE(lstub_loss_deviation, a2, 'd'),
+    VALUE(lstub_loss_deviation, a4, 'd'), VALUE(lstub_loss_deviation, rms, 'd'), VALUE(lstub_loss_deviation, greatest, 'd'),
+    VALUE(lstub_loss_deviation, fom, 'd'), VALUE(lstub_loss_deviation, points, 'l'),
+};
+
 #define SHAPE(n, s) { #n, sizeof(s), sizeof n / sizeof n[0], n }
 
 static const core_shape shapes[SHAPE_COUNT] = {
     SHAPE(dielectric, lstub_dielectric), SHAPE(conductor, lstub_conductor), SHAPE(layer, lstub_layer),
     SHAPE(via, lstub_via), SHAPE(signal, lstub_signal), SHAPE(criteria, lstub_criteria),
     SHAPE(capability, lstub_capability), SHAPE(options, lstub_model_options), SHAPE(job, lstub_job),
+    SHAPE(trace, lstub_trace), SHAPE(port, lstub_port), SHAPE(transition, lstub_transition_options), SHAPE(search, lstub_search),
+    SHAPE(loss_fit, lstub_loss_fit),
     SHAPE(interval, lstub_interval), SHAPE(stub, lstub_stub), SHAPE(line, lstub_stub_line), SHAPE(notch, lstub_notch),
     SHAPE(margin, lstub_margin), SHAPE(limit, lstub_stub_limit), SHAPE(cut, lstub_drill_cut),
     SHAPE(decision, lstub_decision), SHAPE(group, lstub_drill_group), SHAPE(summary, lstub_plan_summary),
-    SHAPE(hole, lstub_hole), SHAPE(notice, lstub_notice),
+    SHAPE(hole, lstub_hole), SHAPE(notice, lstub_notice), SHAPE(measured, lstub_measured_notch), SHAPE(fit, lstub_fit),
+    SHAPE(deviation, lstub_loss_deviation),
 };
 
 const core_shape *core_shape_of(int shape) { return &shapes[shape]; }
@@ -157,7 +206,7 @@ static size_t count_at(const char *base, const core_member *member)
 {
     size_t count;
     int32_t points;
-    if (member->type == 'P') {
+    if (member->type == 'P' || member->type == 'S') {
         memcpy(&points, base + member->count_offset, sizeof points);
         return points > 0 ? (size_t)points : 0;
     }
@@ -171,6 +220,7 @@ static PyObject *unpack_item(char type, const void *array, size_t i)
     case 'D': return PyFloat_FromDouble(((const double *)array)[i]);
     case 'P': return Py_BuildValue("(dd)", ((const double *)array)[2 * i], ((const double *)array)[2 * i + 1]);
     case 'I': return PyLong_FromLong(((const int32_t *)array)[i]);
+    case 'S': return Py_BuildValue("(ii)", (int)((const int32_t *)array)[2 * i], (int)((const int32_t *)array)[2 * i + 1]);
     case 'L': {
         const lstub_on_layer *item = (const lstub_on_layer *)array + i;
         return Py_BuildValue("(id)", (int)item->layer, item->value);
@@ -197,7 +247,7 @@ static PyObject *unpack_array(char type, const void *array, size_t count)
 static PyObject *unpack_member(const core_member *member, const char *base)
 {
     const void *at = base + member->offset, *pointer = NULL;
-    double number;
+    double number, four[4];
     int32_t small;
     int64_t large;
     switch (member->type) {
@@ -212,6 +262,9 @@ static PyObject *unpack_member(const core_member *member, const char *base)
         return PyLong_FromLongLong(large);
     case 'n':
         return core_unpack(member->shape, at);
+    case 'E':
+        memcpy(four, at, sizeof four);
+        return Py_BuildValue("(dddd)", four[0], four[1], four[2], four[3]);
     default:
         memcpy(&pointer, at, sizeof pointer);
     }

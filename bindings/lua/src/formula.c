@@ -1,4 +1,4 @@
-/* The closed forms, from one table, and the permittivity of a dielectric. */
+/* The closed forms, from one table. */
 #include "lslua.h"
 
 #include <string.h>
@@ -30,6 +30,9 @@ ONE_RESULT(twin_rod, in[0], in[1], in[2], out, out + 1, err)
 ONE_RESULT(plate_capacitance, in[0], in[1], in[2], in[3], in[4], out, err)
 ONE_RESULT(handbook_capacitance, in[0], in[1], in[2], in[3], out, err)
 ONE_RESULT(handbook_inductance, in[0], in[1], out, err)
+ONE_RESULT(skin_depth, in[0], in[1], out, err)
+ONE_RESULT(fit_effective_dk, in[0], in[1], in[2], in[3], (int32_t)in[4], out, out + 1, err)
+ONE_RESULT(fit_length, in[0], in[1], in[2], in[3], (int32_t)in[4], out, out + 1, err)
 
 static const formula formulas[] = {
     {"quarter_wave_frequency", call_quarter_wave_frequency, 1, {"length", "dk", "n"}, "n"},
@@ -47,6 +50,9 @@ static const formula formulas[] = {
      {"drill", "antipad", "spacing", "dk_through_plane", "dk_in_plane"}, NULL},
     {"handbook_capacitance", call_handbook_capacitance, 1, {"thickness", "pad", "antipad", "dk"}, NULL},
     {"handbook_inductance", call_handbook_inductance, 1, {"length", "diameter"}, NULL},
+    {"skin_depth", call_skin_depth, 1, {"conductivity", "f"}, NULL},
+    {"fit_effective_dk", call_fit_effective_dk, 2, {"f", "f_sigma", "length", "length_sigma", "n"}, "n"},
+    {"fit_length", call_fit_length, 2, {"f", "f_sigma", "dk", "dk_sigma", "n"}, "n"},
 };
 
 static void read_table(lua_State *L, const formula *f, double *in)
@@ -100,47 +106,6 @@ static int formula_call(lua_State *L)
     return lslua_done(L, f->results, status, &err);
 }
 
-static const char *const dielectric_keys[] = {"dk", "in_plane_ratio", "loss_tangent", "f_ref", NULL};
-
-/* dielectric_permittivity(dielectric, freq): two complex arrays, or four numbers for one frequency. */
-static int dielectric_permittivity(lua_State *L)
-{
-    lslua_at at = lslua_options(L, 1, dielectric_keys), list = {0};
-    lstub_dielectric dielectric;
-    double one, z[4], *through = z, *in_plane = z + 2;
-    const double *freq = &one;
-    size_t n = 1;
-    lstub_error err;
-    int32_t status;
-    int scalar = lua_type(L, 2) == LUA_TNUMBER;
-    LSTUB_INIT(err);
-    LSTUB_INIT(dielectric);
-    lslua_most(L, 2);
-    lslua_need(&at, "dk", lslua_number(&at, "dk", &dielectric.dk));
-    lslua_number(&at, "in_plane_ratio", &dielectric.in_plane_ratio);
-    lslua_number(&at, "loss_tangent", &dielectric.loss_tangent);
-    lslua_number(&at, "f_ref", &dielectric.f_ref);
-    list.L = L;
-    list.arg = 2;
-    if (scalar)
-        one = (double)lua_tonumber(L, 2);
-    else {
-        freq = lslua_numbers(L, &list, NULL, 2, &n);
-        through = lslua_push_array(L, LSLUA_COMPLEX, n);
-        in_plane = lslua_push_array(L, LSLUA_COMPLEX, n);
-    }
-    status = lstub_dielectric_permittivity(&dielectric, freq, n, through, in_plane, &err);
-    if (status < 0)
-        return lslua_fail(L, status, &err);
-    if (!scalar)
-        return lslua_done(L, 2, status, &err);
-    lua_pushnumber(L, z[0]);
-    lua_pushnumber(L, z[1]);
-    lua_pushnumber(L, z[2]);
-    lua_pushnumber(L, z[3]);
-    return lslua_done(L, 4, status, &err);
-}
-
 void lslua_open_formulas(lua_State *L)
 {
     size_t i;
@@ -149,6 +114,4 @@ void lslua_open_formulas(lua_State *L)
         lua_pushcclosure(L, formula_call, 1);
         lua_setfield(L, -2, formulas[i].name);
     }
-    lua_pushcfunction(L, dielectric_permittivity);
-    lua_setfield(L, -2, "dielectric_permittivity");
 }

@@ -22,6 +22,8 @@
 #define LSLUA_STACKUP "libstub.stackup"
 #define LSLUA_VIA     "libstub.via"
 #define LSLUA_MODEL   "libstub.model"
+#define LSLUA_TRANSITION "libstub.transition"
+#define LSLUA_TOUCHSTONE "libstub.touchstone"
 #define LSLUA_PLAN    "libstub.plan"
 #define LSLUA_RULES   "libstub.rules"
 #define LSLUA_BOARD   "libstub.board"
@@ -38,6 +40,11 @@ int32_t lslua_refuse(lstub_error *err, int32_t status, const char *format, ...);
 int32_t *lslua_new_status(lua_State *L, size_t count);
 /* Whether a batch did not answer any item. Raises where memory was lacking. */
 int lslua_batch_failed(lua_State *L, int32_t status, const int32_t *each, size_t count);
+/*
+** The `results` on top of the stack of a call that answers item by item; where not all is well, message, code and the
+** list of statuses behind them; nil, message, code where no item came out.
+*/
+int lslua_items(lua_State *L, int results, int32_t status, const int32_t *each, size_t count, const lstub_error *err);
 /* Checks that no argument stands beyond number `most`. */
 void lslua_most(lua_State *L, int most);
 
@@ -82,6 +89,7 @@ typedef struct lslua_at {       /* where a table stands among the arguments: "jo
     int         table;          /* stack index, absolute                                               */
     const char *list;           /* the list it is an item of, or null                                  */
     lua_Integer item;
+    const char *within;         /* the member that holds the member below, or null                     */
     const char *member;         /* the member it is, or null                                           */
 } lslua_at;
 
@@ -103,6 +111,8 @@ int lslua_field(const lslua_at *at, const char *key);
 int lslua_number(const lslua_at *at, const char *key, double *value);
 int lslua_integer(const lslua_at *at, const char *key, int32_t *value);
 int lslua_boolean(const lslua_at *at, const char *key, int32_t *value);
+/* A port counted from 1, as one from 0; beyond `ports`: err is filled. */
+int lslua_port(const lslua_at *at, const char *key, int32_t ports, int32_t *port, lstub_error *err);
 int lslua_word_field(const lslua_at *at, const char *key, const lslua_word *words, int32_t *value);
 void lslua_need(const lslua_at *at, const char *key, int found);
 /* Pushes the field, which must be a table, and gives its place. */
@@ -121,20 +131,80 @@ int lslua_item(lua_State *L, int arg, const char *what, int64_t count, int64_t *
 
 void lslua_open_array(lua_State *L);
 int lslua_array_new(lua_State *L);       /* ls.array     */
+int lslua_complex_new(lua_State *L);     /* ls.complex   */
 int lslua_linspace(lua_State *L);        /* ls.linspace  */
-double *lslua_push_array(lua_State *L, const char *type, size_t count);
+/* Pushed, zeroed. ports: 1, a list, or that of matrices. */
+double *lslua_push_array(lua_State *L, size_t count);
+double *lslua_push_complex(lua_State *L, size_t count, int32_t ports);
 /* Numbers in an array or a table; those of a table are copied to scratch, which is left on the stack. */
 const double *lslua_numbers(lua_State *L, const lslua_at *at, const char *key, int index, size_t *count);
+/* The complex array at `index`; raises where it is none. */
+const double *lslua_complex(lua_State *L, const lslua_at *at, const char *key, int index, size_t *count, int32_t *ports);
 void lslua_push_status(lua_State *L, const int32_t *status, size_t count);
 
-/* ---- formulas and material (formula.c) ---- */
+/* ---- formulas (formula.c) ---- */
 
 void lslua_open_formulas(lua_State *L);  /* into the table on top */
+
+/* ---- dielectrics, conductors and traces (material.c) ---- */
+
+extern const lslua_word lslua_roughness_laws[];      /* hammerstad, spheres */
+/* Whether any of its members was there. */
+int lslua_read_conductor(const lslua_at *at, lstub_conductor *conductor);
+
+typedef struct lslua_trace {    /* and what it points to                                               */
+    lstub_trace      trace;
+    lstub_dielectric below, above;
+    lstub_conductor  conductor;
+} lslua_trace;
+
+void lslua_read_trace(const lslua_at *at, lslua_trace *trace);
+int lslua_dielectric_permittivity(lua_State *L);
+int lslua_conductor_surface_impedance(lua_State *L);
+int lslua_trace_line(lua_State *L);
+
+/* ---- networks (network.c), over time (response.c) ---- */
+
+typedef struct lslua_network {  /* an argument: n matrices of p ports                                  */
+    const double *s;
+    size_t  n;
+    int32_t p;
+} lslua_network;
+
+lslua_network lslua_check_network(lua_State *L, int arg);
+/* The list of numbers at argument `arg`, which are to be `count`; pushes scratch for those of a table. */
+const double *lslua_column(lua_State *L, int arg, const char *what, size_t count);
+extern const luaL_Reg lslua_networks[];
+extern const luaL_Reg lslua_responses[];
+
+/* ---- touchstone.c and touchstone_data.c ---- */
+
+void lslua_open_touchstone(lua_State *L);
+extern const luaL_Reg lslua_touchstones[];
+/* Pushes the data of the file at stack index `file`, copied; the number of results. */
+int lslua_push_touchstone_data(lua_State *L, int file);
+/* The data in the table at argument `arg`; pushes what they point to. */
+void lslua_read_touchstone_data(lua_State *L, int arg, lstub_touchstone_data *data);
+
+/* ---- measure.c ---- */
+
+/* Pushes the list of the words whose bits are in the sum. */
+void lslua_push_flags(lua_State *L, const lslua_word *words, int32_t sum);
+extern const luaL_Reg lslua_measures[];
+
+/* ---- transition.c ---- */
+
+void lslua_open_transition(lua_State *L);
+int lslua_transition_new(lua_State *L);
+int lslua_remark_text(lua_State *L);
 
 /* ---- stackup.c ---- */
 
 void lslua_open_stackup(lua_State *L);
 int lslua_stackup_new(lua_State *L);
+/* A stackup without a handle yet; when it has one and is on top, its names are to be listed. */
+lslua_object *lslua_push_stackup(lua_State *L, lstub_allocator *allocator);
+void lslua_fill_names(lua_State *L);
 const lstub_stackup *lslua_stackup(lua_State *L, int index, int arg);
 /* A stackup that belongs to the object at `owner`; pushed. */
 void lslua_push_borrowed_stackup(lua_State *L, const lstub_stackup *stackup, int owner);
@@ -174,6 +244,7 @@ void lslua_model_options(const lslua_at *at, lstub_model_options *options);
 /* Options of the model at argument `arg`, which may be none. */
 void lslua_model_argument(lua_State *L, int arg, lstub_model_options *options);
 int lslua_first_notch_batch(lua_State *L);
+void lslua_push_notches(lua_State *L, const lstub_notch *notches, size_t count);
 
 /* ---- criteria.c ---- */
 

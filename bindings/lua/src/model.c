@@ -149,7 +149,7 @@ static int many_frequencies(lua_State *L, over_frequency *call, int width, int32
     at.arg = 2;
     freq = lslua_numbers(L, &at, NULL, 2, &n);
     each = lslua_scratch(L, n, sizeof *each);
-    out = lslua_push_array(L, width == 2 ? LSLUA_COMPLEX : LSLUA_ARRAY, n);
+    out = width == 2 ? lslua_push_complex(L, n, 1) : lslua_push_array(L, n);
     status = call(check_model(L), stub, freq, n, out, each, &err);
     if (status < 0)
         return lslua_fail(L, status, &err);
@@ -230,13 +230,14 @@ static int model_line(lua_State *L)
     return lslua_done(L, 1, status, &err);
 }
 
-static void push_notches(lua_State *L, const lstub_notch *notches, size_t count)
+void lslua_push_notches(lua_State *L, const lstub_notch *notches, size_t count)
 {
     size_t i;
     lua_createtable(L, (int)count, 0);
     for (i = 0; i < count; i++) {
         lua_createtable(L, 0, 6);
-        lslua_set_integer(L, "stub", (int64_t)notches[i].stub + 1);
+        if (notches[i].stub >= 0)
+            lslua_set_integer(L, "stub", (int64_t)notches[i].stub + 1);
         lslua_set_number(L, "f", notches[i].f);
         lslua_set_number(L, "f_series", notches[i].f_series);
         lslua_set_number(L, "depth_db", notches[i].depth_db);
@@ -274,7 +275,7 @@ static int model_notches(lua_State *L)
     }
     if (status < 0)
         return lslua_fail(L, status, &err);
-    push_notches(L, notches, count);
+    lslua_push_notches(L, notches, count);
     return lslua_done(L, 1, status, &err);
 }
 
@@ -296,11 +297,11 @@ int lslua_first_notch_batch(lua_State *L)
     each = lslua_new_status(L, n);
     lua_createtable(L, 0, 4);
     columns = lua_gettop(L);
-    f1 = lslua_push_array(L, LSLUA_ARRAY, n);
+    f1 = lslua_push_array(L, n);
     lua_setfield(L, columns, "f1");
-    dk = lslua_push_array(L, LSLUA_ARRAY, n);
+    dk = lslua_push_array(L, n);
     lua_setfield(L, columns, "dk_effective");
-    length = lslua_push_array(L, LSLUA_ARRAY, n);
+    length = lslua_push_array(L, n);
     lua_setfield(L, columns, "length");
     status = lstub_first_notch_batch(lslua_stackup(L, 1, 1), vias, n, sizeof *vias, &options, f1, dk, length, each, &err);
     if (lslua_batch_failed(L, status, each, n))

@@ -51,7 +51,10 @@ static int gbd(lua_State *L) { return scaled(L, 1e9); }
 static const luaL_Reg functions[] = {
     {"version", version}, {"abi", abi}, {"model_revision", model_revision}, {"status_name", status_name},
     {"mil", mil}, {"mm", mm}, {"um", um}, {"inch", inch}, {"ghz", ghz}, {"gbd", gbd},
-    {"array", lslua_array_new}, {"linspace", lslua_linspace},
+    {"array", lslua_array_new}, {"complex", lslua_complex_new}, {"linspace", lslua_linspace},
+    {"dielectric_permittivity", lslua_dielectric_permittivity}, {"trace_line", lslua_trace_line},
+    {"conductor_surface_impedance", lslua_conductor_surface_impedance}, {"transition", lslua_transition_new},
+    {"remark_text", lslua_remark_text},
     {"stackup", lslua_stackup_new}, {"via", lslua_via_new}, {"first_notch_batch", lslua_first_notch_batch},
     {"signal_nyquist", lslua_signal_nyquist}, {"signal_bit_rate", lslua_signal_bit_rate},
     {"longest_stub", lslua_longest_stub}, {"longest_stub_batch", lslua_longest_stub_batch},
@@ -88,10 +91,16 @@ int luaopen_libstub(lua_State *L)
     lslua_open_stackup(L);
     lslua_open_via(L);
     lslua_open_model(L);
+    lslua_open_transition(L);
+    lslua_open_touchstone(L);
     lslua_open_plan(L);
     lslua_open_rules(L);
     lslua_open_board(L);
     luaL_newlib(L, functions);
+    luaL_setfuncs(L, lslua_networks, 0);
+    luaL_setfuncs(L, lslua_responses, 0);
+    luaL_setfuncs(L, lslua_touchstones, 0);
+    luaL_setfuncs(L, lslua_measures, 0);
     lslua_open_formulas(L);
     for (i = 0; statuses[i].word != NULL; i++) {
         lua_pushinteger(L, statuses[i].value);

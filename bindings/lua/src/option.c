@@ -10,9 +10,14 @@ int lslua_complain(const lslua_at *at, const char *key, const char *format, ...)
     const char *dot = "";
     int parts = 1;
     va_list args;
-    luaL_checkstack(L, 6, NULL);
+    luaL_checkstack(L, 7, NULL);
     if (at->list != NULL) {
         lua_pushfstring(L, "%s[%I]", at->list, (LUAI_UACINT)at->item);
+        dot = ".";
+        parts++;
+    }
+    if (at->within != NULL) {
+        lua_pushfstring(L, "%s%s", dot, at->within);
         dot = ".";
         parts++;
     }
@@ -136,6 +141,17 @@ int lslua_integer(const lslua_at *at, const char *key, int32_t *value)
     return found;
 }
 
+int lslua_port(const lslua_at *at, const char *key, int32_t ports, int32_t *port, lstub_error *err)
+{
+    int32_t n = 0;
+    int found = lslua_integer(at, key, &n);
+    if (found && (n < 1 || n > ports))
+        lslua_refuse(err, LSTUB_E_ARGUMENT, "%s = %ld: must be 1 to %ld", key, (long)n, (long)ports);
+    else if (found)
+        *port = n - 1;
+    return found;
+}
+
 int lslua_boolean(const lslua_at *at, const char *key, int32_t *value)
 {
     int found = lslua_field(at, key);
@@ -191,6 +207,7 @@ int lslua_table(const lslua_at *at, const char *key, lslua_at *inner)
         lslua_wrong_type(at, key, "table", -1);
     *inner = *at;
     inner->table = lua_gettop(at->L);
+    inner->within = at->member;
     inner->member = key;
     return 1;
 }

@@ -13,7 +13,10 @@
 /* C's constants in messages, as Lua writes them. */
 static const char *const translated[][2] = {
     {"side = 1:", "side = 'top':"}, {"side = 2:", "side = 'bottom':"}, {"LSTUB_PAIR_SHARED", "shared = true"},
-    {"return_xy", "returns.xy"},
+    {"return_xy", "returns.xy"}, {"return_spans", "returns.spans"}, {"partner_backdrills", "pair.backdrills"},
+    {"LSTUB_PORT_COAX", "'coax'"}, {"mode = 1:", "mode = 'odd':"}, {"mode = 2:", "mode = 'even':"},
+    {"LSTUB_NETWORK_G and _H", "'G' and 'H'"}, {"edges[0]", "edges.left"}, {"edges[1]", "edges.right"},
+    {"edges[2]", "edges.front"}, {"edges[3]", "edges.back"},
 };
 
 /* Whether the first `at` characters of text end with `tail`. */
@@ -24,13 +27,13 @@ static int ends_with(const char *text, size_t at, const char *tail)
 }
 
 /*
-** The library counts items and layers from 0, Lua from 1. Its messages write such numbers as "layer 7 'L5'",
-** "start_layer = 7 'R5'", "item 7" or "connects[7]"; these become "layer 8 'L5'" and so on, whatever stands between quotes stays. Messages about files
-** name lines, counted from 1 already.
+** The library counts items, layers and ports from 0, Lua from 1. Its messages write such numbers as "layer 7 'L5'",
+** "start_layer = 7 'R5'", "item 7", "connects[7]" or "s[7, 0, 1]"; these become "layer 8 'L5'" and so on, whatever stands
+** between quotes stays. Messages about files name lines, counted from 1 already.
 */
 static int is_counted(const char *text, size_t at, size_t digits)
 {
-    static const char *const before[] = {"layer ", "item ", "return via ", "["};
+    static const char *const before[] = {"layer ", "layer = ", "item ", "return via ", "port ", "pair ", "coupon ", "["};
     size_t i;
     for (i = 0; i < sizeof before / sizeof before[0]; i++)
         if (ends_with(text, at, before[i]))
@@ -55,7 +58,7 @@ static void push_message(lua_State *L, int32_t status, const lstub_error *err)
     const char *text = err->message;
     luaL_Buffer b;
     size_t i = 0;
-    int quoted = 0;
+    int quoted = 0, indices = 0;        /* within quotes, within [] */
     if (err->index == COUNTED || status == LSTUB_E_FORMAT || status == LSTUB_E_READ || status == LSTUB_E_WRITE) {
         lua_pushstring(L, text);
         return;
@@ -70,7 +73,7 @@ static void push_message(lua_State *L, int32_t status, const lstub_error *err)
             i += constant;
             continue;
         }
-        if (digits > 0 && digits < 10 && is_counted(text, i, digits)) {
+        if (digits > 0 && digits < 10 && (indices || is_counted(text, i, digits))) {
             char number[24];
             snprintf(number, sizeof number, "%ld", strtol(text + i, NULL, 10) + 1);
             luaL_addstring(&b, number);
@@ -79,6 +82,8 @@ static void push_message(lua_State *L, int32_t status, const lstub_error *err)
         }
         if (text[i] == '\'' && (quoted || i == 0 || text[i - 1] == ' '))
             quoted = !quoted;
+        if (!quoted && (text[i] == '[' || text[i] == ']'))
+            indices = text[i] == '[';
         luaL_addchar(&b, text[i]);
         i++;
     }
@@ -136,6 +141,24 @@ int lslua_batch_failed(lua_State *L, int32_t status, const int32_t *each, size_t
         if (each[i] == LSTUB_E_MEMORY)
             luaL_error(L, "not enough memory");
     return status < 0 && (count == 0 || each[0] == INT_MIN);
+}
+
+int lslua_items(lua_State *L, int results, int32_t status, const int32_t *each, size_t count, const lstub_error *err)
+{
+    size_t i;
+    int any = 0;
+    for (i = 0; i < count; i++) {
+        any |= each[i] >= 0;
+        if (each[i] == LSTUB_E_MEMORY)
+            status = LSTUB_E_MEMORY;
+    }
+    if (status == LSTUB_E_MEMORY || (status < 0 && !any))
+        return lslua_fail(L, status, err);
+    if (status == LSTUB_OK)
+        return results;
+    lslua_done(L, results, status, err);
+    lslua_push_status(L, each, count);
+    return results + 3;
 }
 
 void lslua_most(lua_State *L, int most)

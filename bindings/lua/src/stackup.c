@@ -18,7 +18,7 @@ const lslua_word lslua_all_sides[] = {
 
 static const char *const layer_keys[] = {
     "name", "kind", "thickness", "tol_plus", "tol_minus", "dk", "in_plane_ratio", "loss_tangent", "f_ref",
-    "conductivity", "roughness", NULL
+    "conductivity", "roughness", "roughness_law", NULL
 };
 
 const lstub_stackup *lslua_stackup(lua_State *L, int index, int arg)
@@ -38,7 +38,6 @@ static void read_layer(const lslua_at *at, lstub_layer *layer, lstub_dielectric 
     int resin, metal;
     LSTUB_INIT(*layer);
     LSTUB_INIT(*dielectric);
-    LSTUB_INIT(*conductor);
     lslua_check_keys(at, layer_keys);
     lslua_need(at, "name", lslua_field(at, "name"));
     layer->name = lslua_text(at, "name", -1);    /* stays alive in its table */
@@ -54,13 +53,12 @@ static void read_layer(const lslua_at *at, lstub_layer *layer, lstub_dielectric 
          | lslua_number(at, "loss_tangent", &dielectric->loss_tangent)
          | lslua_number(at, "f_ref", &dielectric->f_ref)) != 0)
         lslua_need(at, "dk", resin);
-    metal = lslua_number(at, "conductivity", &conductor->conductivity)
-            | lslua_number(at, "roughness", &conductor->roughness);
+    metal = lslua_read_conductor(at, conductor);
     layer->dielectric = resin ? dielectric : NULL;
     layer->conductor = metal ? conductor : NULL;
 }
 
-static lslua_object *new_stackup(lua_State *L, lstub_allocator *allocator)
+lslua_object *lslua_push_stackup(lua_State *L, lstub_allocator *allocator)
 {
     lslua_object *object = lslua_new(L, LSLUA_STACKUP, 2, allocator);
     lua_newtable(L);
@@ -68,8 +66,7 @@ static lslua_object *new_stackup(lua_State *L, lstub_allocator *allocator)
     return object;
 }
 
-/* Lists the names of the stackup on top of the stack. */
-static void fill_names(lua_State *L)
+void lslua_fill_names(lua_State *L)
 {
     int32_t i, n = lstub_stackup_count(lslua_stackup(L, -1, 0));
     lua_getiuservalue(L, -1, 1);
@@ -114,12 +111,12 @@ int lslua_stackup_new(lua_State *L)
         read_layer(&at, &layers[i], &dielectrics[i], &conductors[i]);
         lua_pop(L, 1);
     }
-    object = new_stackup(L, &allocator);
+    object = lslua_push_stackup(L, &allocator);
     status = lstub_stackup_create(layers, count, sizeof *layers, &allocator, &made, &err);
     object->handle = made;
     if (status < 0)
         return lslua_fail(L, status, &err);
-    fill_names(L);
+    lslua_fill_names(L);
     lslua_charge(L, object);
     return lslua_done(L, 1, status, &err);
 }
@@ -129,12 +126,12 @@ void lslua_push_borrowed_stackup(lua_State *L, const lstub_stackup *stackup, int
     lstub_allocator unused;
     lslua_object *object;
     owner = lua_absindex(L, owner);
-    object = new_stackup(L, &unused);
+    object = lslua_push_stackup(L, &unused);
     object->handle = (void *)stackup;
     object->owner = lua_touserdata(L, owner);
     lua_pushvalue(L, owner);
     lua_setiuservalue(L, -2, 2);
-    fill_names(L);
+    lslua_fill_names(L);
 }
 
 /* ---- layers by name or number ---- */
@@ -196,7 +193,7 @@ static int stackup_copper_count(lua_State *L)
 
 static void push_layer(lua_State *L, const lstub_layer *layer)
 {
-    lua_createtable(L, 0, 11);
+    lua_createtable(L, 0, 12);
     lslua_set_string(L, "name", layer->name);
     lslua_set_string(L, "kind", lslua_word_of(kinds, layer->kind));
     lslua_set_number(L, "thickness", layer->thickness);
@@ -211,6 +208,7 @@ static void push_layer(lua_State *L, const lstub_layer *layer)
     if (layer->conductor != NULL) {
         lslua_set_number(L, "conductivity", layer->conductor->conductivity);
         lslua_set_number(L, "roughness", layer->conductor->roughness);
+        lslua_set_string(L, "roughness_law", lslua_word_of(lslua_roughness_laws, layer->conductor->roughness_law));
     }
 }
 
@@ -356,6 +354,30 @@ static int stackup_interval(lua_State *L)
     return lslua_done(L, 1, status, &err);
 }
 
+/* with_in_plane_ratio(ratio) */
+static int stackup_with_in_plane_ratio(lua_State *L)
+{
+    lstub_allocator allocator;
+    lstub_stackup *made = NULL;
+    lstub_error err;
+    lslua_object *object;
+    double ratio;
+    int32_t status;
+    LSTUB_INIT(err);
+    lslua_stackup(L, 1, 1);
+    lslua_most(L, 2);
+    luaL_checktype(L, 2, LUA_TNUMBER);
+    ratio = (double)lua_tonumber(L, 2);
+    object = lslua_push_stackup(L, &allocator);
+    status = lstub_stackup_with_in_plane_ratio(lslua_stackup(L, 1, 1), ratio, &allocator, &made, &err);
+    object->handle = made;
+    if (status < 0)
+        return lslua_fail(L, status, &err);
+    lslua_fill_names(L);
+    lslua_charge(L, object);
+    return lslua_done(L, 1, status, &err);
+}
+
 static void destroy(void *handle) { lstub_stackup_destroy(handle); }
 static int stackup_close(lua_State *L) { return lslua_close(L, LSLUA_STACKUP, destroy); }
 
@@ -384,7 +406,7 @@ void lslua_open_stackup(lua_State *L)
     static const luaL_Reg methods[] = {
         {"count", stackup_count}, {"copper_count", stackup_copper_count}, {"layer", stackup_layer},
         {"layers", stackup_layers}, {"find", stackup_find}, {"copper", stackup_copper}, {"depth", stackup_depth},
-        {"interval", stackup_interval}, {NULL, NULL}
+        {"interval", stackup_interval}, {"with_in_plane_ratio", stackup_with_in_plane_ratio}, {NULL, NULL}
     };
     lslua_type(L, LSLUA_STACKUP, methods, stackup_close, stackup_tostring, stackup_count);
 }

@@ -1,23 +1,11 @@
 /* libstub.via: a frozen description of a via on a stackup; it has no handle, and owns its arrays as user values. */
-#include "lslua.h"
+#include "via.h"
 
 #include <stdio.h>
 #include <string.h>
 
-enum { VALUE_STACKUP = 1, VALUE_PADS, VALUE_ANTIPADS, VALUE_CLEAR, VALUE_CONNECTS, VALUE_BACKDRILLS, VALUE_RETURNS,
-       VALUE_COUNT = 7 };
-
-static const char *const via_keys[] = {
-    "start_layer", "end_layer", "drill", "pad", "pad_start", "pad_inner", "pad_end", "antipad", "pads", "antipads",
-    "clear", "nonfunctional_pads", "connects", "returns", "pair", "backdrills", "pin", "outside_dk", "lid_distance",
-    "hole_dk", NULL
-};
-static const char *const return_keys[] = {"count", "distance", "drill", "wall", "xy", NULL};
-static const char *const pair_keys[] = {"pitch", "shared", NULL};
-static const char *const pin_keys[] = {"side", "length", NULL};
-static const char *const backdrill_keys[] = {"side", "depth", "diameter", NULL};
-
-static const lslua_word pad_words[] = {{"removed", LSTUB_PADS_REMOVED}, {"kept", LSTUB_PADS_KEPT}, {NULL, 0}};
+const lslua_word lslua_pad_words[] = {{"removed", LSTUB_PADS_REMOVED}, {"kept", LSTUB_PADS_KEPT}, {NULL, 0}};
+const char *const lslua_edge_sides[4] = {"left", "right", "front", "back"};
 
 lslua_via *lslua_check_via(lua_State *L, int index)
 {
@@ -34,7 +22,7 @@ static const lstub_stackup *push_stackup(lua_State *L, int index)
     return lslua_stackup(L, -1, 0);
 }
 
-static lslua_via *new_via(lua_State *L, int stackup)
+lslua_via *lslua_push_new_via(lua_State *L, int stackup)
 {
     lslua_via *v;
     stackup = lua_absindex(L, stackup);
@@ -47,271 +35,11 @@ static lslua_via *new_via(lua_State *L, int stackup)
     return v;
 }
 
-/* Scratch that belongs to the via at `via`. */
-static void *new_array(lua_State *L, int via, int value, size_t count, size_t size)
+void *lslua_via_array(lua_State *L, int via, int value, size_t count, size_t size)
 {
     void *array = lslua_scratch(L, count, size);
     lua_setiuservalue(L, via, value);
     return array;
-}
-
-/* ---- reading the options ---- */
-
-/* What is being read into what. */
-typedef struct reading {
-    lslua_at     at;
-    int          stackup, via;  /* stack indices */
-    lstub_via   *to;
-    lstub_error *err;
-} reading;
-
-static int32_t read_span_end(const reading *r, const char *key, int32_t *layer, int *found)
-{
-    int32_t status = LSTUB_OK;
-    *found = lslua_field(&r->at, key);
-    if (*found)
-        status = lslua_layer(&r->at, key, r->stackup, lua_gettop(r->at.L), layer, r->err);
-    lua_pop(r->at.L, 1);
-    return status;
-}
-
-/* One end given: the other is the outer copper on its side. */
-static int32_t read_span(const reading *r)
-{
-    lua_State *L = r->at.L;
-    int start = 0, end = 0;
-    int32_t status = read_span_end(r, "start_layer", &r->to->start_layer, &start);
-    if (status == LSTUB_OK)
-        status = read_span_end(r, "end_layer", &r->to->end_layer, &end);
-    if (status < 0 || start == end)
-        return status;
-    if (start) {
-        const lstub_stackup *stackup = lslua_stackup(L, r->stackup, 0);
-        return lstub_stackup_copper(stackup, lstub_stackup_copper_count(stackup) - 1, &r->to->end_layer, r->err);
-    }
-    return lstub_stackup_copper(lslua_stackup(L, r->stackup, 0), 0, &r->to->start_layer, r->err);
-}
-
-static void sort_by_layer(lstub_on_layer *list, size_t count)
-{
-    size_t i, j;
-    for (i = 1; i < count; i++) {
-        lstub_on_layer moving = list[i];
-        for (j = i; j > 0 && list[j - 1].layer > moving.layer; j--)
-            list[j] = list[j - 1];
-        list[j] = moving;
-    }
-}
-
-/* { LAYER = value, ... }, sorted so that the order of a table's keys does not matter. */
-static int32_t read_map(const reading *r, const char *key, int value, const lstub_on_layer **list, size_t *count)
-{
-    lua_State *L = r->at.L;
-    lslua_at map;
-    lstub_on_layer *to;
-    int32_t status = LSTUB_OK;
-    if (!lslua_table(&r->at, key, &map))
-        return LSTUB_OK;
-    for (*count = 0, lua_pushnil(L); lua_next(L, map.table); lua_pop(L, 1))
-        ++*count;
-    to = new_array(L, r->via, value, *count, sizeof *to);
-    *list = to;
-    lua_pushnil(L);
-    while (lua_next(L, map.table)) {
-        if (lua_type(L, -1) != LUA_TNUMBER)
-            lslua_wrong_type(&map, luaL_tolstring(L, -2, NULL), "number", -2);
-        to->value = (double)lua_tonumber(L, -1);
-        status = lslua_layer(&r->at, key, r->stackup, lua_gettop(L) - 1, &to->layer, r->err);
-        lua_pop(L, 1);
-        if (status < 0)
-            break;
-        to++;
-    }
-    lua_settop(L, map.table - 1);
-    sort_by_layer((lstub_on_layer *)*list, *count);
-    return status;
-}
-
-static int32_t read_connects(const reading *r)
-{
-    lua_State *L = r->at.L;
-    lslua_at list;
-    int32_t *to, status = LSTUB_OK;
-    size_t i, count;
-    lslua_need(&r->at, "connects", lslua_table(&r->at, "connects", &list));
-    count = (size_t)lua_rawlen(L, list.table);
-    to = new_array(L, r->via, VALUE_CONNECTS, count, sizeof *to);
-    r->to->connects = to;
-    r->to->connect_count = count;
-    list.list = "connects";
-    list.member = NULL;
-    for (i = 0; i < count && status == LSTUB_OK; i++) {
-        list.item = (lua_Integer)i + 1;
-        lua_rawgeti(L, list.table, list.item);
-        status = lslua_layer(&list, NULL, r->stackup, lua_gettop(L), &to[i], r->err);
-        lua_pop(L, 1);
-    }
-    lua_pop(L, 1);
-    return status;
-}
-
-static void read_backdrills(const reading *r)
-{
-    lua_State *L = r->at.L;
-    lslua_at list;
-    lstub_backdrill *to;
-    size_t i, count;
-    if (!lslua_table(&r->at, "backdrills", &list))
-        return;
-    count = (size_t)lua_rawlen(L, list.table);
-    to = new_array(L, r->via, VALUE_BACKDRILLS, count, sizeof *to);
-    r->to->backdrills = to;
-    r->to->backdrill_count = count;
-    for (i = 0; i < count; i++) {
-        lslua_at item = list;
-        item.list = "backdrills";
-        item.member = NULL;
-        item.item = (lua_Integer)i + 1;
-        if (lua_rawgeti(L, list.table, item.item) != LUA_TTABLE)
-            lslua_wrong_type(&item, NULL, "table", -1);
-        item.table = lua_gettop(L);
-        lslua_check_keys(&item, backdrill_keys);
-        lslua_need(&item, "side", lslua_word_field(&item, "side", lslua_sides, &to[i].side));
-        lslua_need(&item, "depth", lslua_number(&item, "depth", &to[i].depth));
-        lslua_need(&item, "diameter", lslua_number(&item, "diameter", &to[i].diameter));
-        lua_pop(L, 1);
-    }
-    lua_pop(L, 1);
-}
-
-/* { { x, y }, ... } on top of the stack, the places of the return vias. Pops it. */
-static void read_places(const reading *r, lslua_at list)
-{
-    lua_State *L = r->at.L;
-    size_t i, count = (size_t)lua_rawlen(L, list.table);
-    double *to = new_array(L, r->via, VALUE_RETURNS, count, 2 * sizeof *to);
-    r->to->return_xy = to;
-    r->to->return_count = (int32_t)count;
-    list.list = "returns.xy";
-    list.member = NULL;
-    for (i = 0; i < count; i++) {
-        int k, place;
-        list.item = (lua_Integer)i + 1;
-        if (lua_rawgeti(L, list.table, list.item) != LUA_TTABLE)
-            lslua_wrong_type(&list, NULL, "table", -1);
-        place = lua_gettop(L);
-        if (lua_rawlen(L, place) != 2)
-            lslua_complain(&list, NULL, "{ x, y } expected, got %d items", (int)lua_rawlen(L, place));
-        for (k = 0; k < 2; k++) {
-            if (lua_rawgeti(L, place, k + 1) != LUA_TNUMBER)
-                lslua_wrong_type(&list, k == 0 ? "x" : "y", "number", -1);
-            *to++ = (double)lua_tonumber(L, -1);
-        }
-        lua_settop(L, place - 1);
-    }
-    lua_pop(L, 1);
-}
-
-/* Raises where one of the null-ended keys stands beside `key`, which replaces them. */
-static void check_alone(const lslua_at *at, const char *key, const char *const *others)
-{
-    for (; *others != NULL; others++) {
-        if (lslua_field(at, *others))
-            lslua_complain(at, key, "not together with %s", *others);
-        lua_pop(at->L, 1);
-    }
-}
-
-static void read_returns(const reading *r)
-{
-    static const char *const beside_wall[] = {"count", "distance", "drill", "xy", NULL};
-    static const char *const beside_xy[] = {"count", "distance", NULL};
-    lslua_at at, list;
-    lstub_via *to = r->to;
-    if (!lslua_table(&r->at, "returns", &at))
-        return;
-    lslua_check_keys(&at, return_keys);
-    to->return_kind = LSTUB_RETURN_VIAS;
-    if (lslua_number(&at, "wall", &to->return_distance)) {
-        check_alone(&at, "wall", beside_wall);
-        to->return_kind = LSTUB_RETURN_WALL;
-    } else if (lslua_table(&at, "xy", &list)) {
-        check_alone(&at, "xy", beside_xy);
-        read_places(r, list);
-    } else {
-        lslua_need(&at, "count", lslua_integer(&at, "count", &to->return_count));
-        lslua_need(&at, "distance", lslua_number(&at, "distance", &to->return_distance));
-    }
-    lslua_number(&at, "drill", &to->return_drill);
-    lua_pop(at.L, 1);
-}
-
-static void read_pair_and_pin(const reading *r)
-{
-    lslua_at at;
-    int32_t shared = 0;
-    if (lslua_table(&r->at, "pair", &at)) {
-        lslua_check_keys(&at, pair_keys);
-        lslua_need(&at, "pitch", lslua_number(&at, "pitch", &r->to->pair_pitch));
-        lslua_boolean(&at, "shared", &shared);
-        r->to->pair_kind = shared ? LSTUB_PAIR_SHARED : LSTUB_PAIR_SEPARATE;
-        lua_pop(at.L, 1);
-    }
-    if (lslua_table(&r->at, "pin", &at)) {
-        lslua_check_keys(&at, pin_keys);
-        lslua_need(&at, "side", lslua_word_field(&at, "side", lslua_sides, &r->to->pin_side));
-        lslua_need(&at, "length", lslua_number(&at, "length", &r->to->pin_length));
-        lua_pop(at.L, 1);
-    }
-}
-
-static int32_t read_via(const reading *r)
-{
-    lstub_via *to = r->to;
-    int32_t status;
-    double pad = 0.0;
-    lslua_need(&r->at, "drill", lslua_number(&r->at, "drill", &to->drill));
-    lslua_number(&r->at, "pad", &pad);
-    to->pad_start = to->pad_inner = to->pad_end = pad;
-    lslua_number(&r->at, "pad_start", &to->pad_start);
-    lslua_number(&r->at, "pad_inner", &to->pad_inner);
-    lslua_number(&r->at, "pad_end", &to->pad_end);
-    lslua_number(&r->at, "antipad", &to->antipad);
-    lslua_number(&r->at, "outside_dk", &to->outside_dk);
-    lslua_number(&r->at, "lid_distance", &to->lid_distance);
-    lslua_number(&r->at, "hole_dk", &to->hole_dk);
-    lslua_word_field(&r->at, "nonfunctional_pads", pad_words, &to->nonfunctional_pads);
-    read_returns(r);
-    read_pair_and_pin(r);
-    read_backdrills(r);
-    if ((status = read_span(r)) < 0
-        || (status = read_map(r, "pads", VALUE_PADS, &to->pads, &to->pad_count)) < 0
-        || (status = read_map(r, "antipads", VALUE_ANTIPADS, &to->antipads, &to->antipad_count)) < 0
-        || (status = read_map(r, "clear", VALUE_CLEAR, &to->clear, &to->clear_count)) < 0)
-        return status;
-    return read_connects(r);
-}
-
-int lslua_via_new(lua_State *L)
-{
-    reading r;
-    lstub_error err;
-    int32_t status;
-    LSTUB_INIT(err);
-    lslua_stackup(L, 1, 1);
-    r.at = lslua_options(L, 2, via_keys);
-    lslua_most(L, 2);
-    r.to = &new_via(L, 1)->via;
-    r.stackup = 1;
-    r.via = lua_gettop(L);
-    r.err = &err;
-    status = read_via(&r);
-    if (status == LSTUB_OK)
-        status = lstub_via_check(lslua_stackup(L, 1, 1), r.to, &err);
-    if (status < 0)
-        return lslua_fail(L, status, &err);
-    lua_settop(L, r.via);
-    return lslua_done(L, 1, status, &err);
 }
 
 static const void *copy_array(lua_State *L, int via, int value, const void *from, size_t count, size_t size)
@@ -319,14 +47,14 @@ static const void *copy_array(lua_State *L, int via, int value, const void *from
     void *to;
     if (count == 0 || from == NULL)
         return NULL;
-    to = new_array(L, via, value, count, size);
+    to = lslua_via_array(L, via, value, count, size);
     memcpy(to, from, count * size);
     return to;
 }
 
 void lslua_push_via(lua_State *L, const lstub_via *via, int stackup)
 {
-    lslua_via *v = new_via(L, stackup);
+    lslua_via *v = lslua_push_new_via(L, stackup);
     lstub_via *to = &v->via;
     int index = lua_gettop(L);
     *to = *via;
@@ -336,6 +64,9 @@ void lslua_push_via(lua_State *L, const lstub_via *via, int stackup)
     to->connects = copy_array(L, index, VALUE_CONNECTS, via->connects, via->connect_count, sizeof *via->connects);
     to->backdrills = copy_array(L, index, VALUE_BACKDRILLS, via->backdrills, via->backdrill_count, sizeof *via->backdrills);
     to->return_xy = copy_array(L, index, VALUE_RETURNS, via->return_xy, (size_t)via->return_count, 2 * sizeof *via->return_xy);
+    to->return_spans = copy_array(L, index, VALUE_SPANS, via->return_spans, (size_t)via->return_count, 2 * sizeof *via->return_spans);
+    to->partner_backdrills = copy_array(L, index, VALUE_PARTNER, via->partner_backdrills, via->partner_backdrill_count,
+                                        sizeof *via->partner_backdrills);
 }
 
 lstub_via *lslua_vias(lua_State *L, int arg, int stackup, size_t *count)
@@ -502,7 +233,34 @@ static void set_places(lua_State *L, const double *xy, int32_t count)
     lua_setfield(L, -2, "xy");
 }
 
-static void set_returns(lua_State *L, const lstub_via *via)
+static void set_spans(lua_State *L, const int32_t *spans, int32_t count, int names)
+{
+    int32_t i, k;
+    lua_createtable(L, count, 0);
+    for (i = 0; i < count; i++) {
+        lua_createtable(L, 2, 0);
+        for (k = 0; k < 2; k++) {
+            lua_rawgeti(L, names, (lua_Integer)spans[2 * i + k] + 1);
+            lua_rawseti(L, -2, k + 1);
+        }
+        lua_rawseti(L, -2, (lua_Integer)i + 1);
+    }
+    lua_setfield(L, -2, "spans");
+}
+
+static void set_edges(lua_State *L, const lstub_via *via)
+{
+    int i;
+    if (via->edges[0] == 0.0)
+        return;
+    lua_createtable(L, 0, 5);
+    for (i = 0; i < 4; i++)
+        lslua_set_number(L, lslua_edge_sides[i], via->edges[i]);
+    lslua_set_boolean(L, "shorted", via->edge_kind == LSTUB_EDGE_SHORTED);
+    lua_setfield(L, -2, "edges");
+}
+
+static void set_returns(lua_State *L, const lstub_via *via, int names)
 {
     if (via->return_kind == LSTUB_RETURN_NONE)
         return;
@@ -511,6 +269,8 @@ static void set_returns(lua_State *L, const lstub_via *via)
         lslua_set_number(L, "wall", via->return_distance);
     } else if (via->return_xy != NULL) {
         set_places(L, via->return_xy, via->return_count);
+        if (via->return_spans != NULL)
+            set_spans(L, via->return_spans, via->return_count, names);
     } else {
         lslua_set_integer(L, "count", via->return_count);
         lslua_set_number(L, "distance", via->return_distance);
@@ -519,12 +279,28 @@ static void set_returns(lua_State *L, const lstub_via *via)
     lua_setfield(L, -2, "returns");
 }
 
+static void set_backdrills(lua_State *L, const lstub_backdrill *drills, size_t count)
+{
+    size_t i;
+    lua_createtable(L, (int)count, 0);
+    for (i = 0; i < count; i++) {
+        lua_newtable(L);
+        lslua_set_string(L, "side", lslua_word_of(lslua_sides, drills[i].side));
+        lslua_set_number(L, "depth", drills[i].depth);
+        lslua_set_number(L, "diameter", drills[i].diameter);
+        lua_rawseti(L, -2, (lua_Integer)i + 1);
+    }
+    lua_setfield(L, -2, "backdrills");
+}
+
 static void set_pair_and_pin(lua_State *L, const lstub_via *via)
 {
     if (via->pair_kind != LSTUB_PAIR_NONE) {
         lua_newtable(L);
         lslua_set_number(L, "pitch", via->pair_pitch);
         lslua_set_boolean(L, "shared", via->pair_kind == LSTUB_PAIR_SHARED);
+        if (via->partner_own)
+            set_backdrills(L, via->partner_backdrills, via->partner_backdrill_count);
         lua_setfield(L, -2, "pair");
     }
     if (via->pin_side != 0) {
@@ -544,17 +320,8 @@ static void set_lists(lua_State *L, const lstub_via *via, int names)
         lua_rawseti(L, -2, (lua_Integer)i + 1);
     }
     lua_setfield(L, -2, "connects");
-    if (via->backdrill_count == 0)
-        return;
-    lua_createtable(L, (int)via->backdrill_count, 0);
-    for (i = 0; i < via->backdrill_count; i++) {
-        lua_newtable(L);
-        lslua_set_string(L, "side", lslua_word_of(lslua_sides, via->backdrills[i].side));
-        lslua_set_number(L, "depth", via->backdrills[i].depth);
-        lslua_set_number(L, "diameter", via->backdrills[i].diameter);
-        lua_rawseti(L, -2, (lua_Integer)i + 1);
-    }
-    lua_setfield(L, -2, "backdrills");
+    if (via->backdrill_count > 0)
+        set_backdrills(L, via->backdrills, via->backdrill_count);
 }
 
 static int via_options(lua_State *L)
@@ -575,15 +342,16 @@ static int via_options(lua_State *L)
     lslua_set_number(L, "pad_inner", via->pad_inner);
     lslua_set_number(L, "pad_end", via->pad_end);
     lslua_set_number(L, "antipad", via->antipad);
-    lslua_set_string(L, "nonfunctional_pads", lslua_word_of(pad_words, via->nonfunctional_pads));
+    lslua_set_string(L, "nonfunctional_pads", lslua_word_of(lslua_pad_words, via->nonfunctional_pads));
     set_map(L, "pads", names, via->pads, via->pad_count);
     set_map(L, "antipads", names, via->antipads, via->antipad_count);
     set_map(L, "clear", names, via->clear, via->clear_count);
-    set_returns(L, via);
+    set_returns(L, via, names);
     set_pair_and_pin(L, via);
     set_given(L, "outside_dk", via->outside_dk);
     set_given(L, "lid_distance", via->lid_distance);
     set_given(L, "hole_dk", via->hole_dk);
+    set_edges(L, via);
     set_lists(L, via, names);
     return 1;
 }

@@ -363,7 +363,7 @@ typedef struct lstub_touchstone_data { /* what a file holds: the reader gives it
     int32_t matrix, order;         /* LSTUB_MATRIX_..., LSTUB_ORDER_...: of the text only; not 0: version 2 */
     int32_t digits;                /* writer: significant digits, 1 to 17; 0: as few as give the same double
                                       back. Reader: 0                                                  */
-    size_t  points, noise_points;  /* frequencies; noise data skipped by the reader, 0 for the writer  */
+    size_t  points, noise_points;  /* frequencies; noise data, which the reader skips and no writer writes */
     const double *freq;            /* [points] Hz, >= 0, rising                                        */
     const double *data;            /* [2 points ports ports], full, not normalised to the reference    */
     const double *reference;       /* [ports] ohm, > 0, of each port, in a mode or not; writer: null: 50 */
@@ -398,7 +398,7 @@ LSTUB_API void    lstub_touchstone_destroy(lstub_touchstone *file);             
 /* Its pointers live with the handle. */
 LSTUB_API int32_t lstub_touchstone_get(const lstub_touchstone *file, lstub_touchstone_data *out, lstub_error *err);
 /* Writes version 1.1 or 2.0. LOWER and UPPER want symmetry to 1e-12 of the matrix's largest entry. A file appears whole
-** or not at all: LSTUB_E_WRITE leaves what was there. Index of an error: the point. */
+** or not at all, in place of a link too: LSTUB_E_WRITE leaves what was there. Index of an error: the point. */
 LSTUB_API int32_t lstub_touchstone_write(const lstub_touchstone_data *data, const lstub_sink *sink, lstub_error *err);
 LSTUB_API int32_t lstub_touchstone_save(const lstub_touchstone_data *data, const char *path, lstub_error *err);
 /* Ports in another order, or some of them: dst[k][i][j] = src[k][map[i]][map[j]], k < n, i, j < count, no port twice.

@@ -68,11 +68,16 @@ static int leading_zeros(uint64_t x)    /* x > 0 */
 /* Upper half of the product. */
 static uint64_t high_product(uint64_t x, uint64_t y)
 {
+#if defined(__SIZEOF_INT128__)
+    __extension__ typedef unsigned __int128 wide;
+    return (uint64_t)((wide)x * y >> 64);
+#else
     const uint64_t low = UINT32_MAX;
     uint64_t x0 = x & low, x1 = x >> 32, y0 = y & low, y1 = y >> 32;
     uint64_t p01 = x0 * y1, p10 = x1 * y0;
     uint64_t middle = (x0 * y0 >> 32) + (p01 & low) + (p10 & low);
     return x1 * y1 + (p01 >> 32) + (p10 >> 32) + (middle >> 32);
+#endif
 }
 
 static void multiply(big *b, uint64_t factor, uint64_t add)
@@ -185,27 +190,29 @@ static int quickly(uint64_t digits, int power, double *value)
         return 0;
     /* 2^s digits 2^(63 + n) = product 2^64 5^-power; n, the bits of 5^q: 1 + floor(q log2(5)) */
     int n = 1 + -power * 2322 / 1000;
-    *value = (double)((product >> drop) + (rest > half)) * two_to(power + 1 - s - n + drop);
+    *value = (double)(int64_t)((product >> drop) + (rest > half)) * two_to(power + 1 - s - n + drop);
     return 1;
 }
 
 /* digits 10^power */
 static double from_word(uint64_t digits, int power)
 {
+    double value;
+    if (digits == 0)
+        return 0.0;
 #if defined(FLT_EVAL_METHOD) && FLT_EVAL_METHOD == 0
     /* Both exact in a double: one operation rounds once (Clinger, PLDI 1990). */
     static const double TENS[] = {1e0,  1e1,  1e2,  1e3,  1e4,  1e5,  1e6,  1e7,  1e8,  1e9,  1e10, 1e11,
                                   1e12, 1e13, 1e14, 1e15, 1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
     if (digits <= UINT64_C(1) << DBL_MANT_DIG && power >= -22 && power <= 22)
-        return power < 0 ? (double)digits / TENS[-power] : (double)digits * TENS[power];
+        return power < 0 ? (double)(int64_t)digits / TENS[-power] : (double)(int64_t)digits * TENS[power];
 #endif
-    if (digits == 0 || power < -345)
+    if (power < 0 && power >= -RECIPROCALS_MOST && quickly(digits, power, &value))
+        return value;
+    if (power < -345)
         return 0.0;
     if (power > 310)
         return HUGE_VAL;
-    double value;
-    if (power < 0 && power >= -RECIPROCALS_MOST && quickly(digits, power, &value))
-        return value;
     big b;
     b.limb[0] = digits;
     b.count = 1;
@@ -254,37 +261,49 @@ static const char *read_exponent(const char *p, int *power)
     return p;
 }
 
-/* Whether the first of several bytes is the lowest of a word. */
-static int little_endian(void)
-{
-    const uint16_t one = 1;
-    unsigned char first;
-    memcpy(&first, &one, 1);
-    return first;
-}
+#if defined(__GNUC__) && defined(__BYTE_ORDER__) && __BYTE_ORDER__ == __ORDER_LITTLE_ENDIAN__
 
-/* Appends the digits that p begins with to *word, modulo 2^64; their end. */
+/* Appends the digits that p begins with to *word, modulo 2^64; their end. Eight bytes at once: they are 0x30 to 0x39 where
+** they, and 6 more than they, have an upper half of 3. Those behind the first other one are pushed out, zeros come in at the
+** front, and neighbours are put together to pairs, fours and eights. */
 static const char *read_digits(const char *p, uint64_t *word)
 {
-    uint64_t w = *word, x;
-    unsigned d;
-    /* Eight at once: bytes are 0x30 to 0x39 where they, and 6 more than they, have an upper half of 3; then neighbours are put
-    ** together to pairs, fours and eights. */
-    while (little_endian()) {
+    static const uint64_t TENS[] = {1, 10, 100, 1000, 10000, 100000, 1000000, 10000000, 100000000};
+    for (;;) {
+        uint64_t x, other;
+        int count = 8;
         memcpy(&x, p, 8);
-        if ((x & (x + UINT64_C(0x0606060606060606)) & UINT64_C(0xF0F0F0F0F0F0F0F0)) != UINT64_C(0x3030303030303030))
-            break;
+        other = ((x & (x + UINT64_C(0x0606060606060606))) & UINT64_C(0xF0F0F0F0F0F0F0F0)) ^ UINT64_C(0x3030303030303030);
+        if (other != 0) {
+            count = __builtin_ctzll(other) / 8;
+            if (count == 0)
+                return p;
+            x <<= 64 - 8 * count;
+        }
         x = (x & UINT64_C(0x0F0F0F0F0F0F0F0F)) * (10 * 256 + 1) >> 8 & UINT64_C(0x00FF00FF00FF00FF);
         x = x * (100 * 65536 + 1) >> 16 & UINT64_C(0x0000FFFF0000FFFF);
         x = x * (UINT64_C(10000) * UINT64_C(4294967296) + 1) >> 32;
-        w = UINT64_C(100000000) * w + x;
-        p += 8;
+        *word = TENS[count] * *word + x;
+        p += count;
+        if (count < 8)
+            return p;
     }
+}
+
+#else
+
+/* The same, byte by byte. */
+static const char *read_digits(const char *p, uint64_t *word)
+{
+    uint64_t w = *word;
+    unsigned d;
     for (; (d = digit(*p)) <= 9; p++)
         w = 10 * w + d;
     *word = w;
     return p;
 }
+
+#endif
 
 const char *lstub__decimal_read(const char *p, int shift, double *value)
 {

@@ -73,15 +73,19 @@ const char *lstub__rows_fault(const lstub_touchstone_row *rows, int32_t ports, c
 #define DEGREE (LSTUB_PI / 180.0)
 #define LN10   2.30258509299404568402
 
-/* The angle is reduced in degrees, where that is exact: 90 and 180 degrees have no rounding left. */
+/* The angle is reduced in degrees, where that is exact: 90 and 180 degrees have no rounding left. Quarters come at random, so
+** there is no branch for them. */
 static void polar(double magnitude, double angle, double z[2])
 {
-    double turn = fabs(angle) <= 360.0 ? angle : fmod(angle, 360.0);
-    int q = (int)(turn / 90.0 + (turn < 0.0 ? -0.5 : 0.5));
-    double rest = (turn - 90.0 * q) * DEGREE, c = magnitude * cos(rest), s = magnitude * sin(rest);
-    q &= 3;
-    z[0] = q == 0 ? c : q == 1 ? -s : q == 2 ? -c : s;
-    z[1] = q == 0 ? s : q == 1 ? c : q == 2 ? -s : -c;
+    static const double RE[] = {1.0, -1.0, -1.0, 1.0}, IM[] = {1.0, 1.0, -1.0, -1.0};
+    double turn = fabs(angle) <= 360.0 ? angle : fmod(angle, 360.0), part[2];
+    int quarter = (int)(turn * (1.0 / 90.0) + copysign(0.5, turn));
+    double rest = (turn - 90.0 * quarter) * DEGREE;
+    part[0] = magnitude * cos(rest);
+    part[1] = magnitude * sin(rest);
+    quarter &= 3;
+    z[0] = RE[quarter] * part[quarter & 1];
+    z[1] = IM[quarter] * part[1 - (quarter & 1)];
 }
 
 /* 10^(db/20). Whole twenties are taken out, exactly, so that the rounding of the rest stays small. */
@@ -91,7 +95,7 @@ static double from_decibels(double db)
                                   1e12, 1e13, 1e14, 1e15, 1e16, 1e17, 1e18, 1e19, 1e20, 1e21, 1e22};
     if (!(fabs(db) < 400.0))
         return pow(10.0, db / 20.0);
-    int n = (int)(db / 20.0 + (db < 0.0 ? -0.5 : 0.5));
+    int n = (int)(db * 0.05 + copysign(0.5, db));
     double rest = exp((db - 20.0 * n) * (LN10 / 20.0));
     return n < 0 ? rest / TENS[-n] : rest * TENS[n];
 }

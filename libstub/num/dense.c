@@ -82,7 +82,7 @@ typedef struct split {
     double gr[LSTUB__GRAM_WIDE][LSTUB__GRAM_WIDE], gi[LSTUB__GRAM_WIDE][LSTUB__GRAM_WIDE];
 } split;
 
-static void subtract(double *to_r, double *to_i, cplx f, const double *row_r, const double *row_i, int from, int to)
+static void subtract(double *restrict to_r, double *restrict to_i, cplx f, const double *restrict row_r, const double *restrict row_i, int from, int to)
 {
     int j;
 

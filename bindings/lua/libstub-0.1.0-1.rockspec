@@ -81,6 +81,8 @@ build = {
         "libstub/model/cavity_wave.c",
         "libstub/model/coupons.c",
         "libstub/model/ladder.c",
+        "libstub/model/ladder_make.c",
+        "libstub/model/ladder_static.c",
         "libstub/model/line.c",
         "libstub/model/model.c",
         "libstub/model/notch.c",

@@ -4,6 +4,7 @@
 
 #include "model/barrel.h"
 #include "model/cavity.h"
+#include "model/ladder.h"
 
 typedef struct lstub__branch {
     int32_t     fidelity;
@@ -14,6 +15,7 @@ typedef struct lstub__branch {
     double      stated_error;      /* of the first notch, relative; NaN: estimated for each                     */
     lstub__line line;              /* the closed form; for other fidelities where their searches begin          */
     lstub__barrel *barrel;         /* LADDER and CAVITY, else null                                              */
+    lstub__ladder *ladder;         /* LADDER, else null                                                         */
     lstub__cavity *cavity, *other; /* CAVITY, else null; other: once lstub__branch_estimate has made it ...     */
     int         finer;             /* ... which then has more annuli, not fewer                                 */
 } lstub__branch;

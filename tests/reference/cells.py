@@ -40,6 +40,8 @@ def via_of(case, f_ref, scale=1.0):
 def _returns(wall, scale):
     if wall is None or wall["type"] in ("open", "none"):
         return None
+    if wall["type"] == "vias":      # of random_cells.py alone
+        return ls.Vias([(scale * x, scale * y) for x, y in wall["places"]], scale * 2 * wall["r"])
     if wall["type"] != "pec":
         raise ValueError(f"wall: type {wall['type']!r} is not known")
     return ls.Wall(scale * wall["r"])

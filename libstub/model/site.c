@@ -305,6 +305,16 @@ static double smallest_antipad(const lstub__via *via)
 int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const lstub_via *via,
                          const lstub_model_options *options, lstub_error *err)
 {
+    int32_t status = lstub__site_any(site, stackup, via, options, err);
+    if (status >= 0 && site->via.unequal)
+        return lstub__fail(err, LSTUB_E_UNSUPPORTED, "partner_own", -1, "partner_own = 1: a pair whose barrels end at different depths has no odd mode of "
+                           "its own; a transition computes it");
+    return status;
+}
+
+int32_t lstub__site_any(lstub__site *site, const lstub_stackup *stackup, const lstub_via *via,
+                        const lstub_model_options *options, lstub_error *err)
+{
     lstub_model_options ours;
     int32_t status;
     if ((status = lstub__options_take(&ours, options, err)) < 0 || (status = lstub__via_take(&site->via, stackup, via, err)) < 0)

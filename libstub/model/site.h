@@ -35,8 +35,12 @@ typedef struct lstub__site {
 } lstub__site;
 
 int32_t lstub__options_take(lstub_model_options *ours, const lstub_model_options *theirs, lstub_error *err);
+/* For stubs: refuses a pair whose barrels differ. */
 int32_t lstub__site_make(lstub__site *site, const lstub_stackup *stackup, const lstub_via *via,
                          const lstub_model_options *options, lstub_error *err);
+/* For transitions. */
+int32_t lstub__site_any(lstub__site *site, const lstub_stackup *stackup, const lstub_via *via,
+                        const lstub_model_options *options, lstub_error *err);
 /* The stub on a side cut to `length` (0 < length <= full; full: not drilled). */
 void    lstub__site_line(const lstub__site *site, int arm, double length, lstub__line *line);
 

@@ -225,7 +225,7 @@ int32_t lstub_transition_create(const lstub_stackup *stackup, const lstub_via *v
         return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)ours.reserved);
     LSTUB_INIT(plain);
     plain.annuli = ours.annuli;
-    if ((status = lstub__site_make(&site, stackup, via, &plain, err)) < 0)
+    if ((status = lstub__site_any(&site, stackup, via, &plain, err)) < 0)
         return status;
     site.alloc = alloc;
     lstub_transition *t = lstub__new(&alloc, 1, sizeof *t, err);

@@ -754,6 +754,8 @@ typedef struct lstub_transition_options {
     int32_t stubs;                 /* LSTUB_STUBS_...                                                  */
     int32_t annuli;                /* as in lstub_model_options                                        */
     int32_t metal, reserved;       /* LSTUB_METAL_...                                                  */
+    double  f_table;               /* Hz, 1e9 to 200e9: S up to there is tabulated once, within 1e-9 of the model, then read in
+                                      well under a microsecond: for sweeps. 0: every answer from the model */
 } lstub_transition_options;
 
 /* What a transition rests on, or not: a sum. Any but RADIATES makes the status LSTUB_W_RANGE. */

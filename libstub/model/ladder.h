@@ -17,8 +17,8 @@ int    lstub__ladder_make(const lstub__cav_barrel *barrel, void *(*allocate)(voi
 void   lstub__ladder_free(lstub__ladder *ladder);           /* null is allowed */
 size_t lstub__ladder_bytes(const lstub__ladder *ladder);
 
-/* 1: the first notch is within LADDER_ERROR of branch.c; else LADDER_WIDE: a space between planes about as high as the stub is long,
-** a stub below half a millimetre that no wall closes, planes with edges, a slot around a pair without return vias. */
+/* 1: the first notch is within LADDER_ERROR of branch.c; else LADDER_WIDE: a space between planes higher than half the stub, a stub
+** below half a millimetre that no wall closes, an end just below a pad, planes with edges, a slot around a pair without return vias. */
 int    lstub__ladder_valid(const lstub__cav_barrel *barrel);
 
 /* Input impedance at the lower face of copper[0]. */

@@ -327,8 +327,9 @@ int lstub__ladder_make(const lstub__cav_barrel *barrel, void *(*allocate)(void *
 }
 
 /* Chosen on random cells (docs/theory.md). */
-#define TALLEST  0.6        /* of the stub's length: a space between planes                                        */
+#define TALLEST  0.5        /* of the stub's length: a space between planes                                        */
 #define SHORTEST 0.5e-3     /* m, unless a wall closes it: the notch of a short stub that radiates is a broad one  */
+#define SLIVER   20e-6      /* m, between a pad and an end below it: annuli that cross the pad's rim hold too much */
 
 int lstub__ladder_valid(const lstub__cav_barrel *b)
 {
@@ -348,6 +349,7 @@ int lstub__ladder_valid(const lstub__cav_barrel *b)
             from = z + c->thickness;
         }
         z += c->thickness;
+        if (c->pad > b->radius && b->end > z - c->thickness && b->end < z + SLIVER) return 0;
     }
     if (z < end) end = z;
     return tallest < TALLEST * end && (b->outer == LSTUB__CAV_WALL || end > SHORTEST);

@@ -85,26 +85,33 @@ void lstub__transition_mode(const lstub_transition *t, int mode, double f, cplx 
     to_waves(mine, n, line, z_ref, s);
 }
 
-/* All ports: those of the barrel, then the partner's. */
-static void whole(const lstub_transition *t, double f, cplx *s)
+static void put(double *out, int n, int i, int j, cplx s)
 {
-    int m = t->ways, n = 2 * m;
-    cplx odd[LSTUB__WAYS * LSTUB__WAYS], even[LSTUB__WAYS * LSTUB__WAYS];
+    out[2 * (i * n + j)] = s.re;
+    out[2 * (i * n + j) + 1] = s.im;
+}
+
+void lstub__transition_whole(const lstub_transition *t, double f, double *out)
+{
+    int m = t->ways, n = t->size;
+    cplx odd[MOST * MOST], even[LSTUB__WAYS * LSTUB__WAYS];
+    lstub__transition_mode(t, 0, f, odd);
     if (t->modes < 2) {
-        lstub__transition_mode(t, 0, f, s);
+        memcpy(out, odd, (size_t)(n * n) * sizeof odd[0]);
         return;
     }
-    lstub__transition_mode(t, 0, f, odd);
     lstub__transition_mode(t, 1, f, even);
     for (int i = 0; i < m; i++)
         for (int j = 0; j < m; j++) {
-            cplx o = odd[i * m + j], e = even[i * m + j];
-            s[i * n + j] = s[(i + m) * n + j + m] = cplx_scale(cplx_add(e, o), 0.5);
-            s[i * n + j + m] = s[(i + m) * n + j] = cplx_scale(cplx_sub(e, o), 0.5);
+            cplx o = odd[i * m + j], e = even[i * m + j], same = cplx_scale(cplx_add(e, o), 0.5), across = cplx_scale(cplx_sub(e, o), 0.5);
+            put(out, n, i, j, same);
+            put(out, n, i + m, j + m, same);
+            put(out, n, i, j + m, across);
+            put(out, n, i + m, j, across);
         }
 }
 
-int32_t lstub_transition_ports(const lstub_transition *t) { return t == NULL ? 0 : t->modes == 1 ? t->ways : 2 * t->ways; }
+int32_t lstub_transition_ports(const lstub_transition *t) { return t == NULL ? 0 : t->size; }
 
 int32_t lstub_transition_remarks(const lstub_transition *t) { return t == NULL ? 0 : t->remarks; }
 
@@ -138,23 +145,21 @@ int32_t lstub_transition_s(const lstub_transition *t, const double *freq, size_t
     lstub__batch batch = {0, 0};
     int p = (int)lstub_transition_ports(t);
     double top = stated_range(t);
-    cplx out[MOST * MOST];
     for (size_t i = 0; i < n; i++) {
         lstub_error item;
         LSTUB_INIT(item);
         double *to = s + 2 * (size_t)(p * p) * i;
         int32_t one = lstub__check(freq[i], &band, "freq", &item);
         if (one == LSTUB_OK) {
-            whole(t, freq[i], out);
-            if (!(cplx_norm(out[0]) < HUGE_VAL))
+            if (!lstub__table_read(t, freq[i], to))
+                lstub__transition_whole(t, freq[i], to);
+            if (!(fabs(to[0]) < HUGE_VAL))
                 one = lstub__fail(&item, LSTUB_E_NONE, "freq", -1, "freq = %.9g Hz: the model is singular there", freq[i]);
             else if (freq[i] > top)
                 one = LSTUB_W_RANGE;
         }
-        for (int k = 0; k < p * p; k++) {
-            to[2 * k] = one < 0 ? NAN : out[k].re;
-            to[2 * k + 1] = one < 0 ? NAN : out[k].im;
-        }
+        for (int k = 0; one < 0 && k < 2 * p * p; k++)
+            to[k] = NAN;
         if (status != NULL)
             status[i] = one;
         lstub__batch_add(&batch, one, (int64_t)i, &item, err);

@@ -9,6 +9,7 @@
 static const lstub__range LINE_IMPEDANCE = {1.0, 1000.0, 0, "ohm"};
 static const lstub__range LINE_DK = {1.0, 1000.0, 0, ""};
 static const lstub__range LINE_LOSS = {0.0, 0.5, 0, ""};
+static const lstub__range TABLE = {1e9, TOP_FREQUENCY, 0, "Hz"};
 
 /* ---- ports -------------------------------------------------------------------------------------- */
 
@@ -223,6 +224,8 @@ int32_t lstub_transition_create(const lstub_stackup *stackup, const lstub_via *v
         return lstub__fail(err, LSTUB_E_ARGUMENT, "metal", -1, "metal = %ld: must be one of LSTUB_METAL_...", (long)ours.metal);
     if (ours.reserved != 0)
         return lstub__fail(err, LSTUB_E_SIZE, "reserved", -1, "reserved = %ld: must be 0", (long)ours.reserved);
+    if (ours.f_table != 0.0 && (status = lstub__check(ours.f_table, &TABLE, "f_table", err)) < 0)
+        return status;
     LSTUB_INIT(plain);
     plain.annuli = ours.annuli;
     if ((status = lstub__site_any(&site, stackup, via, &plain, err)) < 0)
@@ -243,6 +246,9 @@ int32_t lstub_transition_create(const lstub_stackup *stackup, const lstub_via *v
         way.sign = t->modes == 2 ? (i == 0 ? -1.0 : 1.0) : 0.0;
         status = compile(t, &site, &way, i, err);
     }
+    t->size = t->modes == 1 ? t->ways : 2 * t->ways;
+    if (status == LSTUB_OK && ours.f_table > 0.0)
+        status = lstub__table_build(t, fmin(ours.f_table, t->f_top), err);
     if (status < 0) {
         lstub_transition_destroy(t);
         return status;
@@ -261,6 +267,7 @@ void lstub_transition_destroy(lstub_transition *t)
     if (t == NULL)
         return;
     lstub_allocator alloc = t->alloc;
+    lstub__table_drop(t);
     for (int i = 0; i < 2; i++) {
         lstub__cavity_destroy(t->cavity[i]);
         lstub__barrel_free(t->barrel[i]);

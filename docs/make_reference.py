@@ -140,7 +140,7 @@ def read_code(lines, i, parts, above):
 
 def python_signatures():
     """'Model.zin' -> 'Model.zin(f, *, stub=ALL_STUBS, out=None)' of everything public."""
-    found = {}
+    found, bases = {}, {}
 
     def arguments(node):
         args = node.args
@@ -163,6 +163,7 @@ def python_signatures():
             fields.insert(0, "*")
         inside = arguments(made[0]) if made else ", ".join(fields)
         found[node.name] = f"{node.name}({inside})" if inside and inside != "*args, **kwargs" else node.name
+        bases[node.name] = [base.id for base in node.bases if isinstance(base, ast.Name)]
         for n in node.body:
             if isinstance(n, ast.FunctionDef) and n.name[0] != "_":
                 full = f"{node.name}.{n.name}"
@@ -180,6 +181,10 @@ def python_signatures():
                 for target in getattr(node, "targets", [getattr(node, "target", None)]):
                     if isinstance(target, ast.Name):
                         found[target.id] = target.id
+    for name, above in bases.items():                      # what a class has from another one
+        for base in above:
+            for full in [full for full in found if full.startswith(f"{base}.")]:
+                found.setdefault(full.replace(base, name, 1), found[full].replace(base, name, 1))
     return found
 
 

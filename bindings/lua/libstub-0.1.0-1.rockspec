@@ -91,6 +91,7 @@ build = {
         "libstub/model/transition.c",
         "libstub/model/transition_make.c",
         "libstub/model/transition_notch.c",
+        "libstub/model/transition_table.c",
         "libstub/criteria/judge.c",
         "libstub/criteria/limit.c",
         "libstub/plan/alike.c",

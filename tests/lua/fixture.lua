@@ -36,6 +36,12 @@ function f.via(stackup, change)
   return assert(ls.via(stackup, f.options(change)))
 end
 
+-- Ports for the via above, and a small Touchstone file of two ports.
+f.ports = { { layer = "TOP", impedance = 50, dk = 3 }, { layer = "SIG1", distance = 2e-3, trace = { kind = "stripline", width = 0.15e-3,
+  height_below = 0.15e-3, height_above = 0.15e-3, dielectric_below = { dk = 3.6, loss_tangent = 0.004 } } } }
+f.touchstone = "! of our own invention\n# GHz S RI R 50\n" ..
+  "1 0.1 0 0.9 -0.1 0.9 -0.1 0.1 0\n2 0.1 0.1 0.8 -0.2 0.8 -0.2 0.1 0.1\n3 0.2 0 0.7 -0.3 0.7 -0.3 0.2 0\n"
+
 f.signal = { symbol_rate = ls.gbd(53.125), levels = 4 }
 f.criteria = { notch_over_nyquist = 2, added_loss_db = 0.5 }
 f.capability = { depth_tolerance = ls.um(50), cut_clearance = ls.um(75), residual_min = ls.um(125),

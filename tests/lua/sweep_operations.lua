@@ -8,12 +8,31 @@ local function via() return fixture.via(fixture.stackup()) end
 -- The cavity model allocates much in one piece of code: it has operations of its own, the others take the quick model.
 local quick = { fidelity = "loaded" }
 local function model() return via():model(quick) end
-local rich = { pads = { SIG1 = 0.4e-3 }, antipads = { GND2 = 0.9e-3 }, clear = { SIG2 = 1e-3 }, pair = { pitch = 1.2e-3 },
-  returns = { xy = { { 1e-3, 0 }, { 0, -1e-3 } }, drill = 0.3e-3 }, outside_dk = 3, lid_distance = 1e-3, hole_dk = 2,
+local freq_of, net = { 1e9, 2e9, 3e9, 4e9 }, nil
+do
+  local list = {}
+  for k = 1, 4 do for i = 1, 32 do list[#list + 1] = 0.1 * math.sin(k * i) end end
+  net = ls.complex(list, 4)
+end
+local channel_freq, channel = ls.linspace(1e9, 2e10, 200), nil
+do
+  local list = {}
+  for k = 1, 200 do
+    local f = channel_freq[k]
+    local x = math.tan(math.pi / 2 * f / 1.0001e10)        -- an open stub across a line, with loss
+    local re, im = 2 * (2 + 0.02) / ((2.02) ^ 2 + x * x), -2 * x / ((2.02) ^ 2 + x * x)
+    list[#list + 1], list[#list + 2] = re, im
+  end
+  channel = ls.complex(list)
+end
+local rich = { pads = { SIG1 = 0.4e-3 }, antipads = { GND2 = 0.9e-3 }, clear = { SIG2 = 1e-3 }, edges = { left = 5e-3, right = 5e-3, front = 5e-3, back = 5e-3 },
+  pair = { pitch = 1.5e-3, backdrills = { { side = "bottom", depth = 0.4e-3, diameter = 0.5e-3 } } },
+  returns = { xy = { { 0, 1e-3 }, { 0, -1e-3 } }, drill = 0.3e-3, spans = { { "TOP", "GND2" }, { 1, 15 } } }, outside_dk = 3, lid_distance = 1e-3, hole_dk = 2,
   pin = { side = "top", length = 0.1e-3 }, backdrills = { { side = "bottom", depth = 0.5e-3, diameter = 0.5e-3 } } }
 local freq = { 1e9, 2e9, 3e9 }
 
 local folder = assert(arg[1], "the folder to write into is missing")
+local touchstone_path = folder .. "/sweep.s2p"
 local board_path, out_path = folder .. "/sweep_board.xml", folder .. "/sweep_out.csv"
 do
   local file = io.open(board_path, "rb")
@@ -45,7 +64,7 @@ local operations = {
   { name = "stackup:layers", setup = fixture.stackup, run = function(s) return #s:layers() == 15 and s:interval(0, 1e-3) end },
   { name = "via", setup = fixture.stackup, run = function(s)
     local o = ls.via(s, fixture.options(rich)):options()
-    return o.pads.SIG1 and #o.returns.xy == 2 and not ls.via(s, fixture.options { drill = -1 })
+    return o.pads.SIG1 and #o.returns.xy == 2 and #o.returns.spans == 2 and #o.pair.backdrills == 1 and not ls.via(s, fixture.options { drill = -1 })
   end },
   { name = "via:stubs", setup = via, run = function(v) return #v:stubs() == 1 and tostring(v) end },
   { name = "via:model", setup = via, run = function(v)
@@ -58,6 +77,57 @@ local operations = {
   end },
   { name = "cavity batch", setup = via, run = function(v)
     return ls.first_notch_batch(v:stackup(), { v }, { fidelity = "cavity", annuli = 2 }).f1[1] > 1e10
+  end },
+  { name = "transition", setup = via, run = function(v)
+    local made <close> = ls.transition(v, { ports = fixture.ports, annuli = 2 })
+    return made and made:ports() == 2 and #made:remarks() >= 1 and ls.remark_text("outer")
+      and not ls.transition(v, { ports = { { layer = "TOP" } } })
+  end },
+  { name = "transition:s", setup = function() return assert(ls.transition(via(), { ports = fixture.ports, annuli = 2 })) end,
+    run = function(x) return #x:s(freq) == 3 and select(4, x:s { 1e9, -1 }) and #x:notches(3e10) >= 0 and x:reference(1) == 50 end },
+  { name = "trace", run = function()
+    local z, gamma = ls.trace_line(fixture.ports[2].trace, freq)
+    return #z == 3 and #gamma == 3 and #ls.conductor_surface_impedance({}, freq) == 3
+      and not ls.trace_line({ kind = "stripline", width = -1, height_below = 1e-4, dielectric_below = { dk = 4 } }, 1e9)
+  end },
+  { name = "networks", run = function()
+    local mixed, z = ls.to_mixed(net, { { 1, 3 }, { 2, 4 } })
+    return #ls.cascade(net, ls.deembed(net, net)) == 4 and #ls.to_single(mixed, { { 1, 3 }, { 2, 4 } }) == 4 and #z == 4
+      and #ls.renormalise(net, 50, { 75, 50, 50, 50 }) == 4 and #ls.convert(net, "S", "Y") == 4
+      and #ls.port_map(net, { 4, 1 }) == 4 and #ls.passivity(net) == 4 and #ls.reciprocity(net) == 4
+      and #ls.shunt(net:element(1, 1)) == 4 and not ls.renormalise(net, -1, 50)
+  end },
+  { name = "responses", run = function()
+    local early = ls.causality(freq_of, net)
+    local fit, deviation = ls.insertion_loss_deviation(freq_of, { 1, 2, 2.5, 3 })
+    return #early == 4 and fit.points == 4 and #deviation == 4 and #ls.tdr(freq_of, net, { 0, 1e-10 }, { rise_time = 1e-9 }) == 2
+      and #ls.step_response(freq_of, net, { 0, 1e-10 }, { rise_time = 1e-9 }) == 2
+  end },
+  { name = "touchstone", run = function()
+    local file <close> = ls.touchstone_parse(fixture.touchstone)
+    local data, parts, text = file:get(), {}, fixture.touchstone
+    data.comments = { "one", "two" }
+    local again <close> = assert(ls.touchstone_read(function(bytes)
+      local piece = text:sub(1, 20)
+      text = text:sub(21)
+      return piece ~= "" and piece or nil
+    end))
+    return ls.touchstone_write(data, function(part) parts[#parts + 1] = part end) and #again:get().data == 3
+      and #table.concat(parts) > 100 and not ls.touchstone_parse("nonsense\n")
+  end },
+  { name = "touchstone files", run = function()
+    local data = ls.touchstone_parse(fixture.touchstone):get()
+    return ls.touchstone_save(data, touchstone_path) and #ls.touchstone_load(touchstone_path):get().freq == 3
+  end },
+  { name = "find_notches", run = function()
+    local notches, averaged, trend = ls.find_notches(channel_freq, channel)
+    return #notches == 1 and #averaged == 200 and #trend == 200
+  end },
+  { name = "fits", setup = via, run = function(v)
+    local fit, residuals = ls.fit_in_plane_dk(function(ratio) return 1e10 / math.sqrt(ratio) end, { 0.98e10, 0.97e10 }, { 1e7, 1e7 })
+    local coupons, rest, fitted = ls.fit_coupons(v:stackup(), { v }, { v:model { fidelity = "ladder" }:notches(1e11)[1].f }, { 1e7 },
+      { fidelity = "ladder" })
+    return fit.dof == 1 and #residuals == 2 and coupons.dof == 0 and #rest == 1 and fitted:with_in_plane_ratio(1.2)
   end },
   { name = "model:zin", setup = model, run = function(m)
     return #m:zin(freq) == 3 and m:s21(1e9) and #m:added_loss({ 1e9, 1e11 }, { stub = 1 }) == 2

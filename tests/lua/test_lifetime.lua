@@ -10,6 +10,7 @@ local via = fixture.via(board)
 local objects = {
   stackup = fixture.stackup(), via = fixture.via(board), model = via:model(),
   plan = ls.plan(board, { { via = via, signal = fixture.signal, criteria = fixture.criteria } }, fixture.capability),
+  transition = ls.transition(via, { ports = fixture.ports }), touchstone = ls.touchstone_parse(fixture.touchstone),
   rules = ls.rules_parse "signal A symbol_rate 10 GBd notch_over_nyquist 2\n",
 }
 
@@ -30,12 +31,13 @@ for name, object in pairs(objects) do
 end
 t.raises("closed libstub.stackup", ls.via, objects.stackup, fixture.options())
 t.raises("closed libstub.via", ls.longest_stub, objects.via, fixture.signal, fixture.criteria)
+t.raises("closed libstub.via", ls.transition, objects.via, { ports = fixture.ports })
 t.raises("vias[1]: closed libstub.via", ls.first_notch_batch, board, { objects.via })
 t.raises("jobs[1].via: closed libstub.via", ls.plan, board, { { via = objects.via } }, fixture.capability)
 t.raises("rules: closed libstub.rules", ls.board_load, "none.xml", { rules = objects.rules })
 
 -- A method with the wrong object, or none.
-for _, name in ipairs { "stackup", "via", "model", "plan", "rules", "board", "array", "complex" } do
+for _, name in ipairs { "stackup", "via", "model", "transition", "touchstone", "plan", "rules", "board", "array", "complex" } do
   local meta = registry["libstub." .. name]
   for method, f in pairs(type(meta.__index) == "table" and meta.__index or {}) do
     t.raises("libstub." .. name .. " expected", f, io.stdout, 1, 1)
@@ -46,13 +48,17 @@ for _, name in ipairs { "stackup", "via", "model", "plan", "rules", "board", "ar
   end
 end
 
--- A via needs its stackup; a model, a plan do not.
+-- A via needs its stackup; a model, a transition, a plan do not.
 do
   local stackup = fixture.stackup()
   local v = fixture.via(stackup)
   local model = v:model()
   local f1 = model:notches(1e12)[1].f
+  local transition = assert(ls.transition(v, { ports = fixture.ports }))
+  local s21 = transition:s(1e10):re(1, 2, 1)
   stackup:close()
+  t.raises("closed libstub.stackup", ls.transition, v, { ports = fixture.ports })
+  t.raises("closed libstub.stackup", ls.fit_coupons, stackup, { v }, { 1e10 }, { 1e7 })
   t.raises("closed libstub.stackup", v.stubs, v)
   t.raises("closed libstub.stackup", v.model, v)
   t.raises("closed libstub.stackup", v.check, v)
@@ -61,6 +67,7 @@ do
   v:close()
   t.equal(model:notches(1e12)[1].f, f1)
   t.equal(model:stub(1).exit_layer, "SIG1")
+  t.equal(transition:s(1e10):re(1, 2, 1), s21)
 end
 
 -- <close> closes, also when an error leaves the block.
@@ -98,6 +105,32 @@ do
   collectgarbage("incremental")
   collectgarbage()
   t.check(not ok and message:find("closed libstub.stackup", 1, true), tostring(message))
+end
+
+-- Callbacks that collect, close and call again: the library is in the middle of something of its own.
+do
+  local pieces, parsed = { fixture.touchstone }, nil
+  local file = assert(ls.touchstone_read(function()
+    collectgarbage()
+    parsed = ls.touchstone_parse(fixture.touchstone)
+    parsed:close()
+    return table.remove(pieces)
+  end))
+  local data = file:get()
+  local count = 0
+  assert(ls.touchstone_write(data, function()
+    count = count + 1
+    data.data, data.freq, data.reference = nil, nil, nil
+    file:close()
+    collectgarbage()
+    if count < 3 then ls.touchstone_write(ls.touchstone_parse(fixture.touchstone):get(), function() collectgarbage() end) end
+  end))
+  t.check(count > 0)
+  local fit = ls.fit_in_plane_dk(function(ratio)
+    collectgarbage()
+    return 1e10 / math.sqrt(ratio) * ls.fit_in_plane_dk(function(r) return 1e10 / math.sqrt(r) end, { 1e10 }, { 1e6 }).ratio
+  end, { 0.95e10 }, { 1e7 })
+  t.close(fit.ratio, 1 / 0.95 ^ 2, 1e-6)
 end
 
 -- The collector knows what is behind a handle: many models do not pile up.

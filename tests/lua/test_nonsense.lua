@@ -14,11 +14,15 @@ local stackup = fixture.stackup()
 local via = fixture.via(stackup)
 local rules = ls.rules_parse(fixture.rules)
 local board = ls.board_load(path, { rules = rules })
+local transition = ls.transition(via, { ports = fixture.ports })
+local touchstone = ls.touchstone_parse(fixture.touchstone)
+local data = touchstone:get()
 local closed = fixture.via(stackup):model()
 closed:close()
 local objects = {
   stackup, via, via:model(), rules, board, board:plan(rules), board:stackup(), board:via(1), board:via(6), closed,
-  ls.array { 1e9, 2e9 }, ls.array(0), via:model():zin { 1e9 },
+  ls.array { 1e9, 2e9 }, ls.array(0), via:model():zin { 1e9 }, transition, touchstone, data.data, data.freq,
+  ls.complex({}, 4), transition:s { 1e9, 2e9 },
 }
 -- No string here may be a place that can be written to, and no whole number so large that it is gigabytes of array.
 local plain = {
@@ -27,14 +31,17 @@ local plain = {
 }
 local words = {
   "top", "bottom", "both", "all", "bulk", "loaded", "ladder", "cavity", "plane", "signal", "mixed", "dielectric", "kept",
-  "worst", "rss", "TOP", "SIG1", "GND1", "R1", "BOTTOM",
+  "worst", "rss", "S", "Z", "ABCD", "H", "RI", "DB", "GHz", "lower", "12_21", "differential", "odd", "even", "coax", "trace",
+  "microstrip", "stripline", "spheres", "removed", "perfect", "radiates", "TOP", "SIG1", "GND1", "R1", "BOTTOM",
 }
 local keys = {
   "name", "kind", "thickness", "tol_plus", "tol_minus", "dk", "in_plane_ratio", "loss_tangent", "f_ref", "conductivity",
   "start_layer", "end_layer", "drill", "pad", "pad_inner", "antipad", "pads", "antipads", "clear", "connects", "returns",
   "xy", "outside_dk", "lid_distance", "hole_dk", "pair", "backdrills", "pin", "count", "distance", "wall", "pitch", "shared", "side", "length", "depth", "diameter",
   "fidelity", "z_ref", "annuli", "stub", "symbol_rate", "levels", "notch_over_nyquist", "added_loss_db", "via",
-  "signal", "criteria", "sides", "depths", "depth_tolerance", "rules", "progress", "n", "f", "TOP", "SIG1", 1, 2, 3, true,
+  "signal", "criteria", "sides", "spans", "edges", "left", "right", "front", "back", "ports", "layer", "trace", "impedance", "distance",
+  "to", "from", "mode", "stubs", "metal", "rise_time", "port", "t0", "window", "f_low", "f_high", "with_offset", "data", "freq",
+  "reference", "rows", "comments", "format", "unit", "matrix", "version", "digits", "roughness_law", "dielectric_below", "conductor", "depths", "depth_tolerance", "rules", "progress", "n", "f", "TOP", "SIG1", 1, 2, 3, true,
 }
 
 local function pick(list) return list[random(#list)] end
@@ -69,6 +76,14 @@ local sensible = {
   function() return { via, via } end,
   function() return { 1e9, 2e9, 3e9 } end,
   function() return { side = "bottom" } end,
+  function() return { ports = fixture.ports } end,
+  function() return { { layer = "TOP", impedance = 50 }, { layer = "SIG1", impedance = 45, dk = 3.6 } } end,
+  function() return { rise_time = 1e-10, to = 2, from = 1 } end,
+  function() return { freq = { 1e9, 2e9, 3e9 }, data = data.data, reference = 50 } end,
+  function() return { { 1, 2 } } end,
+  function() return { kind = "stripline", width = 1e-4, height_below = 1e-4, height_above = 1e-4, dielectric_below = { dk = 4 } } end,
+  function() return { window = 1e8, to = 1, from = 2 } end,
+  function() return { left = 1e-2, right = 1e-2, front = 1e-2, back = 1e-2, shorted = true } end,
 }
 
 function nonsense(depth)
@@ -87,7 +102,7 @@ local function add(name, f)
   functions[name] = f
 end
 for name, f in pairs(ls) do if type(f) == "function" then add("libstub." .. name, f) end end
-for _, type_name in ipairs { "stackup", "via", "model", "plan", "rules", "board", "complex" } do
+for _, type_name in ipairs { "stackup", "via", "model", "transition", "touchstone", "plan", "rules", "board", "complex" } do
   for name, f in pairs(debug.getregistry()["libstub." .. type_name].__index) do
     if name ~= "close" then add(type_name .. ":" .. name, f) end
   end
@@ -95,7 +110,7 @@ end
 table.sort(names)
 
 local of_type = { stackup = { 1, 7 }, via = { 2, 8, 9 }, model = { 3, 10 }, rules = { 4 }, board = { 5 }, plan = { 6 },
-  complex = { 13 } }
+  complex = { 14, 17, 19, 20 }, transition = { 15 }, touchstone = { 16 } }
 local answered, raised = 0, 0
 for i = 1, calls do
   local name = names[(i - 1) % #names + 1]

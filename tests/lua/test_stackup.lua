@@ -44,6 +44,33 @@ t.close(all.loss_tangent, 0.004, 1e-9)
 t.close(all.tol_plus, 136e-6 + 3e-6, 1e-9)
 t.check(all.tol_rss_plus < all.tol_plus)
 
+-- Copper's roughness and its law; the same board with another in-plane ratio.
+do
+  local layers = fixture.layers()
+  layers[1].roughness, layers[1].roughness_law = 2e-6, "spheres"
+  local rough = assert(ls.stackup(layers))
+  t.equal(rough:layer(1).roughness, 2e-6)
+  t.equal(rough:layer(1).roughness_law, "spheres")
+  t.equal(rough:layer(3).roughness_law, "hammerstad")
+  t.raises("layers[1].roughness_law: 'flat' is not one of: hammerstad, spheres", ls.stackup, (function()
+    layers[1].roughness_law = "flat"
+    return layers
+  end)())
+  local other = assert(rough:with_in_plane_ratio(1.25))
+  t.check(other ~= rough and other:find("SIG1") == 5)
+  for i = 1, #other do
+    local one, two = rough:layer(i), other:layer(i)
+    t.equal(two.in_plane_ratio, 1.25)
+    one.in_plane_ratio = 1.25
+    for key, value in pairs(one) do t.equal(two[key], value, key) end
+  end
+  t.close(other:interval(0, 1.6e-3).dk_in_plane, 1.25 * 3.6, 1e-12)
+  t.fails("ratio = 2.5: must be >= 0.5 and <= 2", ls.E_ARGUMENT, rough:with_in_plane_ratio(2.5))
+  t.fails("ratio", ls.E_ARGUMENT, rough:with_in_plane_ratio(0 / 0))
+  t.raises("number expected, got string", rough.with_in_plane_ratio, rough, "1")
+  t.raises("unexpected argument", rough.with_in_plane_ratio, rough, 1, 2)
+end
+
 -- Not there, or outside: nil, message, code.
 t.fails("there is no layer 'SIG9'", ls.E_NONE, board:find("SIG9"))
 t.fails("there is no layer 'SIG9'", ls.E_NONE, board:layer("SIG9"))

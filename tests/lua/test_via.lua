@@ -82,6 +82,22 @@ t.equal(o.lid_distance, 2e-3)
 t.equal(o.hole_dk, 2.5)
 t.equal(o.antipads.GND2, 0.9e-3)
 
+o = assert(via { returns = { xy = { { 0, 1e-3 }, { 0, -1e-3 } }, spans = { { "GND1", 13 }, { 1, "BOTTOM" } } },
+  pair = { pitch = 1.1e-3, backdrills = {} }, edges = { left = 4e-3, right = 6e-3, front = 5e-3, back = 5e-3, shorted = true } }):options()
+same(o, assert(ls.via(board, o)):options(), "")
+t.equal(table.concat(o.returns.spans[1], " "), "GND1 PWR")
+t.equal(table.concat(o.returns.spans[2], " "), "TOP BOTTOM")
+t.equal(#o.pair.backdrills, 0)
+t.equal(o.edges.right, 6e-3)
+t.equal(o.edges.shorted, true)
+o = assert(via { edges = { left = 4e-3, right = 6e-3, front = 5e-3, back = 5e-3 },
+  pair = { pitch = 1.1e-3, backdrills = { { side = "bottom", depth = 0.5e-3, diameter = 0.5e-3 } } } }):options()
+same(o, assert(ls.via(board, o)):options(), "")
+t.equal(o.edges.shorted, false)
+t.equal(o.pair.backdrills[1].depth, 0.5e-3)
+t.equal(o.backdrills, nil)
+t.equal(assert(via { pair = { pitch = 1.1e-3 } }):options().pair.backdrills, nil)
+
 -- Contradictions and missing things of the geometry: nil, message, code, with Lua's numbers.
 t.fails("drill = 0 m: must be > 0", ls.E_ARGUMENT, via { drill = 0 })
 t.fails("drill = -0.00025 m", ls.E_ARGUMENT, via { drill = -0.25e-3 })
@@ -104,6 +120,36 @@ t.fails("returns.xy[2] = 0.001, 1e-05 m: touches return via 1", ls.E_GEOMETRY,
 t.fails("returns.xy[1] = 2, 0 m: must be >= -1 and <= 1 m", ls.E_ARGUMENT, via { returns = { xy = { { 2, 0 } } } })
 t.fails("nan, 0 m: must be >= -1", ls.E_ARGUMENT, via { returns = { xy = { { 0 / 0, 0 } } } })
 t.fails("return_count = 0", ls.E_ARGUMENT, via { returns = { xy = {} } })
+do
+  local function spans(list) return via { returns = { xy = { { 1e-3, 0 }, { 0, 1e-3 } }, spans = list } } end
+  t.fails("returns.spans[2]: there is no layer 'SIG9'", ls.E_NONE, spans { { "TOP", "BOTTOM" }, { "TOP", "SIG9" } })
+  t.fails("returns.spans[2]: layer 2 'R1': must be a copper layer", ls.E_ARGUMENT, spans { { "TOP", "BOTTOM" }, { "R1", "BOTTOM" } })
+  t.fails("returns.spans[1]: layer 3: must be below layer 7", ls.E_GEOMETRY, spans { { "GND2", "GND1" }, { "TOP", "BOTTOM" } })
+  t.raises("returns.spans: 1 items for 2 return vias", spans, { { "TOP", "BOTTOM" } })
+  t.raises("returns.spans[1]: { first, last } expected, got 1 items", spans, { { "TOP" }, { "TOP", "BOTTOM" } })
+  t.raises("returns.spans[2]: table expected, got string", spans, { { "TOP", "BOTTOM" }, "TOP" })
+  t.raises("returns.spans[1]: name or number of a layer expected, got boolean", spans, { { true, 3 }, { 1, 3 } })
+  t.raises("returns.spans: only together with xy", via, { returns = { count = 4, distance = 1e-3, spans = {} } })
+  local function edges(change)
+    local e = { left = 4e-3, right = 4e-3, front = 4e-3, back = 4e-3 }
+    for key, value in pairs(change) do e[key] = value end
+    return via { edges = e, returns = { xy = { { 1e-3, 0 } } }, pair = { pitch = 1.5e-3 } }
+  end
+  t.fails("edges.front", ls.E_ARGUMENT, edges { front = -1e-3 })
+  t.fails("edges.left", ls.E_ARGUMENT, edges { left = 0 })
+  t.fails("edges.back", ls.E_ARGUMENT, edges { back = 0 / 0 })
+  t.fails("returns.xy[1] = 0.001, 0 m: beyond the edges", ls.E_GEOMETRY, edges { right = 0.5e-3 })
+  t.fails("edges.right = 0.0013 m", ls.E_GEOMETRY, edges { right = 1.3e-3 })
+  t.raises("edges.back: number expected, got string", edges, { back = "1" })
+  t.raises("edges.shorted: boolean expected, got number", edges, { shorted = 1 })
+  t.raises("edges: missing key 'left'", via, { edges = {} })
+  t.raises("edges: unknown key 'top'; allowed: left, right, front, back, shorted", via, { edges = { top = 1 } })
+end
+t.fails("pair.backdrills[2]: side = 'bottom'", ls.E_ARGUMENT, via { pair = { pitch = 1.2e-3, backdrills = {
+  { side = "bottom", depth = 0.1e-3, diameter = 0.5e-3 }, { side = "bottom", depth = 0.1e-3, diameter = 0.5e-3 } } } })
+t.fails("pair.backdrills[1]: depth = 0.0001 m: cuts layer 1 'TOP'", ls.E_GEOMETRY, via { pair = { pitch = 1.2e-3, backdrills = {
+  { side = "top", depth = 0.1e-3, diameter = 0.5e-3 } } } })
+t.raises("pair.backdrills[1]: missing key 'side'", via, { pair = { pitch = 1.2e-3, backdrills = { {} } } })
 t.fails("outside_dk = 0.5: must be >= 1 and <= 1000", ls.E_ARGUMENT, via { outside_dk = 0.5 })
 t.fails("hole_dk = -1", ls.E_ARGUMENT, via { hole_dk = -1 })
 t.fails("lid_distance = -0.001 m: must be >= 0", ls.E_ARGUMENT, via { lid_distance = -1e-3 })
@@ -135,7 +181,7 @@ t.raises("connects[1]: integer expected, got 1.5", via, { connects = { 1.5 } })
 t.raises("pads.SIG1: number expected, got string", via, { pads = { SIG1 = "x" } })
 t.raises("pads: name or number of a layer expected, got boolean", via, { pads = { [true] = 1e-3 } })
 t.raises("returns: missing key 'count'", via, { returns = { distance = 1e-3 } })
-t.raises("returns: unknown key 'radius'; allowed: count, distance, drill, wall, xy", via, { returns = { radius = 1 } })
+t.raises("returns: unknown key 'radius'; allowed: count, distance, drill, wall, xy, spans", via, { returns = { radius = 1 } })
 t.raises("returns.wall: not together with", via, { returns = { wall = 1e-3, count = 4 } })
 t.raises("returns.wall: not together with xy", via, { returns = { wall = 1e-3, xy = {} } })
 t.raises("returns.xy: not together with count", via, { returns = { xy = { { 1e-3, 0 } }, count = 1 } })

@@ -200,7 +200,7 @@ static int port_map(lua_State *L)
     luaL_checktype(L, 2, LUA_TTABLE);
     count = (lua_Integer)lua_rawlen(L, 2);
     if (count < 1 || count > x.p)
-        return lslua_fail(L, lslua_refuse(&err, LSTUB_E_ARGUMENT, "map: %lld ports: must be 1 to %ld", (long long)count, (long)x.p), &err);
+        status = lslua_refuse(&err, LSTUB_E_ARGUMENT, "map: %lld ports: must be 1 to %ld", (long long)count, (long)x.p);
     at.list = "map";
     for (i = 0; i < count && status == LSTUB_OK; i++) {
         at.item = i + 1;

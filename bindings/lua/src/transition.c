@@ -104,7 +104,8 @@ int lslua_transition_new(lua_State *L)
     if (status < 0)
         return lslua_fail(L, status, &err);
     object = lslua_new(L, LSLUA_TRANSITION, 0, &allocator);
-    status = lstub_transition_create(lslua_stackup(L, 3, 0), &v->via, ports, count, sizeof *ports, &options, &allocator, &made, &err);
+    status = lstub_transition_create(lslua_stackup(L, 3, 0), &v->via, ports, count, sizeof *ports, &options, &allocator,
+                                     &made, &err);
     object->handle = made;
     if (status < 0)
         return lslua_fail(L, status, &err);
@@ -134,8 +135,9 @@ static int transition_reference(lua_State *L)
     n = lslua_whole(L, 2);
     ports = lstub_transition_ports(check_transition(L));
     if (n < 1 || n > ports)
-        return lslua_fail(L, lslua_refuse(&err, LSTUB_E_ARGUMENT, "port %lld: must be 1 to %ld", (long long)n, (long)ports), &err);
-    status = lstub_transition_reference(check_transition(L), (int32_t)(n - 1), &z_ref, &err);
+        status = lslua_refuse(&err, LSTUB_E_ARGUMENT, "port %lld: must be 1 to %ld", (long long)n, (long)ports);
+    else
+        status = lstub_transition_reference(check_transition(L), (int32_t)(n - 1), &z_ref, &err);
     if (status < 0)
         return lslua_fail(L, status, &err);
     lua_pushnumber(L, z_ref);
@@ -223,7 +225,8 @@ static int transition_notches(lua_State *L)
         notches = lslua_scratch(L, capacity, sizeof *notches);
         for (i = 0; i < capacity; i++)
             LSTUB_INIT(notches[i]);
-        status = lstub_transition_notches(check_transition(L), mode, to, from, f_max, notches, capacity, sizeof *notches, &count, &err);
+        status = lstub_transition_notches(check_transition(L), mode, to, from, f_max, notches, capacity,
+                                          sizeof *notches, &count, &err);
         if (count <= capacity)
             break;
         capacity = count;

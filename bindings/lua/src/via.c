@@ -64,7 +64,8 @@ void lslua_push_via(lua_State *L, const lstub_via *via, int stackup)
     to->connects = copy_array(L, index, VALUE_CONNECTS, via->connects, via->connect_count, sizeof *via->connects);
     to->backdrills = copy_array(L, index, VALUE_BACKDRILLS, via->backdrills, via->backdrill_count, sizeof *via->backdrills);
     to->return_xy = copy_array(L, index, VALUE_RETURNS, via->return_xy, (size_t)via->return_count, 2 * sizeof *via->return_xy);
-    to->return_spans = copy_array(L, index, VALUE_SPANS, via->return_spans, (size_t)via->return_count, 2 * sizeof *via->return_spans);
+    to->return_spans = copy_array(L, index, VALUE_SPANS, via->return_spans, (size_t)via->return_count,
+                                  2 * sizeof *via->return_spans);
     to->partner_backdrills = copy_array(L, index, VALUE_PARTNER, via->partner_backdrills, via->partner_backdrill_count,
                                         sizeof *via->partner_backdrills);
 }

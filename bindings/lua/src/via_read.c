@@ -111,7 +111,8 @@ static int32_t read_connects(const reading *r)
 }
 
 /* The back-drills of `at`, which messages call `list`; whether there are any to read. */
-static int read_backdrills(const reading *r, const lslua_at *at, const char *name, int value, const lstub_backdrill **drills, size_t *count)
+static int read_backdrills(const reading *r, const lslua_at *at, const char *name, int value,
+                          const lstub_backdrill **drills, size_t *count)
 {
     lua_State *L = at->L;
     lslua_at list;

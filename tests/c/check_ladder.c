@@ -174,15 +174,21 @@ START_TEST(where_it_is_valid)
     s.shape.end = 0.52e-3;
     ck_assert(lstub__ladder_valid(&s.shape));
     s.shape.outer = LSTUB__CAV_WALL;
-    s.shape.end = 0.32e-3;                              /* the space is 0.63 of it */
+    s.shape.end = 0.39e-3;                              /* the space is 0.51 of it */
     ck_assert(!lstub__ladder_valid(&s.shape));
-    s.shape.end = 0.35e-3;
+    s.shape.end = 0.41e-3;
+    ck_assert(lstub__ladder_valid(&s.shape));
+    s.shape.end = 0.45e-3;                              /* 16 um below a plane */
+    ck_assert(lstub__ladder_valid(&s.shape));
+    s.copper[2].pad = 0.25e-3;                          /* and its pad */
+    ck_assert(!lstub__ladder_valid(&s.shape));
+    s.shape.end = 0.455e-3;
     ck_assert(lstub__ladder_valid(&s.shape));
     s.shape.end = 0.0;
     for (int i = 2; i <= 4; i++)
-        s.copper[i].antipad = 0.0;                      /* 0.851 of 1.302 mm without plane */
+        s.copper[i].antipad = 0.0;                      /* 0.654 of it without plane */
     ck_assert(!lstub__ladder_valid(&s.shape));
-    s.copper[4].antipad = 0.4e-3;                       /* 0.634 */
+    s.copper[4].antipad = 0.4e-3;                       /* 0.487 */
     ck_assert(lstub__ladder_valid(&s.shape));
     s.shape.outer = LSTUB__CAV_RING;
     s.shape.returns.pitch = 1e-3, s.shape.returns.sign = -1.0;

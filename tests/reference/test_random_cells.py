@@ -56,7 +56,7 @@ def test_only_two_errors_are_stated():
 def test_where_it_is_valid(capsys):
     found = errors(0.026)
     report(capsys, "valid", found)
-    assert len(found) >= 0.7 * len(SEEDS)
+    assert len(found) >= 0.6 * len(SEEDS)
     assert {seed: e for seed, e in found.items() if not abs(e) <= 0.026} == {}
     assert sorted(abs(e) for e in found.values())[int(0.98 * len(found))] <= 0.013       # most are far better
 

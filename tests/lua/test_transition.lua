@@ -191,6 +191,14 @@ t.fails("ports[1]: impedance = 0 ohm", ls.E_ARGUMENT, make { { layer = "Z0.7" } 
 t.fails("ports[2]: distance = 0.0001 m", ls.E_ARGUMENT, make(ports { distance = 1e-4 }))
 t.fails("ports[2]: z_ref = 0.5 ohm", ls.E_ARGUMENT, make(ports { z_ref = 0.5 }))
 t.fails("ports[1]: kind = 'coax': ", ls.E_GEOMETRY, make { { kind = "coax", layer = "Z0", impedance = 50 } })
+t.fails("layer = 5: a coaxial port is computed on the layer the barrel begins on, 1", ls.E_UNSUPPORTED,
+  ls.transition(fixture.via(board), { ports = { { kind = "coax", layer = "SIG1" } } }))
+t.fails("a trace that leaves within a plane is not computed", ls.E_UNSUPPORTED, ls.transition(
+  fixture.via(board, { connects = { "TOP", "GND2" }, antipads = { GND2 = 0.8e-3 } }), { ports = { { layer = "GND2", impedance = 50 } } }))
+do -- the stub models leave unequal barrels to the transition
+  local via = pair { pair = { pitch = 1.2e-3, backdrills = { { side = "bottom", depth = 0.9e-3, diameter = 0.45e-3 } } } }
+  t.fails("pair.backdrills: a pair whose barrels end at different depths", ls.E_UNSUPPORTED, via:model())
+end
 t.fails("annuli = 1", ls.E_ARGUMENT, make(ports(), { annuli = 1 }))
 t.fails("ports[2]: trace: impedance, dk, loss_tangent and width must be 0 beside it", ls.E_GEOMETRY, make(ports { trace = {
   kind = "stripline", width = 1e-4, height_below = 1e-4, height_above = 1e-4, dielectric_below = { dk = 4 } } }))

@@ -14,6 +14,7 @@
 static const char *const translated[][2] = {
     {"side = 1:", "side = 'top':"}, {"side = 2:", "side = 'bottom':"}, {"LSTUB_PAIR_SHARED", "shared = true"},
     {"return_xy", "returns.xy"}, {"return_spans", "returns.spans"}, {"partner_backdrills", "pair.backdrills"},
+    {"partner_own = 1", "pair.backdrills"},
     {"LSTUB_PORT_COAX", "'coax'"}, {"mode = 1:", "mode = 'odd':"}, {"mode = 2:", "mode = 'even':"},
     {"LSTUB_NETWORK_G and _H", "'G' and 'H'"}, {"edges[0]", "edges.left"}, {"edges[1]", "edges.right"},
     {"edges[2]", "edges.front"}, {"edges[3]", "edges.back"},
@@ -33,7 +34,8 @@ static int ends_with(const char *text, size_t at, const char *tail)
 */
 static int is_counted(const char *text, size_t at, size_t digits)
 {
-    static const char *const before[] = {"layer ", "layer = ", "item ", "return via ", "port ", "pair ", "coupon ", "["};
+    static const char *const before[] = {"layer ", "layer = ", "item ", "return via ", "port ", "pair ", "coupon ",
+                                         "begins on, ", "["};
     size_t i;
     for (i = 0; i < sizeof before / sizeof before[0]; i++)
         if (ends_with(text, at, before[i]))

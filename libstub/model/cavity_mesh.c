@@ -305,6 +305,35 @@ static double near_antipad(const lstub__cav_barrel *barrel, double z, double *di
     return (above * db + below * da) / (da + db);
 }
 
+/* The pad wider than r0 whose faces are nearest to depth z, as seen from an opening of this width: its radius, and how near, 0 .. 1. */
+static double near_pad(const lstub__cav_barrel *barrel, const lstub__cav_cut *own, double z, double r0, double r1, double *radius)
+{
+    double depth = 0.0, most = 0.0, end = own->end > 0.0 ? own->end : INFINITY;
+    int k;
+
+    for (k = 0; k <= barrel->layers; k++) {
+        const lstub__cav_copper *c = &barrel->copper[k];
+        double top = depth, bottom = k == 0 && barrel->top == LSTUB__CAV_FED ? depth : depth + c->thickness, near;
+
+        depth = bottom + (k < barrel->layers ? barrel->layer[k].thickness : 0.0);
+        if (c->pad <= r0 || c->pad >= r1 || top < own->begin || bottom > end || (k == 0 && barrel->top == LSTUB__CAV_FED)) continue;
+        near = nearness(z < top ? top - z : z > bottom ? z - bottom : 0.0, c->pad - r0) * edge(c->pad - r0, r1 - r0) * edge(r1 - c->pad, r1 - r0);
+        if (near > most) { most = near; *radius = c->pad; }
+    }
+    return most;
+}
+
+/* Draws rims that grade from r0 to r1 towards those that grade to a pad's edge between them, too. */
+static void draw_to_pad(double r0, double pad, double r1, double near, int n, double inner, double outer, double *x)
+{
+    double y[LSTUB__CAV_POINTS];
+    int half = n / 2, i;
+
+    rims(r0, pad, half, inner, 1.0, y);
+    rims(pad, r1, n - half, 1.0, outer, y + half);
+    for (i = 0; i <= n; i++) x[i] += near * (y[i] - x[i]);
+}
+
 static double least_outer(const cav_slab *a, const cav_slab *b, double reach)
 {
     if (a != NULL && a->outer == LSTUB__CAV_WALL && a->r_out < reach) reach = a->r_out;
@@ -331,7 +360,7 @@ static void face_between(const lstub__cav_barrel *barrel, const lstub__cav_cut *
     const part *a = m->a, *b = m->b;
     const cav_slab *upper = a != NULL ? &a->slab : NULL, *lower = b != NULL ? &b->slab : NULL;
     double ra = upper != NULL ? upper->r_in : 0.0, rb = lower != NULL ? lower->r_in : 0.0, r0 = ra > rb ? ra : rb, r1, reach, mid;
-    double middle, gap, step, near = 0.0;
+    double middle, gap, step, near = 0.0, by_pad, pad = 0.0;
     int plane = (a != NULL && a->antipad > 0.0) || (b != NULL && b->antipad > 0.0) || m->thin_antipad > 0.0;
 
     if (m->thin_pad > r0) r0 = m->thin_pad;
@@ -369,6 +398,8 @@ static void face_between(const lstub__cav_barrel *barrel, const lstub__cav_cut *
     if (step == 0.0 && m->tap < 0 && !(a != NULL && a->keep) && m->thin_pad == 0.0 && !(b != NULL && b->keep)) refine = 1;  /* only the dielectric changes */
     near = nearness(near, mid - r0);
     rims(r0, mid, cells * refine, edge(step, mid - r0), near, face->x);
+    by_pad = near_pad(barrel, own, m->z, r0, mid, &pad);
+    if (by_pad > 0.0) draw_to_pad(r0, pad, mid, by_pad, cells * refine, edge(step, mid - r0), near, face->x);
     rims(mid, r1, OUTSIDE * refine, 0.0, 0.0, face->x + cells * refine);
     set_face(face, cells + OUTSIDE, refine, cells);
     face->plain = near;

@@ -626,8 +626,8 @@ LSTUB_API int32_t lstub_via_stubs(const lstub_stackup *stackup, const lstub_via 
 #define LSTUB_FIDELITY_BULK    1   /* quarter wave in the laminate's through-plane Dk, coaxial impedance */
 #define LSTUB_FIDELITY_LOADED  2   /* uniform line: L' from the returns, C' from each cavity's via-plate
                                       capacitance, planes and pads; capacitance at the open end        */
-#define LSTUB_FIDELITY_LADDER  3   /* for sweeps: every cavity a line section with the radial wave of its
-                                      plates for inductance and a fitted capacitance                   */
+#define LSTUB_FIDELITY_LADDER  3   /* for sweeps: the cavity model with one static field shape an opening, a chain of
+                                      scalars; where it says it is valid within 2.6 percent              */
 #define LSTUB_FIDELITY_CAVITY  4   /* radial modes of every plate pair and copper layer, matched at every
                                       opening: as full-wave as a round barrel gets                     */
 #define LSTUB_ALL_STUBS      (-1)  /* in place of a stub's number: all of them in parallel, the path

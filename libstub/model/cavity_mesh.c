@@ -341,6 +341,19 @@ static double least_outer(const cav_slab *a, const cav_slab *b, double reach)
     return reach;
 }
 
+/* How far waves about the axis hold: to the nearest return via or the partner. */
+static double clear_radius(const lstub__cav_barrel *barrel)
+{
+    const lstub__cav_returns *r = &barrel->returns;
+    double least = INFINITY;
+    int i;
+
+    if (barrel->outer != LSTUB__CAV_RING) return least;
+    for (i = 0; i < r->vias; i++) least = fmin(least, hypot(r->via[i].x, r->via[i].y) - r->via[i].radius);
+    if (r->pitch > 0.0) least = fmin(least, r->pitch - barrel->radius);
+    return least;
+}
+
 typedef struct seam {               /* two slabs meet, or one and a half-space (null) */
     const part *a, *b;              /* above, below */
     double z, thin_antipad, thin_pad;
@@ -392,6 +405,7 @@ static void face_between(const lstub__cav_barrel *barrel, const lstub__cav_cut *
     reach = r0 + REACH * gap;
     if (reach < 2.0 * mid) reach = 2.0 * mid;
     if (reach < 2.0 * r0) reach = 2.0 * r0;
+    reach = fmin(reach, fmax(clear_radius(barrel), 1.2 * r0));
     r1 = least_outer(upper, lower, reach);
     if (mid < r0 + 0.25 * (r1 - r0)) mid = r0 + 0.25 * (r1 - r0);
     if (mid > r0 + 0.75 * (r1 - r0)) mid = r0 + 0.75 * (r1 - r0);

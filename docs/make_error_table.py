@@ -7,6 +7,7 @@ FOLDER has cases.json, results.json, capacitance.json and curves/; without it: t
 those of tests/data/fdtd3d. Tables go between lines
 `<!-- table NAME: ... -->` and `<!-- end -->`. --check writes nothing and fails where a table is stale. Needs the Python package.
 """
+import bisect
 import csv
 import json
 import math
@@ -23,6 +24,7 @@ sys.path.insert(0, str(ROOT / "tests" / "reference"))
 sys.dont_write_bytecode = True
 import transitions  # noqa: E402  three-dimensional ones
 from cells import via_of  # noqa: E402  a cell of the reference as a via of the library
+from evaluate_transitions import Run  # noqa: E402  a transition of the reference as a network of the library
 
 FIDELITIES = {"bulk": "quarter wave in the laminate's Dk", "loaded": "loaded barrel, a uniform line",
               "ladder": "ladder of cavities, for sweeps", "cavity": "radial modes in every cavity (the default)"}
@@ -119,15 +121,68 @@ def capacitance_table(entries):
             f"{100 * median(errors):+.1f} % | {100 * max(errors):+.1f} % |"]
 
 
-def transition_table():
-    """Three-dimensional transitions, notch by notch, at the default fidelity."""
-    text = ["| transition | | first notch, GHz | `cavity`, % | depth, dB | full wave, dB |", "|---|---|---|---|---|---|"]
+def curves_of(path):
+    """Frequencies of a reference curve, and its columns NAMEre, NAMEim as complex numbers by name."""
+    rows = list(csv.DictReader(open(path, encoding="ascii", newline="")))
+    names = [key[:-2] for key in rows[0] if key.endswith("re")]
+    return [float(row["f_Hz"]) for row in rows], {n: [complex(float(row[n + "re"]), float(row[n + "im"])) for row in rows] for n in names}
+
+
+def at(f, grid, values):
+    """Linear between the points of a rising grid; None outside."""
+    if not grid[0] <= f <= grid[-1]:
+        return None
+    i = min(bisect.bisect_right(grid, f), len(grid) - 1)
+    return values[i - 1] + (values[i] - values[i - 1]) * (f - grid[i - 1]) / (grid[i] - grid[i - 1])
+
+
+def curve_errors(run, ref):
+    """Largest differences of |S21| (dB) and of S11 up to 0.7 of the first notch, to 40 GHz without one. The reference's frequencies
+    are scaled by what the rims of its grid shift the notch."""
+    f, curves = curves_of(transitions.DATA / "curves" / f"{run.case['id']}.csv")
+    scale, top = (ref["f1_Hz"] / ref["f1_raw_Hz"], 0.7 * ref["f1_Hz"]) if "f1_Hz" in ref else (1.0, 40e9)
+    through, back = 0.0, 0.0
+    for x, s21, s11 in zip(f, curves["S21"], curves["S11"]):
+        s = at(x * scale, run.f, [matrix[1][0] for matrix in run.s]) if x * scale <= top else None
+        if s is not None:
+            through = max(through, abs(20 * math.log10(abs(s) / abs(s21))))
+            back = max(back, abs(at(x * scale, run.f, [matrix[0][0] for matrix in run.s]) - s11))
+    return through, back
+
+
+def transition_table(text, kept):
+    """Three-dimensional transitions as networks, and the first notch of the stub alone."""
     for case, ref in transitions.cases():
-        if "f1_Hz" not in ref:
+        if case["trace"] is None or not kept(ref):
             continue
-        notch = transitions.via_of(case).model().notches(60e9)[0]
-        text.append(f"| {case['id']} | {case['note']} | {ref['f1_Hz'] / 1e9:.3f} | {percent(notch.f / ref['f1_Hz'] - 1, 2)} | "
+        run = Run(case)
+        through, back = curve_errors(run, ref)
+        row = f"| {case['id']} | {case['note']} |"
+        if "f1_Hz" in ref:
+            alone, notch = transitions.via_of(case).model().notches(60e9)[0], run.notches[0]
+            row += (f" {ref['f1_Hz'] / 1e9:.3f} | {percent(alone.f / ref['f1_Hz'] - 1, 2)} | {percent(notch.f / ref['f1_Hz'] - 1, 2)} | "
                     f"{notch.depth_db:.1f} | {ref['f1_depth_dB']:.1f} |")
+        text.append(f"{row} {through:.2f} | {back:.3f} |")
+    return text
+
+
+def unequal_table():
+    """The pair of unequal barrels: what the wave in one port becomes, and mode conversion."""
+    case = json.loads((transitions.DATA / "unequal_pair" / "case.json").read_text(encoding="utf-8"))
+    f, curves = curves_of(transitions.DATA / "unequal_pair" / "curves.csv")
+    run = Run(case)
+    kinds = {"reflection": ("S1A_1A", "S1B_1B"), "transmission": ("S2A_1A", "S2B_1B"),
+             "to the other barrel": ("S1B_1A", "S1A_1B", "S2B_1A", "S2A_1B")}
+    place, text = {name: (i, j) for i, j, name in run.names()}, ["| unequal pair, to 40 GHz | largest difference |", "|---|---|"]
+    for kind, names in kinds.items():
+        worst = max(abs(run.s[k][place[n][0]][place[n][1]] - curves[n][k]) for n in names for k, x in enumerate(f) if x <= 40e9)
+        text.append(f"| {kind}: {', '.join(n.replace('_', ',') for n in names)} | {worst:.3f} |")
+    mixed = ls.to_mixed(run.s, [(0, 2), (1, 3)], z=run.transition.reference).s
+    text += ["", "| common wave out of the traces for a differential one in, Scd21 | full wave, dB | difference, dB |", "|---|---|---|"]
+    for x in (5e9, 10e9, 20e9, 30e9, 35e9):
+        k = f.index(x)
+        ref = 20 * math.log10(abs(0.5 * sum(sign * curves[n][k] for n, sign in (("S2A_1A", 1), ("S2A_1B", -1), ("S2B_1A", 1), ("S2B_1B", -1)))))
+        text.append(f"| {x / 1e9:.0f} GHz | {ref:.1f} | {20 * math.log10(abs(mixed[k][3][0])) - ref:+.2f} |")
     return text
 
 
@@ -135,8 +190,12 @@ def make_tables(folder):
     cases = json.loads((folder / "cases.json").read_text())["cases"]
     results = {r["id"]: r for r in json.loads((folder / "results.json").read_text())["results"]}
     capacitances = json.loads((folder / "capacitance.json").read_text())["results"]
-    return {**notch_tables(cases, results), "loss": loss_table(cases, results, folder), "transitions": transition_table(),
-            "capacitance": capacitance_table(capacitances)}
+    return {**notch_tables(cases, results), "loss": loss_table(cases, results, folder),
+            "capacitance": capacitance_table(capacitances), "unequal": unequal_table(),
+            "transitions": transition_table(
+                ["| transition | | first notch, GHz | stub alone, % | whole, % | depth, dB | full wave, dB | \\|S21\\|, dB | S11 |",
+                 "|---|---|---|---|---|---|---|---|---|"], lambda ref: "f1_Hz" in ref),
+            "stubless": transition_table(["| without a notch | | \\|S21\\|, dB | S11 |", "|---|---|---|---|"], lambda ref: "f1_Hz" not in ref)}
 
 
 def fill(text, tables, found):

@@ -1,11 +1,12 @@
 #!/usr/bin/env python3
-"""Draws docs/figures/*.png: what the cavity model is made of, and the fidelities against full-wave data.
+"""Draws docs/figures/*.png: what the cavity model is made of, the fidelities and transitions against full-wave data.
 
     make_figures.py [FOLDER]
 
 FOLDER: where the pictures go, else docs/figures. Needs the Python package, NumPy, SciPy and Matplotlib.
 """
 import csv
+import json
 import math
 import sys
 import warnings
@@ -23,9 +24,12 @@ import matplotlib.pyplot as plt  # noqa: E402
 from matplotlib.patches import Rectangle  # noqa: E402
 
 ROOT = Path(__file__).resolve().parent.parent
-sys.path.insert(0, str(ROOT / "tests" / "reference"))
+sys.path[:0] = [str(ROOT / "tests" / "reference"), str(ROOT / "docs")]
 sys.dont_write_bytecode = True
+import transitions  # noqa: E402
 from cells import DATA, cases, via_of  # noqa: E402
+from evaluate_transitions import Run  # noqa: E402
+from make_error_table import curves_of  # noqa: E402
 
 FIDELITIES = {"bulk": "tab:gray", "loaded": "tab:orange", "ladder": "tab:green", "cavity": "tab:blue"}
 COPPER, BARREL, LAMINATE = "#c98b4a", "#a86a2c", "#eef3ea"
@@ -140,6 +144,86 @@ def errors_picture(folder):
     plt.close(figure)
 
 
+def transition_picture(folder):
+    """Cross-section of a via that leaves on two inner layers, in mm; copper and pads drawn thicker than they are."""
+    figure, axis = plt.subplots(figsize=(9.2, 4.6), layout="constrained")
+    a, pad, antipad, reach, ring, sheet = 0.125, 0.225, 0.375, 2.1, 1.15, 0.035
+    planes, traces, bottom = [0.2, 0.6, 1.0, 1.4], [0.4, 1.2], 1.6
+    axis.add_patch(Rectangle((-reach, 0), 2 * reach, bottom + sheet, color=LAMINATE))
+    vias = [-ring, ring]
+    for x in (0.0, *vias):
+        axis.add_patch(Rectangle((x - a, 0), 2 * a, bottom + sheet, color=BARREL, zorder=3))
+    for top in planes:
+        for x0, x1 in ((-reach, -antipad), (antipad, reach)):
+            axis.add_patch(Rectangle((x0, top), x1 - x0, sheet, facecolor=COPPER, edgecolor=BARREL, linewidth=0.5, zorder=2))
+    for z in (0.0, *traces, bottom):
+        axis.add_patch(Rectangle((-pad, z), 2 * pad, sheet, color=BARREL, zorder=3))
+    for z, way in zip(traces, (-1, 1)):
+        x0 = way * pad if way > 0 else -0.95
+        axis.add_patch(Rectangle((x0, z), 0.95 - pad, sheet, color="tab:blue", zorder=4))
+        end, middle = way * 0.95, z + sheet / 2
+        axis.plot([end] * 2, [middle - 0.09, middle + 0.09], "k--", linewidth=0.9, zorder=5)
+        axis.annotate("", (way * pad, middle + 0.075), (end, middle + 0.075), arrowprops={"arrowstyle": "<->", "linewidth": 0.7}, zorder=5)
+        axis.text(way * 0.72, middle + 0.085, "line", fontsize=8, ha="center", va="top")
+        axis.plot([way * pad, way * antipad], [middle - 0.045] * 2, color="tab:red", linewidth=2, zorder=5)
+    axis.text(-0.98, traces[0] - 0.02, "port 1", fontsize=9, ha="right", va="center", weight="bold", zorder=5)
+    axis.text(0.98, traces[1] - 0.02, "port 2", fontsize=9, ha="left", va="center", weight="bold", zorder=5,
+              bbox={"facecolor": LAMINATE, "edgecolor": "none", "pad": 0.5})
+    axis.annotate("launch: pad's rim\nto antipads' rims", (0.32, traces[1] - 0.05), (0.42, 0.955), fontsize=8, color="tab:red",
+                  arrowprops={"arrowstyle": "->", "color": "tab:red", "linewidth": 0.8}, zorder=6)
+    for z0, z1, text in ((0, traces[0], "stub"), (traces[0] + sheet, traces[1], "path"), (traces[1] + sheet, bottom + sheet, "stub")):
+        axis.annotate("", (-0.52, z0), (-0.52, z1), arrowprops={"arrowstyle": "<->", "linewidth": 0.9, "shrinkA": 0, "shrinkB": 0}, zorder=6)
+        axis.text(-0.56, 0.5 * (z0 + z1), text, fontsize=9, ha="right", va="center", zorder=6,
+                  bbox={"facecolor": LAMINATE, "edgecolor": "none", "pad": 0.5})
+    for z0, z1, text in ((planes[0] + sheet, traces[0], "$h_u$"), (traces[0] + sheet, planes[1], "$h_l$")):
+        axis.annotate("", (0.85, z0), (0.85, z1), arrowprops={"arrowstyle": "<->", "linewidth": 0.8, "shrinkA": 0, "shrinkB": 0}, zorder=6)
+        axis.text(0.88, 0.5 * (z0 + z1), text, fontsize=9, va="center", zorder=6)
+    axis.plot([-0.84, 0.84], [traces[0] + sheet / 2] * 2, color="tab:blue", linewidth=0.8, linestyle=":", zorder=1)
+    axis.text(0.5 * (a + ring - a), 0.715, "mode 0: there and back, $\\Gamma$", fontsize=8, ha="center", va="bottom", color="tab:green", zorder=6)
+    axis.annotate("", (ring - a, 0.74), (a, 0.74), arrowprops={"arrowstyle": "<->", "linewidth": 0.9, "color": "tab:green"}, zorder=6)
+    axis.text(ring, -0.04, "return via", fontsize=8, ha="center", va="bottom")
+    axis.text(-ring, -0.04, "return via", fontsize=8, ha="center", va="bottom")
+    axis.text(0, -0.04, "barrel", fontsize=8, ha="center", va="bottom")
+    axis.set(xlim=(-reach, reach), ylim=(bottom + 0.12, -0.16), xlabel="mm", ylabel="depth, mm")
+    axis.set_aspect("equal")
+    figure.savefig(folder / "transition.png", dpi=130)
+    plt.close(figure)
+
+
+def decibels(values):
+    return 20 * np.log10(np.abs(values))
+
+
+def transitions_picture(folder):
+    known = {case["id"]: (case, result) for case, result in transitions.cases()}
+    figure, (left, middle, right) = plt.subplots(1, 3, figsize=(9.2, 3.5), layout="constrained")
+    grid = np.linspace(1e9, 50e9, 1500)
+    for name, colour, text in (("s_k4", "tab:blue", "stub of 1.2 mm"), ("n_k4", "tab:green", "no stub")):
+        case, result = known[name]
+        s = np.array(transitions.transition_of(case).s(grid))
+        f, curves = curves_of(transitions.DATA / "curves" / f"{name}.csv")
+        f = np.array(f) * (result["f1_Hz"] / result["f1_raw_Hz"] if "f1_Hz" in result else 1.0)
+        for axis, (i, j) in ((left, (1, 0)), (middle, (0, 0))):
+            axis.plot(grid / 1e9, decibels(s[:, i, j]), color=colour, linewidth=1.2, label=text)
+            axis.plot(f[::2] / 1e9, decibels(curves[f"S{i + 1}1"])[::2], ".", color="k", markersize=2.4, label="3-D" if name == "n_k4" else None)
+    case = Run(json.loads((transitions.DATA / "unequal_pair" / "case.json").read_text(encoding="utf-8"))).transition
+    mixed = ls.to_mixed(np.array(case.s(grid)), [(0, 2), (1, 3)], z=case.reference).s
+    f, curves = curves_of(transitions.DATA / "unequal_pair" / "curves.csv")
+    c = {name: np.array(values) for name, values in curves.items()}
+    for sign, row, colour, text in ((1, 3, "tab:red", "Scd21"), (-1, 1, "tab:blue", "Sdd21")):
+        wanted = 0.5 * (c["S2A_1A"] - c["S2A_1B"] + sign * (c["S2B_1A"] - c["S2B_1B"]))
+        right.plot(grid / 1e9, decibels(mixed[:, row, 0]), color=colour, linewidth=1.2, label=text)
+        right.plot(np.array(f)[::2] / 1e9, decibels(wanted)[::2], "k.", markersize=2.4)
+    for axis, title, low in ((left, "S21, single barrel", -35), (middle, "S11, single barrel", -40), (right, "pair, stubs of 1.0 and 0.5 mm", -40)):
+        axis.set(title=title, xlabel="frequency, GHz", ylim=(low, 1), xlim=(0, 50))
+        axis.title.set_fontsize(9)
+        axis.grid(alpha=0.3)
+        axis.legend(fontsize=8, loc="lower right")
+    left.set_ylabel("dB")
+    figure.savefig(folder / "transitions.png", dpi=130)
+    plt.close(figure)
+
+
 def main(arguments):
     folder = Path(arguments[0]) if arguments else ROOT / "docs" / "figures"
     folder.mkdir(parents=True, exist_ok=True)
@@ -147,6 +231,8 @@ def main(arguments):
     model_picture(folder)
     curves_picture(folder)
     errors_picture(folder)
+    transition_picture(folder)
+    transitions_picture(folder)
 
 
 if __name__ == "__main__":

@@ -83,7 +83,8 @@ static int32_t take_port(lstub__way *w, const lstub__via *via, const lstub_port 
     if (p->kind != LSTUB_PORT_TRACE && p->kind != LSTUB_PORT_COAX)
         return lstub__fail(err, LSTUB_E_ARGUMENT, "kind", -1, "kind = %ld: must be one of LSTUB_PORT_...", (long)p->kind);
     if (p->layer < via->in.start_layer || p->layer > via->in.end_layer || !lstub__via_connects(via, p->layer))
-        return lstub__fail(err, LSTUB_E_GEOMETRY, "layer", -1, "layer = %ld: is not one that the via connects", (long)p->layer);
+        return lstub__fail(err, LSTUB_E_GEOMETRY, "layer", -1, "layer = %ld '%s': is not one that the via connects", (long)p->layer,
+                           p->layer >= 0 && p->layer < via->stackup->count ? via->stackup->layer[p->layer].name : "");
     w->kind = p->kind;
     w->z_ref = p->z_ref == 0.0 ? 50.0 : p->z_ref;
     if ((status = lstub__check(w->z_ref, &LINE_IMPEDANCE, "z_ref", err)) < 0)
@@ -93,8 +94,9 @@ static int32_t take_port(lstub__way *w, const lstub__via *via, const lstub_port 
         if (p->trace != NULL || p->impedance != 0.0 || p->loss_tangent != 0.0 || p->width != 0.0 || p->distance != 0.0)
             return lstub__fail(err, LSTUB_E_GEOMETRY, "kind", -1, "kind = LSTUB_PORT_COAX: trace, impedance, loss_tangent, width and distance must be 0");
         if (p->layer != via->in.start_layer)
-            return lstub__fail(err, LSTUB_E_UNSUPPORTED, "layer", -1, "layer = %ld: a coaxial port is computed on the layer the barrel begins on, %ld",
-                               (long)p->layer, (long)via->in.start_layer);
+            return lstub__fail(err, LSTUB_E_UNSUPPORTED, "layer", -1, "layer = %ld '%s': a coaxial port is computed on the layer the barrel begins on, "
+                               "%ld '%s'", (long)p->layer, via->stackup->layer[p->layer].name, (long)via->in.start_layer,
+                               via->stackup->layer[via->in.start_layer].name);
         if (lstub__via_antipad(via, p->layer) == 0.0)
             return lstub__fail(err, LSTUB_E_GEOMETRY, "layer", -1, "layer %ld '%s': a coaxial port needs a plane with an antipad there", (long)p->layer,
                                via->stackup->layer[p->layer].name);
@@ -126,7 +128,8 @@ static int32_t take_ports(lstub_transition *t, const lstub__via *via, const lstu
             status = take_port(&t->way[i], via, &p, &t->remarks, err);
         for (size_t k = 0; k < i && status == LSTUB_OK; k++)
             if (layer[k] == p.layer)
-                status = lstub__fail(err, LSTUB_E_GEOMETRY, "layer", -1, "layer = %ld: has port %lu already", (long)p.layer, (unsigned long)k);
+                status = lstub__fail(err, LSTUB_E_GEOMETRY, "layer", -1, "layer = %ld '%s': has port %lu already", (long)p.layer,
+                                     via->stackup->layer[p.layer].name, (unsigned long)k);
         if (status < 0) {
             lstub__fail_where(err, (int64_t)i, "ports[%lu]", (unsigned long)i);
             return status;

@@ -7,6 +7,7 @@
 
 #define RISE_OVER_SIGMA 1.6832424671458286     /* 20 to 80 percent of an integrated Gaussian: 2 sqrt(2) erfinv(0.6) */
 #define BETA            10.0                   /* of the Kaiser window */
+#define ROUNDING        1e-12                  /* of a step response that should reach 1 */
 #define TIMES           64                     /* impulse responses are summed so many times at once */
 
 static int32_t port_of(int32_t port, int32_t p, const char *field, lstub_error *err)
@@ -92,7 +93,7 @@ int32_t lstub_tdr(const double *freq, const double *s, size_t n, int32_t p, int3
         || (result = lstub_step_response(freq, s, n, p, port, port, rise_time, t, m, impedance, err)) < 0)
         return result;
     for (size_t i = 0; i < m; i++)
-        impedance[i] = impedance[i] < 1.0 ? z_ref * (1.0 + impedance[i]) / (1.0 - impedance[i]) : HUGE_VAL;
+        impedance[i] = impedance[i] < 1.0 - ROUNDING ? z_ref * (1.0 + impedance[i]) / (1.0 - impedance[i]) : HUGE_VAL;
     return result;
 }
 

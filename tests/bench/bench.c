@@ -1,50 +1,57 @@
 /*
-** What the library does in the benchmark; run.sh calls it and bench.py does the same in NumPy.
+** What the library does in the benchmark; run.sh calls it and bench.py measures the references.
 **
 **     bench plan   VIAS REPEATS TABLE    plans an invented board of so many vias; TABLE gets inputs and results
+**     bench cavityplan VIAS REPEATS TABLE  the same with the cavity model
 **     bench notch  VIAS REPEATS          first notch of each, no two alike
 **     bench zin    POINTS REPEATS        input impedance of one stub at so many frequencies
-**     bench compile VIAS REPEATS         compiles a via of ten cavities with the cavity model so many times
-**     bench cavity POINTS REPEATS        its input impedance at so many frequencies
-**     bench first  VIAS REPEATS          its first notch from scratch, so many times
-**     bench ladder POINTS REPEATS        input impedance by the ladder
-**     bench cavityplan VIAS REPEATS TABLE  as plan, with the cavity model
 **     bench read   BOARD REPEATS         reads a board file
 **     bench expat  BOARD REPEATS         the same file through zlib and expat alone, no handlers
 **
-** Prints the seconds of each repeat, one a line.
+** One via of ten cavities, AROUND it wall, ring, given4 or given2 (bench_cavity.c):
+**     bench compile VIAS REPEATS         compiles it so many times with the cavity model
+**     bench bytes  1 1                   memory of the compiled model
+**     bench cavity POINTS REPEATS AROUND its input impedance at so many frequencies
+**     bench ladder POINTS REPEATS        the same by the ladder
+**     bench first  VIAS REPEATS AROUND   its first notch from scratch, so many times
+**     bench second VIAS REPEATS WHAT     first notches of so many that differ from the one before in WHAT: antipad or depth
+**
+** Networks (bench_network.c):
+**     bench transition POINTS REPEATS VIA:WAY  S-parameters of a whole via of ten cavities
+**     bench touchstone FILE REPEATS      reads a Touchstone file
+**
+** Prints the seconds of each repeat, one a line; what bench.py checks goes to the error output.
 */
 #define _POSIX_C_SOURCE 199309L
-#include <libstub.h>
+#include "bench.h"
+
 #include <libstub_ipc2581.h>
 
 #include <expat.h>
-#include <stdio.h>
-#include <stdlib.h>
 #include <string.h>
 #include <time.h>
 #include <zlib.h>
 
 #define COPPER 20
 
-static double now(void)
+double bench_now(void)
 {
     struct timespec t;
     clock_gettime(CLOCK_MONOTONIC, &t);
     return (double)t.tv_sec + 1e-9 * (double)t.tv_nsec;
 }
 
-static void stop(const char *what)
+void bench_stop(const char *what)
 {
     fprintf(stderr, "bench: %s\n", what);
     exit(1);
 }
 
-static void *room(size_t count, size_t bytes)
+void *bench_room(size_t count, size_t bytes)
 {
     void *memory = calloc(count, bytes);
     if (memory == NULL)
-        stop("out of memory");
+        bench_stop("out of memory");
     return memory;
 }
 
@@ -73,7 +80,7 @@ static lstub_stackup *make_stackup(void)
         layers[i].dielectric = copper ? NULL : &laminate;
     }
     if (lstub_stackup_create(layers, 2 * COPPER - 1, sizeof layers[0], NULL, &stackup, &err) != LSTUB_OK)
-        stop(err.message);
+        bench_stop(err.message);
     return stackup;
 }
 
@@ -92,9 +99,9 @@ static void make_board(board *b, size_t vias, int alike)
 {
     static const double rate[6] = {10.3125e9, 25.78125e9, 26.5625e9, 32e9, 53.125e9, 106.25e9};
     uint32_t state = 1;
-    b->via = room(vias, sizeof *b->via);
-    b->job = room(vias, sizeof *b->job);
-    b->connects = room(vias, sizeof *b->connects);
+    b->via = bench_room(vias, sizeof *b->via);
+    b->job = bench_room(vias, sizeof *b->job);
+    b->connects = bench_room(vias, sizeof *b->connects);
     LSTUB_INIT(b->criteria);
     b->criteria.notch_over_nyquist = 2.0;
     b->criteria.added_loss_db = 0.3;
@@ -125,7 +132,7 @@ static void write_table(const char *path, const board *b, const lstub_plan *plan
 {
     FILE *file = fopen(path, "w");
     if (file == NULL)
-        stop("cannot write the table");
+        bench_stop("cannot write the table");
     for (size_t i = 0; i < vias; i++) {
         lstub_decision d;
         LSTUB_INIT(d);
@@ -135,7 +142,7 @@ static void write_table(const char *path, const board *b, const lstub_plan *plan
                 d.bottom.depth_most);
     }
     if (fclose(file) != 0)
-        stop("cannot write the table");
+        bench_stop("cannot write the table");
 }
 
 static void run_plan(size_t vias, int repeats, const char *table, int32_t fidelity)
@@ -157,10 +164,10 @@ static void run_plan(size_t vias, int repeats, const char *table, int32_t fideli
     make_board(&b, vias, 1);
     for (int i = 0; i < repeats; i++) {
         lstub_plan *plan;
-        double start = now();
+        double start = bench_now();
         if (lstub_plan_create(stackup, b.job, vias, sizeof b.job[0], &fab, &options, NULL, &plan, &err) < 0)
-            stop(err.message);
-        printf("%.9f\n", now() - start);
+            bench_stop(err.message);
+        printf("%.9f\n", bench_now() - start);
         if (i == 0)
             write_table(table, &b, plan, vias);
         lstub_plan_destroy(plan);
@@ -171,17 +178,17 @@ static void run_plan(size_t vias, int repeats, const char *table, int32_t fideli
 static void run_notch(size_t vias, int repeats)
 {
     lstub_stackup *stackup = make_stackup();
-    double *f1 = room(vias, sizeof *f1);
+    double *f1 = bench_room(vias, sizeof *f1);
     lstub_model_options options;
     board b;
     LSTUB_INIT(options);
     options.fidelity = LSTUB_FIDELITY_LOADED;
     make_board(&b, vias, 0);
     for (int i = 0; i < repeats; i++) {
-        double start = now();
+        double start = bench_now();
         if (lstub_first_notch_batch(stackup, b.via, vias, sizeof b.via[0], &options, f1, NULL, NULL, NULL, NULL) < 0)
-            stop("first_notch_batch failed");
-        printf("%.9f\n", now() - start);
+            bench_stop("first_notch_batch failed");
+        printf("%.9f\n", bench_now() - start);
     }
     lstub_stackup_destroy(stackup);
 }
@@ -189,7 +196,7 @@ static void run_notch(size_t vias, int repeats)
 static void run_zin(size_t points, int repeats)
 {
     lstub_stackup *stackup = make_stackup();
-    double *freq = room(points, sizeof *freq), *zin = room(2 * points, sizeof *zin);
+    double *freq = bench_room(points, sizeof *freq), *zin = bench_room(2 * points, sizeof *zin);
     lstub_model *model;
     lstub_model_options options;
     board b;
@@ -198,114 +205,17 @@ static void run_zin(size_t points, int repeats)
     make_board(&b, 1, 1);
     b.connects[0][1] = 4;
     if (lstub_model_create(stackup, b.via, &options, NULL, &model, NULL) != LSTUB_OK)
-        stop("model_create failed");
+        bench_stop("model_create failed");
     for (size_t i = 0; i < points; i++)
         freq[i] = 1e8 + 60e9 * (double)i / (double)points;
     for (int i = 0; i < repeats; i++) {
-        double start = now();
+        double start = bench_now();
         if (lstub_model_zin(model, 0, freq, points, zin, NULL, NULL) < 0)
-            stop("model_zin failed");
-        printf("%.9f\n", now() - start);
+            bench_stop("model_zin failed");
+        printf("%.9f\n", bench_now() - start);
     }
     lstub_model_destroy(model);
     lstub_stackup_destroy(stackup);
-}
-
-/* Ten cavities of 0.2 mm between planes, closed wall, bare end: cavity_reference.py has the same. */
-typedef struct ten_cavities {
-    lstub_stackup *stackup;
-    lstub_via via;
-    lstub_on_layer opening;
-    int32_t top;
-    lstub_model_options options;
-} ten_cavities;
-
-static void make_ten(ten_cavities *t, int32_t fidelity)
-{
-    lstub_layer layers[21];
-    lstub_dielectric laminate;
-    char names[21][8];
-    LSTUB_INIT(laminate);
-    laminate.dk = 3.6;
-    laminate.loss_tangent = 0.005;
-    laminate.f_ref = 20e9;
-    for (int i = 0; i < 21; i++) {
-        LSTUB_INIT(layers[i]);
-        snprintf(names[i], sizeof names[i], "%c%d", i % 2 ? 'D' : 'L', i / 2);
-        layers[i].name = names[i];
-        layers[i].kind = i % 2 ? LSTUB_LAYER_DIELECTRIC : LSTUB_LAYER_PLANE;
-        layers[i].thickness = i % 2 ? 0.2e-3 : 17e-6;
-        layers[i].dielectric = i % 2 ? &laminate : NULL;
-    }
-    if (lstub_stackup_create(layers, 21, sizeof layers[0], NULL, &t->stackup, NULL) != LSTUB_OK)
-        stop("stackup_create failed");
-    LSTUB_INIT(t->options);
-    t->options.fidelity = fidelity;
-    LSTUB_INIT(t->via);
-    t->top = 0;
-    t->opening.layer = 0;
-    t->opening.reserved = 0;
-    t->opening.value = t->via.antipad = 0.8e-3;
-    t->via.drill = 0.25e-3;
-    t->via.connects = &t->top;
-    t->via.connect_count = 1;
-    t->via.antipads = &t->opening;
-    t->via.antipad_count = 1;
-    t->via.return_kind = LSTUB_RETURN_WALL;
-    t->via.return_distance = 0.9e-3;
-}
-
-static void run_compile(size_t vias, int repeats)
-{
-    ten_cavities t;
-    make_ten(&t, LSTUB_FIDELITY_CAVITY);
-    for (int i = 0; i < repeats; i++) {
-        double start = now();
-        for (size_t k = 0; k < vias; k++) {
-            lstub_model *model;
-            if (lstub_model_create(t.stackup, &t.via, &t.options, NULL, &model, NULL) != LSTUB_OK)
-                stop("model_create failed");
-            lstub_model_destroy(model);
-        }
-        printf("%.9f\n", now() - start);
-    }
-    lstub_stackup_destroy(t.stackup);
-}
-
-static void run_impedance(int32_t fidelity, size_t points, int repeats)
-{
-    ten_cavities t;
-    lstub_model *model;
-    double *freq = room(points, sizeof *freq), *zin = room(2 * points, sizeof *zin);
-    make_ten(&t, fidelity);
-    if (lstub_model_create(t.stackup, &t.via, &t.options, NULL, &model, NULL) != LSTUB_OK)
-        stop("model_create failed");
-    for (size_t i = 0; i < points; i++)
-        freq[i] = 1e8 + 60e9 * (double)i / (double)points;
-    for (int i = 0; i < repeats; i++) {
-        double start = now();
-        if (lstub_model_zin(model, 0, freq, points, zin, NULL, NULL) < 0)
-            stop("model_zin failed");
-        printf("%.9f\n", now() - start);
-    }
-    lstub_model_destroy(model);
-    lstub_stackup_destroy(t.stackup);
-}
-
-static void run_first(size_t vias, int repeats)
-{
-    ten_cavities t;
-    double f1 = 0.0;
-    make_ten(&t, LSTUB_FIDELITY_CAVITY);
-    for (int i = 0; i < repeats; i++) {
-        double start = now();
-        for (size_t k = 0; k < vias; k++)
-            if (lstub_first_notch_batch(t.stackup, &t.via, 1, sizeof t.via, &t.options, &f1, NULL, NULL, NULL, NULL) < 0)
-                stop("first_notch_batch failed");
-        printf("%.9f\n", now() - start);
-    }
-    fprintf(stderr, "%.17g\n", f1);
-    lstub_stackup_destroy(t.stackup);
 }
 
 static void run_read(const char *path, int repeats)
@@ -314,10 +224,10 @@ static void run_read(const char *path, int repeats)
     LSTUB_INIT(err);
     for (int i = 0; i < repeats; i++) {
         lstub_board *read;
-        double start = now();
+        double start = bench_now();
         if (lstub_board_load(path, NULL, NULL, NULL, &read, &err) < 0)
-            stop(err.message);
-        printf("%.9f\n", now() - start);
+            bench_stop(err.message);
+        printf("%.9f\n", bench_now() - start);
         lstub_board_destroy(read);
     }
 }
@@ -326,50 +236,52 @@ static void run_expat(const char *path, int repeats)
 {
     static char bytes[65536];
     for (int i = 0; i < repeats; i++) {
-        double start = now();
+        double start = bench_now();
         gzFile file = gzopen(path, "rb");
         XML_Parser parser = XML_ParserCreate(NULL);
         int n;
         if (file == NULL || parser == NULL)
-            stop("cannot open the board");
+            bench_stop("cannot open the board");
         while ((n = gzread(file, bytes, sizeof bytes)) > 0)
             if (XML_Parse(parser, bytes, n, 0) != XML_STATUS_OK)
-                stop("not XML");
+                bench_stop("not XML");
         if (n < 0 || XML_Parse(parser, bytes, 0, 1) != XML_STATUS_OK)
-            stop("not XML");
+            bench_stop("not XML");
         XML_ParserFree(parser);
         gzclose(file);
-        printf("%.9f\n", now() - start);
+        printf("%.9f\n", bench_now() - start);
     }
 }
 
+typedef void job(const bench_args *args);
+
+static void plan(const bench_args *a) { run_plan(a->count, a->repeats, a->what, LSTUB_FIDELITY_LOADED); }
+static void cavityplan(const bench_args *a) { run_plan(a->count, a->repeats, a->what, LSTUB_FIDELITY_CAVITY); }
+static void notch(const bench_args *a) { run_notch(a->count, a->repeats); }
+static void zin(const bench_args *a) { run_zin(a->count, a->repeats); }
+static void read_board(const bench_args *a) { run_read(a->path, a->repeats); }
+static void expat(const bench_args *a) { run_expat(a->path, a->repeats); }
+
+static const struct { const char *name; job *run; int arguments; } JOBS[] = {
+    {"plan", plan, 1}, {"cavityplan", cavityplan, 1}, {"notch", notch, 0}, {"zin", zin, 0}, {"read", read_board, 0},
+    {"expat", expat, 0}, {"compile", bench_compile, 0}, {"bytes", bench_bytes, 0}, {"cavity", bench_cavity, 1},
+    {"ladder", bench_ladder, 0}, {"first", bench_first, 1}, {"second", bench_second, 1}, {"transition", bench_transition, 1},
+    {"touchstone", bench_touchstone, 0},
+};
+
 int main(int argc, char **argv)
 {
-    if (argc < 4)
-        stop("usage: bench JOB COUNT|BOARD REPEATS [TABLE]");
-    int repeats = atoi(argv[3]);
-    size_t count = (size_t)strtoul(argv[2], NULL, 10);
-    if (strcmp(argv[1], "plan") == 0 && argc == 5)
-        run_plan(count, repeats, argv[4], LSTUB_FIDELITY_LOADED);
-    else if (strcmp(argv[1], "cavityplan") == 0 && argc == 5)
-        run_plan(count, repeats, argv[4], LSTUB_FIDELITY_CAVITY);
-    else if (strcmp(argv[1], "compile") == 0)
-        run_compile(count, repeats);
-    else if (strcmp(argv[1], "cavity") == 0)
-        run_impedance(LSTUB_FIDELITY_CAVITY, count, repeats);
-    else if (strcmp(argv[1], "ladder") == 0)
-        run_impedance(LSTUB_FIDELITY_LADDER, count, repeats);
-    else if (strcmp(argv[1], "first") == 0)
-        run_first(count, repeats);
-    else if (strcmp(argv[1], "notch") == 0)
-        run_notch(count, repeats);
-    else if (strcmp(argv[1], "zin") == 0)
-        run_zin(count, repeats);
-    else if (strcmp(argv[1], "read") == 0)
-        run_read(argv[2], repeats);
-    else if (strcmp(argv[1], "expat") == 0)
-        run_expat(argv[2], repeats);
-    else
-        stop("unknown job");
-    return 0;
+    for (size_t i = 0; argc >= 4 && i < sizeof JOBS / sizeof JOBS[0]; i++) {
+        bench_args args;
+        if (strcmp(argv[1], JOBS[i].name) != 0 || argc != 4 + JOBS[i].arguments)
+            continue;
+        args.path = argv[2];
+        args.count = (size_t)strtoul(argv[2], NULL, 10);
+        args.repeats = atoi(argv[3]);
+        args.what = argc > 4 ? argv[4] : NULL;
+        JOBS[i].run(&args);
+        return 0;
+    }
+    bench_stop("usage: bench JOB COUNT|FILE REPEATS [TABLE|AROUND|WHAT]; see the head of bench.c");
+    return 1;
 }

@@ -10,12 +10,10 @@ sh "$root/examples/install_packages.sh" gcc cmake make libexpat1-dev zlib1g-dev 
 cmake -S "$root" -B "$build" -DCMAKE_BUILD_TYPE=Release -DBUILD_SHARED_LIBS=OFF -DLSTUB_BUILD_TESTS=OFF \
     -DLSTUB_BUILD_EXAMPLES=OFF >"$build/cmake.log"
 cmake --build "$build" -j 2 >"$build/build.log"
-cc -O2 -std=c99 -I"$root/libstub/include" "$root/tests/bench/bench.c" -o "$build/bench" "$build/libstub_ipc2581.a" \
+cc -O2 -std=c99 -I"$root/libstub/include" "$root"/tests/bench/*.c -o "$build/bench" "$build/libstub_ipc2581.a" \
     "$build/libstub.a" -lexpat -lz -lm
-if [ ! -x "$build/venv/bin/python" ]; then
-    python3 -m venv "$build/venv"
-    "$build/venv/bin/pip" install -q numpy scipy
-fi
+[ -x "$build/venv/bin/python" ] || python3 -m venv "$build/venv"
+"$build/venv/bin/python" -c "import numpy, scipy, skrf" 2>/dev/null || "$build/venv/bin/pip" install -q numpy scipy scikit-rf
 board=${BOARD:-$root/../shared/boards/testcase10.xml.gz}
 [ -r "$board" ] || board=$root/examples/data/demo_board.xml.gz
 "$build/venv/bin/python" "$root/tests/bench/bench.py" "$build/bench" "$board" "$build" ${out:+"$out"}

@@ -540,18 +540,19 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
     cav_opening *opening;
     cav_kernel *kernel;
     lstub__cav_via *via;
-    double *half[3] = { NULL, NULL, NULL }, *plane_c;
-    int half_face[3], planes = 0, i, b;
+    double *half[4] = { NULL, NULL, NULL, NULL }, *plane_c;
+    int half_face[4], planes = 0, i, b;        /* below each barrel, above each */
 
     half_face[0] = mesh->half_face[0];
     half_face[1] = mesh->barrels > 1 ? mesh->half_face[1] : -1;
     half_face[2] = mesh->open_top ? mesh->first_face[0] : -1;
+    half_face[3] = mesh->open_top && mesh->barrels > 1 ? mesh->first_face[1] : -1;
     take(p, sizeof *m);
     slab = take(p, (size_t)all_slabs(w) * sizeof *slab);
     opening = take(p, (size_t)n->openings * sizeof *opening);
     kernel = take(p, (size_t)n->kernels * sizeof *kernel);
     via = take(p, (size_t)w->barrel->returns.vias * sizeof *via);
-    for (i = 0; i < 3; i++) {
+    for (i = 0; i < 4; i++) {
         size_t cells = half_face[i] >= 0 ? (size_t)w->face[half_face[i]].cells : 0;
         half[i] = take(p, 4 * cells * cells * sizeof *half[i]);
     }
@@ -567,7 +568,7 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
         slab[i].kernel = n->kernel[i];
     }
     if (w->barrel->returns.vias > 0) memcpy(via, w->barrel->returns.via, (size_t)w->barrel->returns.vias * sizeof *via);
-    for (i = 0; i < 3; i++)
+    for (i = 0; i < 4; i++)
         if (half_face[i] >= 0) cav_half_space(&w->face[half_face[i]], opening[n->opening[half_face[i]]].c, half[i]);
     m->barrels = mesh->barrels; m->slabs = mesh->slabs; m->openings = n->openings; m->kernels = n->kernels; m->media = w->barrel->media;
     m->feed = mesh->feed; m->lid_top = mesh->feed == 0 && !mesh->open_top;
@@ -578,9 +579,9 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
         m->cap_tap[b] = b < mesh->barrels && mesh->feed == 0 ? mesh->cap_tap[b] : -1;
         m->half_opening[b] = half_face[b] >= 0 ? n->opening[half_face[b]] : -1;
         m->half[b] = half[b];
+        m->half_top[b] = half[b + 2];
         m->cap_opening[b] = b >= mesh->barrels || mesh->feed > 0 ? -1 : n->opening[mesh->open_top ? mesh->first_face[b] : mesh->slab[b * mesh->slabs].top];
     }
-    m->half_top = half[2];
     m->half_medium = w->barrel->below_medium;
     m->radius = w->barrel->radius;
     m->port_log = mesh->feed > 0 ? w->face[mesh->first_face[0] + 1].log_x[1] - w->face[mesh->first_face[0] + 1].log_x[0] : 0.0;

@@ -236,9 +236,7 @@ static int climb(state *w, cav_load *l)
             for (i = 0; i < l->n * l->n; i++) l->y[i] = cplx_add(l->y[i], above.y[i]);
         } else {
             cav_load above;
-            const double *half[2];
-            half[0] = half[1] = m->half_top;
-            half_spaces(w, m->cap_opening, half, &above);
+            half_spaces(w, m->cap_opening, m->half_top, &above);
             for (i = 0; i < l->n * l->n; i++) l->y[i] = cplx_add(l->y[i], above.y[i]);
         }
     }

@@ -50,6 +50,7 @@ void cav_flux_start(state *w, cav_w *flux)
     if (!flux->on) return;
     flux->gamma = decay(m);
     j = mean_shape(w);
+    if (j.im > 0.0) j.im = 0.0;                 /* the fit turns its phase where the field radiates: a line that gave power */
     flux->y = cplx_div(cplx_of(-h / (4.0 * LSTUB_PI * w->k0 * w->k0 * tanh(0.5 * flux->gamma * h)), 0.0), j);
 }
 

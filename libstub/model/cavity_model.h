@@ -50,7 +50,7 @@ struct lstub__cavity {
     const cav_slab    *slab;        /* top and bottom are openings here; one barrel after the other */
     const cav_opening *opening;
     const cav_kernel  *kernel;
-    const double      *half[2], *half_top;  /* half-space: [4][cells][cells], factors of 1, k^2, k^4, and -j k^3 */
+    const double      *half[2], *half_top[2];  /* half-space: [4][cells][cells], factors of 1, k^2, k^4, and -j k^3 */
     lstub__cav_returns returns;         /* its vias lie in the same block                               */
     cav_answer answer[CAV_ANSWERS];
     cav_tap tap[2][LSTUB__CAV_TAPS];

@@ -210,6 +210,12 @@ static int32_t check_layer(const lstub__via *via, int32_t layer, lstub_error *er
     if (via->in.pair_kind == LSTUB_PAIR_SEPARATE && antipad >= via->in.pair_pitch)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "pair_pitch", layer, "layer %ld '%s': pair_pitch = %.9g m: antipads of %.9g m "
                            "overlap; LSTUB_PAIR_SHARED is for that", (long)layer, name, via->in.pair_pitch, antipad);
+    for (int i = 0; i < 4 && via->in.edges[0] > 0.0; i++) {
+        double reach = 0.5 * fmax(antipad, pad) + (i == 1 && via->in.pair_kind != LSTUB_PAIR_NONE ? via->in.pair_pitch : 0.0);
+        if (reach >= via->in.edges[i])
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "edges", i, "layer %ld '%s': edges[%d] = %.9g m: must be > %.9g m, where the antipad or pad ends",
+                               (long)layer, name, i, via->in.edges[i], reach);
+    }
     return antipad > 0.0 ? check_openings(via, layer, antipad, err) : LSTUB_OK;
 }
 
@@ -404,6 +410,17 @@ static int32_t check_spans(const lstub__via *via, lstub_error *err)
     return LSTUB_OK;
 }
 
+/* Whether a return via, or the mirror image that a pair adds, lies beyond an edge. */
+static int beyond(const lstub_via *in, double x, double y)
+{
+    double r = 0.5 * in->return_drill, least = x, most = x;
+    if (in->pair_kind != LSTUB_PAIR_NONE) {
+        least = fmin(x, in->pair_pitch - x);
+        most = fmax(x, in->pair_pitch - x);
+    }
+    return least - r <= -in->edges[0] || most + r >= in->edges[1] || y - r <= -in->edges[2] || y + r >= in->edges[3];
+}
+
 static int32_t check_edges(const lstub_via *in, lstub_error *err)
 {
     int given = 0;
@@ -421,11 +438,14 @@ static int32_t check_edges(const lstub_via *in, lstub_error *err)
     }
     if (given > 0 && in->return_kind == LSTUB_RETURN_WALL)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "edges", -1, "edges: must be 0 with a closed wall around the barrel");
-    for (int32_t i = 0; given > 0 && in->return_xy != NULL && i < in->return_count; i++) {
-        double x = in->return_xy[2 * i], y = in->return_xy[2 * i + 1], r = 0.5 * in->return_drill;
-        if (x - r <= -in->edges[0] || x + r >= in->edges[1] || y - r <= -in->edges[2] || y + r >= in->edges[3])
-            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: beyond the edges of the planes", (long)i, x, y);
-    }
+    for (int32_t i = 0; given > 0 && in->return_xy != NULL && i < in->return_count; i++)
+        if (beyond(in, in->return_xy[2 * i], in->return_xy[2 * i + 1]))
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: it or its mirror image lies beyond the edges of the "
+                               "planes", (long)i, in->return_xy[2 * i], in->return_xy[2 * i + 1]);
+    for (int i = 0; given > 0 && in->return_kind == LSTUB_RETURN_VIAS && in->return_xy == NULL && i < 4; i++)
+        if (in->return_distance + 0.5 * in->return_drill + (i == 1 && in->pair_kind != LSTUB_PAIR_NONE ? in->pair_pitch : 0.0) >= in->edges[i])
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_distance", i, "return_distance = %.9g m: the return vias lie beyond edges[%d] = %.9g m",
+                               in->return_distance, i, in->edges[i]);
     if (given > 0 && in->pair_kind != LSTUB_PAIR_NONE && in->pair_pitch + 0.5 * in->drill >= in->edges[1])
         return lstub__fail(err, LSTUB_E_GEOMETRY, "edges", 1, "edges[1] = %.9g m: must be > pair_pitch = %.9g m and the partner's radius", in->edges[1],
                            in->pair_pitch);

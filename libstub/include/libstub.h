@@ -440,7 +440,7 @@ typedef struct lstub_measured_notch {
 
 /* Stub notches in a measured S21 or Sdd21, in rising order. The shape of an open stub, S21 = 2/(2 + z y), is fitted to what
 ** the channel's loss a0 + a1 sqrt f + a2 f + a4 f^2 (dB, fitted to all but the notches) leaves. A notch has nine samples at
-** least and rises again within the band, with the trend and without it. Ripple, roll-off, a noise floor and notches
+** least and rises from its bottom on both sides within the band. Ripple, roll-off, a noise floor and notches
 ** outside the band are none: *count = 0, LSTUB_OK. How and how well: docs/theory.md.
 ** In   freq[n] Hz, rising, any steps, n >= 16; s: re, im of the first element, the next s_stride bytes on (16: side by
 **      side; 16 p p: element (i, j) of an (n, p, p) array from its address). search null: defaults.

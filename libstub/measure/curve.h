@@ -14,7 +14,7 @@ typedef struct lstub__curve {
     double *stubs;               /* what the stubs found so far take away, dB, <= 0                   */
     double *scratch;             /* [n]                                                               */
     double  window;              /* Hz, of the average                                                */
-    double  spread;              /* of db - trend - stubs, dB: 1.48 times the median of its size      */
+    double  spread;              /* see lstub__curve_spread, dB                                       */
 } lstub__curve;
 
 typedef struct lstub__dip {      /* a minimum of db - trend                                           */
@@ -39,6 +39,9 @@ void   lstub__curve_average(lstub__curve *curve);
 double lstub__curve_mean(const lstub__curve *curve, double from, double to);
 /* Fits the trend to db - stubs. upper: to its upper envelope, as long as the stubs are not known. */
 void   lstub__curve_trend(lstub__curve *curve, int upper);
+
+/* 1.48 times the median of |db - trend - stubs|: sigma where it is normal. */
+double lstub__curve_spread(const lstub__curve *curve);
 
 /* The shape of a dip; 0 where it has none. */
 int    lstub__shape_fit(const lstub__curve *curve, const lstub__dip *dip, lstub__shape *shape);

@@ -11,19 +11,22 @@
 #define SPREAD_LEAST   0.1       /* dB: nothing measured is better                                    */
 #define SCORE_LEAST    4.0
 #define SCORE_RIPPLE   8.0
+#define SCORE_EARLY    1.0       /* of a notch that nothing explains yet                             */
 #define SIGMA_MOST     0.25      /* of the width                                                      */
 #define EARLY          0.4       /* of the least depth: enough to help the trend                      */
 /* Of a ripple the fits take a part for trend and shape, so that less is left than there was. Chosen on drawn channels: of each 200
 ** notches at least 95 % lie within 2 sigma. */
 #define TAKEN_UP       1.5
 #define RECOVERS       1.0       /* dB                                                                */
-/* Of the barrel over that of the channel. Barrels have 10 to 200 ohm; a ripple has the shape of far more, nothing in it being as
-** broad as a quarter of a wave. Near the edge of the band that its cavities pass a barrel has a shape like that, too, but
-** is deeper than two reflections make a ripple: 10 dB would be |S11| = 0.7 of both. */
+/* Impedances of the barrel over that of the channel: barrels have 10 to 200 ohm. A ripple has the shape of far more, nothing in
+** it being as broad as a quarter of a wave; the bend where a roll-off meets the noise that of far less. Near the edge of the
+** band that its cavities pass a barrel has a shape of more, too, and so have its higher notches, but deeper than two
+** reflections make a ripple: 6 dB would be |S11| = 0.58 of both. */
+#define IMPEDANCE_USUAL 0.5
 #define IMPEDANCE_LOW  0.02
 #define IMPEDANCE_HIGH 4.0
 #define IMPEDANCE_DEEP 20.0
-#define DEEP           10.0      /* dB                                                                */
+#define DEEP           6.0       /* dB                                                                */
 
 typedef struct found {
     lstub__dip   dip;
@@ -100,6 +103,21 @@ static double f_sigma_of(const search *s, const found *n)
     return hypot(n->shape.f_sigma, TAKEN_UP * n->shape.f_ripple * left_near(&s->c, n->shape.f));
 }
 
+/* A shape of a barrel's impedance is believed, where it stands out; narrower and wider ones have to be more than that. */
+static int is_stub_like(const lstub__curve *c, const found *n, int final)
+{
+    double impedance = 0.5 * n->shape.zeta;
+    if (impedance > IMPEDANCE_USUAL && impedance < IMPEDANCE_HIGH && n->score >= (final ? SCORE_RIPPLE : SCORE_EARLY))
+        return 1;
+    double high = n->dip.depth > DEEP && n->score >= SCORE_RIPPLE ? IMPEDANCE_DEEP : IMPEDANCE_HIGH;
+    return impedance > IMPEDANCE_LOW && impedance < high && recovers(c, n);
+}
+
+static int is_certain(const search *s, const found *n)
+{
+    return n->score > SCORE_LEAST && f_sigma_of(s, n) < SIGMA_MOST * (s->c.f[n->to] - s->c.f[n->from]);
+}
+
 /* final: not one to help the trend only. */
 static int is_notch(const search *s, found *n, int final)
 {
@@ -109,10 +127,7 @@ static int is_notch(const search *s, found *n, int final)
         return 0;
     flanks_of(c, n);
     n->score = fmin(rise_of(c, n->dip.at, 0, HUGE_VAL), rise_of(c, n->dip.at, 1, HUGE_VAL)) / fmax(c->spread, SPREAD_LEAST);
-    double high = n->dip.depth < DEEP || n->score < SCORE_RIPPLE ? IMPEDANCE_HIGH : IMPEDANCE_DEEP;
-    if (!lstub__shape_fit(c, &n->dip, &n->shape) || !(n->shape.zeta > 2.0 * IMPEDANCE_LOW && n->shape.zeta < 2.0 * high) || !recovers(c, n))
-        return 0;
-    return !final || (n->score > SCORE_LEAST && f_sigma_of(s, n) < SIGMA_MOST * (c->f[n->to] - c->f[n->from]));
+    return lstub__shape_fit(c, &n->dip, &n->shape) && is_stub_like(c, n, final) && (!final || is_certain(s, n));
 }
 
 /* Of two dips in one notch the deeper one is it. */
@@ -152,6 +167,21 @@ static void explain(search *s)
     }
 }
 
+/* What helped the trend and is no notch is not explained any more: the others have to stand out from that, too. */
+static void weed(search *s)
+{
+    size_t kept = 0;
+    double before = s->c.spread;
+    s->c.spread = lstub__curve_spread(&s->c);
+    for (size_t k = 0; k < s->count; k++) {
+        found *n = &s->list[k];
+        n->score *= fmax(before, SPREAD_LEAST) / fmax(s->c.spread, SPREAD_LEAST);
+        if (is_stub_like(&s->c, n, 1) && is_certain(s, n))
+            s->list[kept++] = *n;
+    }
+    s->count = kept;
+}
+
 /* Trend and notches in turn, each from what the other leaves, as long as less and less is left. */
 static void look(search *s)
 {
@@ -175,6 +205,7 @@ static void look(search *s)
     }
     find(s, 1);
     explain(s);
+    weed(s);
 }
 
 /* A window that was not asked for is no wider than an eighth of the narrowest notch. */
@@ -200,7 +231,7 @@ static int32_t quality_of(const search *s, const found *n)
     const lstub__curve *c = &s->c;
     int32_t quality = LSTUB_QUALITY_GOOD;
     double width = c->f[n->to] - c->f[n->from];
-    if (n->dip.depth < 6.0)
+    if (n->dip.depth < DEEP)
         quality |= LSTUB_QUALITY_SHALLOW;
     if (n->from == 0 || n->to + 1 == c->n)
         quality |= LSTUB_QUALITY_EDGE;

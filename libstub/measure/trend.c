@@ -7,7 +7,7 @@
 #include <string.h>
 
 #define TERMS 4
-#define TURNS 24
+#define TURNS 20
 
 static void terms(double x, double *out)       /* x = f over the highest */
 {
@@ -17,10 +17,13 @@ static void terms(double x, double *out)       /* x = f over the highest */
     out[3] = x * x;
 }
 
+/* The averages are smooth: of many samples every so many do. */
+static size_t skip_of(const lstub__curve *c) { return 1 + c->n / 1024; }
+
 /* Share of a sample in an integral over the band: uneven steps must not weigh. */
 static double share(const lstub__curve *c, size_t i)
 {
-    size_t low = i > 0 ? i - 1 : 0, high = i + 1 < c->n ? i + 1 : i;
+    size_t skip = skip_of(c), low = i >= skip ? i - skip : 0, high = i + skip < c->n ? i + skip : c->n - 1;
     return 0.5 * (c->f[high] - c->f[low]) / (c->f[c->n - 1] - c->f[0]);
 }
 
@@ -57,30 +60,39 @@ static double part(const double *a, const double *b, int mask, double *x)
     return taken;
 }
 
-/* A channel loses more the higher the frequency, by every term: the best of all choices of terms that do. */
-static void solve(lstub__curve *c, double scale, int upper, int first)
+static double value(const double *x, double at)
 {
-    double a[TERMS * TERMS] = {0.0}, b[TERMS] = {0.0}, t[TERMS], x[TERMS], best[TERMS] = {0.0}, most = 0.0, top = c->f[c->n - 1];
-    for (size_t i = 0; i < c->n; i++) {
+    double t[TERMS];
+    terms(at, t);
+    return x[0] + x[1] * t[1] + x[2] * t[2] + x[3] * t[3];
+}
+
+/* A channel loses more the higher the frequency, by every term: the best of all choices of terms that do. */
+static void solve(lstub__curve *c, double scale, int upper, int first, double *best)
+{
+    double a[TERMS * TERMS] = {0.0}, b[TERMS] = {0.0}, t[TERMS], x[TERMS], most = 0.0, top = c->f[c->n - 1];
+    for (size_t i = 0; i < c->n; i += skip_of(c)) {
         double w = first ? share(c, i) : weight(c, i, scale, upper), y = c->db[i] - c->stubs[i];
         terms(c->f[i] / top, t);
         for (int j = 0; j < TERMS; j++) {
-            for (int k = 0; k < TERMS; k++)
+            for (int k = 0; k <= j; k++)
                 a[j * TERMS + k] += w * t[j] * t[k];
             b[j] += w * t[j] * y;
         }
     }
+    for (int j = 0; j < TERMS; j++)
+        for (int k = j + 1; k < TERMS; k++)
+            a[j * TERMS + k] = a[k * TERMS + j];
+    memset(best, 0, TERMS * sizeof *best);
     for (int mask = 1; mask < 1 << TERMS; mask += 2) {
         double taken = part(a, b, mask, x);
         if (taken > most) {
             most = taken;
-            memcpy(best, x, sizeof best);
+            memcpy(best, x, sizeof x);
         }
     }
-    for (size_t i = 0; i < c->n; i++) {
-        terms(c->f[i] / top, t);
-        c->trend[i] = best[0] + best[1] * t[1] + best[2] * t[2] + best[3] * t[3];
-    }
+    for (size_t i = 0; i < c->n; i += skip_of(c))
+        c->trend[i] = value(best, c->f[i] / top);
 }
 
 static int rising(const void *a, const void *b)
@@ -89,8 +101,7 @@ static int rising(const void *a, const void *b)
     return (x > y) - (x < y);
 }
 
-/* 1.48 times the median of |residual|: sigma where they are normal. */
-static double spread(lstub__curve *c)
+double lstub__curve_spread(const lstub__curve *c)
 {
     for (size_t i = 0; i < c->n; i++)
         c->scratch[i] = fabs(c->db[i] - c->stubs[i] - c->trend[i]);
@@ -100,11 +111,13 @@ static double spread(lstub__curve *c)
 
 void lstub__curve_trend(lstub__curve *c, int upper)
 {
-    double scale = 30.0;                               /* from one that keeps all to one that keeps what fits */
-    solve(c, scale, upper, 1);
+    double scale = 30.0, x[TERMS];                     /* from one that keeps all to one that keeps what fits */
+    solve(c, scale, upper, 1, x);
     for (int turn = 0; turn < TURNS; turn++) {
-        solve(c, scale, upper, 0);
+        solve(c, scale, upper, 0, x);
         scale = fmax(0.8 * scale, 1.5);
     }
-    c->spread = spread(c);
+    for (size_t i = 0; i < c->n; i++)
+        c->trend[i] = value(x, c->f[i] / c->f[c->n - 1]);
+    c->spread = lstub__curve_spread(c);
 }

@@ -1,4 +1,4 @@
--- Three stackups and six links that the examples share. All invented, though of sizes that exist.
+-- Stackups, links and traces that the examples share. All invented, though of sizes that exist.
 local ls = require "libstub"
 
 local M = {}
@@ -40,6 +40,32 @@ end
 function M.make_via(stackup, connects)
     return assert(ls.via(stackup, { drill = 0.25e-3, pad = 0.50e-3, antipad = 0.75e-3,
                                     returns = { count = 4, distance = 1.0e-3 }, connects = connects }))
+end
+
+local function pick(layer, keys)
+    local found = {}
+    for _, key in ipairs(keys) do
+        found[key] = layer[key]
+    end
+    return found
+end
+
+-- Ports of a via on the Heron line card of examples/data: a microstrip on TOP, a stripline on one of its inner layers.
+-- Cross-sections are those of the stackup; between two planes a stripline has one dielectric below and one above. The
+-- thin solder mask on the microstrip is left out.
+function M.trace_ports(board, exit_layer, distance)
+    local function trace(name, kind, width)
+        local i = assert(board:find(name))
+        local above, layer, below = board:layer(i - 1), board:layer(i), board:layer(i + 1)
+        local resin = { "dk", "in_plane_ratio", "loss_tangent", "f_ref" }
+        local stripline = kind == "stripline"
+        return { kind = kind, width = width, thickness = layer.thickness,
+                 conductor = pick(layer, { "conductivity", "roughness", "roughness_law" }),
+                 height_below = below.thickness, dielectric_below = pick(below, resin),
+                 height_above = stripline and above.thickness or nil, dielectric_above = stripline and pick(above, resin) or nil }
+    end
+    return { { layer = "TOP", trace = trace("TOP", "microstrip", 0.24e-3), distance = distance },
+             { layer = exit_layer, trace = trace(exit_layer, "stripline", 0.10e-3), distance = distance } }
 end
 
 return M

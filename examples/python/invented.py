@@ -1,4 +1,4 @@
-"""Three stackups and six links that the examples share. All invented, though of sizes that exist."""
+"""Stackups, links and traces that the examples share. All invented, though of sizes that exist."""
 
 import libstub as ls
 
@@ -38,3 +38,24 @@ def make_stackup(name):
 def make_via(stackup, connects):
     """A through via of 0.25 mm with four return vias 1 mm away; the caller says where it connects."""
     return ls.Via(stackup, drill=0.25e-3, pad=0.50e-3, antipad=0.75e-3, returns=ls.Ring(4, 1.0e-3), connects=connects)
+
+
+def trace_ports(board, exit_layer, distance):
+    """Ports of a via on the Heron line card of examples/data: a microstrip on TOP, a stripline on one of its inner layers.
+
+    Cross-sections are those of the stackup; between two planes a stripline has one dielectric below and one above. The
+    thin solder mask on the microstrip is left out.
+    """
+    def around(layer):
+        i = board.index(layer)
+        return board.layers[i - 1], board.layers[i], board.layers[i + 1]
+
+    above, top, below = around("TOP")
+    microstrip = ls.Microstrip(width=0.24e-3, thickness=top.thickness, conductor=top.conductor,
+                               height_below=below.thickness, dielectric_below=below.dielectric)
+    above, inner, below = around(exit_layer)
+    stripline = ls.Stripline(width=0.10e-3, thickness=inner.thickness, conductor=inner.conductor,
+                             height_below=below.thickness, dielectric_below=below.dielectric,
+                             height_above=above.thickness, dielectric_above=above.dielectric)
+    return [ls.TracePort("TOP", trace=microstrip, distance=distance),
+            ls.TracePort(exit_layer, trace=stripline, distance=distance)]

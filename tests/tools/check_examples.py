@@ -5,6 +5,7 @@
 
 C programs are taken from the build, examples/python and examples/lua from the tree. `board_plan` is run on the demo
 board, and on the boards of ../shared/boards where that folder is, with the rules that examples/data has for each.
+Those of ON_DEMO_BOARD get the demo board and a folder, and leave the files named there and maybe a picture.
 Any other example must end well and, with its picture files, leave something behind.
 """
 import argparse
@@ -15,6 +16,9 @@ import tempfile
 from pathlib import Path
 
 BOARDS = (("demo_board.xml.gz", "demo_rules.txt"), ("testcase10.xml.gz", "testcase10_rules.txt"))
+ON_DEMO_BOARD = {
+    "via_sparameters": {"via_as_it_is.s2p", "via_drilled.s2p", "via_without_stub.s2p", "pair_drilled.s4p"},
+}
 
 
 class Check:
@@ -84,7 +88,7 @@ def main():
     data, shared = args.root / "examples" / "data", args.root.parent / "shared" / "boards"
     names = {p.stem for folder in ("c", "python", "lua") for p in (args.root / "examples" / folder).glob("*.*")
              if p.suffix in (".c", ".py", ".lua") and p.stem != "invented"}
-    for name in ("board_plan", "max_stub", "stackup_sweep"):
+    for name in ("board_plan", "max_stub", "stackup_sweep", "via_sparameters"):
         check.tell(set(check.languages(name)) == {"c", "python", "lua"}, f"{name} is there in C, Python and Lua")
     with tempfile.TemporaryDirectory() as folder:
         scratch = Path(folder)
@@ -96,7 +100,13 @@ def main():
             results = check.example(f"board_plan {board}", "board_plan", [path, data / rules, "."], scratch)
             for language, (_, files) in results.items():
                 check.tell({"plan.csv", "drill_table.csv"} < set(files) and len(files) == 3, f"{board} in {language}: {sorted(files)}")
-        for name in sorted(names - {"board_plan"}):
+        for name, wanted in ON_DEMO_BOARD.items():
+            results = check.example(name, name, [data / "demo_board.xml.gz", "."], scratch)
+            check.tell({"python", "lua"} <= set(results), f"{name} runs in Python and Lua")
+            for language, (_, files) in results.items():
+                tables = {file for file in files if not file.endswith(".png")}
+                check.tell(tables == wanted, f"{name} in {language}: {sorted(files)}")
+        for name in sorted(names - {"board_plan", *ON_DEMO_BOARD}):
             results = check.example(name, name, [], scratch)
             check.tell(any(text or files for text, files in results.values()), f"{name} says something")
     print(f"{check.count} checks, {check.failed} failed")

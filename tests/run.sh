@@ -17,7 +17,7 @@ sh examples/install_packages.sh gcc g++ clang libclang-rt-dev binutils make cmak
 python=$dir/venv/bin/python
 [ -x "$python" ] || python3 -m venv "$dir/venv"
 "$python" -m pip install --quiet --disable-pip-version-check \
-    'numpy>=1.24' 'scipy>=1.10' 'matplotlib>=3.6' 'pytest>=7.2' 'setuptools>=64' wheel
+    'numpy>=1.24' 'scipy>=1.10' 'matplotlib>=3.6' 'scikit-rf>=1.0' 'pytest>=7.2' 'setuptools>=64' wheel
 binding() {     # options of pip: the Python binding as it is now
     "$python" -m pip install --quiet --disable-pip-version-check --no-deps --no-build-isolation "$@" ./bindings/python
 }

@@ -279,7 +279,7 @@ def test_other_geometry_of_the_schema(tmp_path):
     plain = run("s_k4").notches[0]
     assert found["turned"]["f1_Hz"] == pytest.approx(run("d_k5").notches[0].f, rel=1e-9)
     assert found["order"]["f1_Hz"] == pytest.approx(plain.f, rel=1e-12)
-    assert 0.55 < found["even"]["f1_Hz"] / found["turned"]["f1_Hz"] < 0.75   
+    assert 0.55 < found["even"]["f1_Hz"] / found["turned"]["f1_Hz"] < 0.75
     assert found["spans"]["f1_Hz"] < 0.97 * plain.f and found["spans"]["f1_depth_dB"] > plain.depth_db + 6
     assert found["pad"]["f1_Hz"] < 0.95 * plain.f
     assert found["cut"]["f1_Hz"] == pytest.approx(found["filled"]["f1_Hz"], rel=0.005)

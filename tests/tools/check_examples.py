@@ -18,6 +18,7 @@ from pathlib import Path
 BOARDS = (("demo_board.xml.gz", "demo_rules.txt"), ("testcase10.xml.gz", "testcase10_rules.txt"))
 ON_DEMO_BOARD = {
     "via_sparameters": {"via_as_it_is.s2p", "via_drilled.s2p", "via_without_stub.s2p", "pair_drilled.s4p"},
+    "measured_coupon": {f"coupon_{name}.s2p" for name in ("IN1", "IN2", "IN3", "IN5", "IN6", "IN7", "drilled")},
 }
 
 

@@ -1,6 +1,7 @@
 """Nothing leaks: neither in what succeeds nor in what fails."""
 
 import gc
+import io
 import pickle
 import sys
 import warnings
@@ -47,6 +48,7 @@ def make_and_drop():
     rules.match("A1"), rules.capability
     list(_core.complex_array(50)), _core.complex_array(50).real_imag().tolist()
     pickle.loads(pickle.dumps(plan))
+    networks(laminate, via)
     with warnings.catch_warnings(record=True):
         warnings.simplefilter("always")
         model.zin([100e9] * 50)
@@ -75,6 +77,50 @@ def make_and_drop():
     fails(lambda: _core.model_zin(1, 0, f, f))
     fails(lambda: _core.record("via", (1, 2)))
     fails(lambda: _core.record("job", (link._record, None, None)))
+
+
+def networks(laminate, coupon):
+    board = ls.Stackup([
+        ls.Layer("A", "plane", 0.0), ls.Layer("D", "dielectric", 2e-4, dielectric=laminate), ls.Layer("B", "plane", 0.0),
+        ls.Layer("E", "dielectric", 1e-4, dielectric=laminate), ls.Layer("C", "signal", 0.0)])
+    via = ls.Via(board, drill=2.5e-4, antipad=7e-4, antipads={"A": 7e-4}, connects=("A",),
+                 returns=ls.Vias([(1e-3, 0.0), (0.0, 1e-3)], spans=[("A", "B"), None]))
+    through = via.transition([ls.CoaxPort("A")])
+    f = [1e9 * i for i in range(1, 21)]
+    s = through.s(f)
+    through.notches(up_to=60e9, to=0), through.remarks, through.reference
+    strip = ls.Stripline(width=1e-4, height_below=1e-4, height_above=1e-4, dielectric_below=laminate, conductor=ls.Conductor(roughness=1e-6))
+    strip.line(f), strip.conductor.surface_impedance(f)
+    two = ls.shunt([25.0] * 20)
+    ls.renormalise(two, 50, 75), ls.cascade(two, two), ls.deembed(two, two), ls.convert(s, "S", "Z"), ls.port_map(two, [1])
+    mixed = ls.to_mixed(two, [(0, 1)])
+    ls.to_single(mixed.s, [(0, 1)]), ls.passivity(two), ls.reciprocity(two), ls.causality(f, two), ls.tdr(f, two, f[:0], rise_time=1.1e-10)
+    ls.step_response(f, two, [0.0, 5e-10], rise_time=1.1e-10), ls.insertion_loss_deviation(f, [x / 1e9 for x in f])
+    file, out = ls.Touchstone(f, two, comments=["x"]), io.BytesIO()
+    file.write(out)
+    ls.Touchstone.parse(out.getvalue()).rows, ls.Touchstone.read(io.BytesIO(out.getvalue())), pickle.loads(pickle.dumps(file))
+    ls.find_notches(f, [1 + 0j] * 20), ls.fit_effective_dk(1e10, 1e-3)
+    ls.fit_in_plane_dk(lambda ratio, offset, i: 1e10 / ratio, [9e9], 1e7)
+    ls.fit_coupons([coupon], [coupon.model(fidelity="loaded").notches(40e9)[0].f / 1.02], 1e8, fidelity="loaded").stackup
+    fails(lambda: via.transition([ls.TracePort("B")]))
+    fails(lambda: via.transition([ls.CoaxPort("A"), 1]))
+    fails(lambda: through.s([0.0]))
+    fails(lambda: through.notches(up_to=1e10))
+    fails(lambda: ls.cascade(two, s))
+    fails(lambda: ls.renormalise(two, 50, [1, 2, 3]))
+    fails(lambda: ls.convert([[[0, 1], [1, 0]]], "S", "Z"))
+    fails(lambda: ls.to_mixed(two, [(0, 7)]))
+    fails(lambda: ls.Touchstone(f, two, comments=["a\0"]).write(out))
+    fails(lambda: ls.Touchstone(f, two, rows=[("single", 0, None)]).write(out))
+    fails(lambda: ls.Touchstone(f[:3], two).write(out))
+    fails(lambda: ls.Touchstone.parse(b"# x"))
+    fails(lambda: ls.Touchstone.read(io.StringIO("x")))
+    fails(lambda: ls.Touchstone(f, two).write(io.StringIO()))
+    fails(lambda: ls.find_notches(f, s))
+    fails(lambda: ls.fit_in_plane_dk(lambda *_: "x", [9e9], 1e7))
+    fails(lambda: ls.fit_coupons([via], [1e10, 1e10], 1e7))
+    fails(lambda: _core.touchstone_write((1, 2), out.write))
+    fails(lambda: _core.transition_s(file, f, f))
 
 
 def test_memory_does_not_grow():

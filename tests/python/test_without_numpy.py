@@ -94,6 +94,44 @@ assert len(ls.first_notch_batch([]).f1) == 0
     )
 
 
+def test_networks_without_numpy():
+    run(
+        WITHOUT
+        + """
+import io
+f = [1e9, 2e9, 3e9]
+s = ls.shunt(model.zin(f))
+assert type(s) is ls.ComplexArray and s.shape == (3, 2, 2) and len(s) == 3 and len(s[0]) == len(s[0][0]) == 2
+assert s.tolist() == list(s) == [s[i] for i in range(3)]
+assert all(abs(m[1][0] - model.s21(x)) < 1e-12 for m, x in zip(s, f))
+view = memoryview(s)
+assert view.format == "Zd" and view.shape == (3, 2, 2) and view.strides == (64, 32, 16) and view.c_contiguous
+assert len(s.real_imag()) == 24 and repr(s) == "ComplexArray(12 values)"
+assert ls.cascade(s, s).tolist() == ls.cascade(s.tolist(), [[tuple(row) for row in m] for m in s]).tolist()
+assert max(ls.passivity(s)) <= 1 and list(ls.reciprocity(s)) == [0, 0, 0]
+assert ls.renormalise(ls.renormalise(s, 50, [42, 60]), [42, 60], 50)[1][1][0].real - s[1][1][0].real < 1e-12
+out = io.BytesIO()
+file = ls.Touchstone(f, s, unit="GHz")
+file.write(out)
+again = ls.Touchstone.parse(out.getvalue())
+assert again.data.tolist() == s.tolist() and list(again.frequency) == f
+core = ls.Dielectric(3.5, 0.005)
+board = ls.Stackup([ls.Layer("A", "plane", 0), ls.Layer("D", "dielectric", 2e-4, dielectric=core), ls.Layer("B", "plane", 0),
+                    ls.Layer("E", "dielectric", 1e-4, dielectric=core), ls.Layer("C", "signal", 0)])
+via = ls.Via(board, drill=2.5e-4, antipad=7e-4, antipads={"A": 7e-4}, connects=("A",), returns=ls.Ring(4, 9e-4))
+through = via.transition([ls.CoaxPort("A")])
+assert through.s(f).shape == (3, 1, 1) and through.s(1e9).tolist() == through.s(f)[0]
+for call in (lambda: ls.passivity([[[1], [2, 3]]]), lambda: ls.passivity([[["x"]]]), lambda: ls.passivity(1j), lambda: ls.renormalise(s, 50, 50j)):
+    try:
+        call()
+    except (TypeError, ls.ArgumentError) as error:
+        assert "s: " in str(error) or "z_from: complex references need NumPy" in str(error), error
+    else:
+        raise AssertionError(call)
+"""
+    )
+
+
 def test_numpy_reads_a_complex_array_without_a_copy():
     np = pytest.importorskip("numpy")
     from libstub import _core
@@ -103,7 +141,14 @@ def test_numpy_reads_a_complex_array_without_a_copy():
     assert seen.dtype == np.complex128 and seen.shape == (3,)
     seen[1] = 1 + 2j
     assert array[1] == 1 + 2j and len(np.asarray(_core.complex_array(0))) == 0
-    with pytest.raises(ValueError):
-        _core.complex_array(-1)
+    cube = np.asarray(_core.complex_array((2, 3, 4)))
+    assert cube.shape == (2, 3, 4) and cube.flags.c_contiguous and np.asarray(_core.complex_array((0, 2, 2))).shape == (0, 2, 2)
+    for wrong in (-1, (), (1, 2, 3, 4), (2, -1)):
+        with pytest.raises(ValueError):
+            _core.complex_array(wrong)
+    with pytest.raises(TypeError):
+        _core.complex_array("x")
+    with pytest.raises(MemoryError):
+        _core.complex_array((2**40, 2**40))
     with pytest.raises(MemoryError):
         _core.complex_array(2**62)

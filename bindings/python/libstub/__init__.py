@@ -20,6 +20,15 @@ does so for one via or a whole board.
     ls.longest_stub(via, link, criteria)                    # inverse question
     m.s21(np.linspace(1e9, 67e9, 2000))                     # NumPy in, NumPy out
 
+The whole via with its traces is a network; networks are arrays of shape (n, p, p), row: port the wave comes out of:
+
+    line = ls.Stripline(width=ls.um(113), height_below=ls.um(100), height_above=ls.um(100), dielectric_below=core)
+    t = via.transition([ls.CoaxPort("TOP"), ls.TracePort("INT3", trace=line)])
+    s = t.s(f)                                              # complex128, as scikit-rf takes it, with t.reference
+    ls.touchstone_save("via.s2p", f, s, reference=t.reference)
+    ls.cascade(ls.Touchstone.load("channel.s2p").data, ls.renormalise(s, t.reference, 50))
+    ls.find_notches(f, s[:, 1, 0])                          # and fits of what is measured
+
 Units are SI throughout (metre, hertz, ohm, henry, farad, second; Dk is relative); `units` converts. Diameters, not
 radii. Depths are measured downwards from the outer face of the top copper layer. Layers are given by name or by index
 and come back by name. Objects are frozen: make another one instead of changing one. They pickle by being made again.

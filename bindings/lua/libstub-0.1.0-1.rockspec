@@ -76,6 +76,7 @@ build = {
         "libstub/model/cavity_mesh.c",
         "libstub/model/cavity_modes.c",
         "libstub/model/cavity_pair.c",
+        "libstub/model/cavity_region.c",
         "libstub/model/cavity_ring.c",
         "libstub/model/cavity_sheet.c",
         "libstub/model/cavity_wave.c",

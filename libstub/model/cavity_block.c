@@ -231,18 +231,18 @@ void cav_half_admittance(const state *w, const double *h, int n, cplx *y)
 void cav_block(state *w, const cav_slab *s, block *b)
 {
     const cav_kernel *k = &w->m->kernel[s->kernel];
-    int slot;
+    int slot, key = cav_shared(w, s) ? -2 : s->answer;
 
     if (!k->same) { fill_other(w, s, b); return; }
     if (w->m->opening[s->top].cells > SMALL) { b->bottom = b->top; fill_same(w, s, b); return; }
-    for (slot = 0; slot < w->blocks && slot < BLOCKS; slot++) if (w->kept[slot].kernel == s->kernel && w->kept[slot].answer == s->answer) break;
+    for (slot = 0; slot < w->blocks && slot < BLOCKS; slot++) if (w->kept[slot].kernel == s->kernel && w->kept[slot].answer == key) break;
     if (slot == w->blocks || slot == BLOCKS) {
         kept_block *kept = &w->kept[slot = w->blocks++ % BLOCKS];
         b->tt = kept->tt; b->bb = kept->bb; b->tb = kept->tb; b->top = b->bottom = kept->top;
         fill_same(w, s, b);
         kept->loop = b->loop;
         kept->kernel = s->kernel;
-        kept->answer = s->answer;
+        kept->answer = key;
     } else {
         kept_block *kept = &w->kept[slot];
         b->tt = kept->tt; b->bb = kept->bb; b->tb = kept->tb; b->top = b->bottom = kept->top; b->loop = kept->loop;

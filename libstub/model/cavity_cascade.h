@@ -7,15 +7,18 @@
 #define CAV_CELLS  LSTUB__CAV_CELLS                 /* of all barrels at one face                     */
 #define CAV_WIDE   (CAV_CELLS + 1)                  /* and the flux                                   */
 #define CAV_TRACES (2 * LSTUB__CAV_TAPS)
-#define CAV_ALL    (CAV_WIDE + 2 + CAV_TRACES)      /* LSTUB__GRAM_WIDE is enough for that              */
+#define CAV_PENDING (2 * CAV_SHARED)                /* waves of a region whose slabs are not all stepped over */
+#define CAV_COLUMNS (CAV_TRACES + CAV_PENDING)
+#define CAV_ALL     (CAV_WIDE + 2 + CAV_COLUMNS)    /* LSTUB__GRAM_WIDE is enough for that              */
 
 typedef struct cav_load {           /* I = y V + s I_o, V_o = s.V + zeta I_o                            */
-    int  n, traces;
-    cplx y[CAV_WIDE * CAV_WIDE], s[CAV_WIDE * CAV_TRACES], zeta[CAV_TRACES * CAV_TRACES];
+    int  n, traces, columns;        /* columns: traces, then what is pending                           */
+    cplx y[CAV_WIDE * CAV_WIDE], s[CAV_WIDE * CAV_COLUMNS], zeta[CAV_COLUMNS * CAV_COLUMNS];    /* rows of CAV_COLUMNS */
 } cav_load;
 
 typedef struct cav_step {           /* a slab between all its openings above and below                  */
     int  na, nb, loops;
+    int  pending;                   /* in place of loops: columns whose wave is the region's            */
     cplx *tt, *bb, *tb;             /* [na][na], [nb][nb], [na][nb]                                    */
     cplx *top[2], *bottom[2];       /* mode 0 of each loop                                             */
     cplx loop[4];                   /* [loops][loops]                                                  */
@@ -42,6 +45,9 @@ void cav_flux_plane(const state *w, cav_w *flux, const cav_slab *s, cav_load *l)
 void cav_flux_stop(cav_w *flux, cav_load *l);
 
 
-void cav_take_sheets(state *w, int feeds, int ports, cplx *z);                                /* cavity_sheet.c */
+void cav_wave_of(state *w, const cav_slab *s, cplx *t, cplx *c, cplx *own);
+void cav_add_metal(const state *w, const cav_slab *s, cplx *loop, int n, int stride);
+void cav_region_end(state *w, const cav_region *r, cav_load *l);                              /* cavity_region.c */
+void cav_take_sheets(const state *w, int feeds, int ports, cplx *z);                                /* cavity_sheet.c */
 
 #endif

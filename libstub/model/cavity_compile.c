@@ -26,6 +26,8 @@ typedef struct work {
     int         rim_sets;
     cav_answer  answer[CAV_ANSWERS];
     int         answers;
+    cav_region  region[CAV_REGIONS];
+    int         regions;
     double      k_max;
 } work;
 
@@ -492,12 +494,13 @@ static int number_answers(cav_mesh *mesh, cav_answer *list)
     return count;
 }
 
-/* Distances from a depth to the nearest planes above and below, in parallel; without one of them the other. */
-static double between_planes(const lstub__cav_barrel *barrel, double depth)
+/* Distances from a depth to the nearest planes above and below; INFINITY: none. */
+static void planes_around(const lstub__cav_barrel *barrel, double depth, double *up, double *down)
 {
-    double z = 0.0, up = INFINITY, down = INFINITY;
+    double z = 0.0;
     int k;
 
+    *up = *down = INFINITY;
     for (k = 0; k <= barrel->layers; k++) {
         const lstub__cav_copper *c = &barrel->copper[k];
         double top, bottom;
@@ -506,10 +509,49 @@ static double between_planes(const lstub__cav_barrel *barrel, double depth)
         if (k > 0 || barrel->top == LSTUB__CAV_FREE) z += c->thickness;
         bottom = z;
         if (c->antipad <= 0.0) continue;
-        if (bottom <= depth) up = depth - bottom;
-        else if (top >= depth && down == INFINITY) down = top - depth;
+        if (bottom <= depth) *up = depth - bottom;
+        else if (top >= depth && *down == INFINITY) *down = top - depth;
     }
-    return up == INFINITY ? down : down == INFINITY ? up : up * down / (up + down);
+}
+
+/* The spaces between planes in which a trace leaves. -2: one has too many slabs. */
+static int find_regions(work *w)
+{
+    cav_mesh *mesh = w->mesh;
+    int i = mesh->feed, b, k, j;
+
+    w->regions = 0;
+    for (k = 0; k < mesh->barrels * mesh->slabs; k++) mesh->slab[k].region = -1;
+    while (i < mesh->slabs) {
+        const cav_slab *s = mesh->slab;
+        cav_region r;
+        int traces = 0, free_top = i == 0 && mesh->feed == 0, open_end;
+        if (s[i].metal_wall >= 0) { i++; continue; }
+        for (j = i; j < mesh->slabs && s[j].metal_wall < 0; j++) if (s[j].plane) { j++; break; }
+        open_end = j == mesh->slabs && !s[j - 1].plane;
+        r.first = r.ref = i;
+        r.last = j - 1;
+        r.height = free_top || open_end ? INFINITY : 0.0;
+        r.reach = 0.0;
+        for (b = 0; b < mesh->barrels; b++) {
+            if (free_top && mesh->cap_tap[b] >= 0) traces = 1;
+            for (k = i; k < j; k++) {
+                const cav_slab *t = &s[b * mesh->slabs + k];
+                if (b == 0) r.height += t->h;
+                if (t->tap >= 0) { if (!traces && b == 0) r.ref = k; traces = 1; }
+                if (t->top >= 0) r.reach = fmax(r.reach, w->face[t->top].x[w->face[t->top].points - 1]);
+                if (t->bottom >= 0) r.reach = fmax(r.reach, w->face[t->bottom].x[w->face[t->bottom].points - 1]);
+            }
+        }
+        if (traces) {
+            if (free_top && s[0].metal_wall < 0 && mesh->first_face[0] < 0) { i = j; continue; }   /* under a lid: as it is */
+            if (j - i > CAV_SHARED || w->regions == CAV_REGIONS) return -2;
+            for (b = 0; b < mesh->barrels; b++) for (k = i; k < j; k++) mesh->slab[b * mesh->slabs + k].region = w->regions;
+            w->region[w->regions++] = r;
+        }
+        i = j;
+    }
+    return 0;
 }
 
 static void find_taps(const work *w, lstub__cavity *m)
@@ -522,13 +564,13 @@ static void find_taps(const work *w, lstub__cavity *m)
         for (i = 0; i < m->taps[b]; i++) {
             cav_tap *t = &m->tap[b][i];
             const cav_face *face;
-            t->slab = 0;
-            for (k = 0; k < mesh->slabs; k++) if (mesh->slab[b * mesh->slabs + k].tap == i) t->slab = k;
-            face = &w->face[m->cap_tap[b] != i ? mesh->slab[b * mesh->slabs + t->slab].bottom : mesh->open_top ? mesh->first_face[b] : mesh->slab[b * mesh->slabs].top];
+            int slab = 0;
+            for (k = 0; k < mesh->slabs; k++) if (mesh->slab[b * mesh->slabs + k].tap == i) slab = k;
+            face = &w->face[m->cap_tap[b] != i ? mesh->slab[b * mesh->slabs + slab].bottom : mesh->open_top ? mesh->first_face[b] : mesh->slab[b * mesh->slabs].top];
             t->depth = depth[i];
-            t->rim_in = face->x[0];
-            t->rim_out = face->x[face->points - 1];
-            t->height = between_planes(w->barrel, depth[i]);
+            t->rim = face->x[0];
+            t->region = mesh->slab[b * mesh->slabs + slab].region;
+            planes_around(w->barrel, depth[i], &t->up, &t->down);
         }
     }
 }
@@ -589,6 +631,8 @@ static void pack_model(const work *w, const plan *n, pack *p, lstub__cavity *m)
     m->feed_length = mesh->feed_height * CAV_FEED;
     m->slab = slab; m->opening = opening; m->kernel = kernel;
     find_taps(w, m);
+    m->regions = w->regions;
+    memcpy(m->region, w->region, sizeof m->region);
     m->plane_c = plane_c;
     m->answers = w->answers;
     memcpy(m->answer, w->answer, sizeof m->answer);
@@ -602,7 +646,7 @@ static int build(work *w, lstub__cavity **out)
     int failed;
 
     w->answers = number_answers(w->mesh, w->answer);
-    if (w->answers < 0) return -2;
+    if (w->answers < 0 || find_regions(w) != 0) return -2;
     number_rims(w);
     number_slabs(w);
     w->series = get(w, (size_t)w->kinds * sizeof *w->series);

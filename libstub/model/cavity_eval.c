@@ -22,11 +22,11 @@ static void invert(const cplx *a, int n, cplx *out)
     out[1] = out[2] = cplx_neg(cplx_mul(a[1], det));
 }
 
-/* Traces seen through a slab; g: see cav_step_up. */
-static void traces_up(cav_load *l, const cav_step *c, const cplx *g, int wide, const cplx *gamma, cplx d[2][CAV_WIDE])
+/* Columns (traces, pending waves) seen through a slab; g: see cav_step_up. New pending waves come last. */
+static void columns_up(cav_load *l, const cav_step *c, const cplx *g, int wide, const cplx *gamma, cplx d[2][CAV_WIDE])
 {
-    cplx turned[2 * CAV_TRACES];
-    int t = l->traces, n = c->loops, at = c->na + n, i, j, k, q;
+    cplx turned[2 * CAV_COLUMNS];
+    int t = l->columns, n = c->loops, np = c->pending, at = c->na + n + np, i, j, k, q;
 
     for (q = 0; q < n; q++)                     /* gamma bottom' M^-1 s */
         for (j = 0; j < t; j++) {
@@ -35,16 +35,23 @@ static void traces_up(cav_load *l, const cav_step *c, const cplx *g, int wide, c
         }
     for (i = 0; i < t; i++)
         for (j = 0; j < t; j++) {
-            cplx *to = &l->zeta[i * t + j];
+            cplx *to = &l->zeta[i * CAV_COLUMNS + j];
             *to = cplx_sub(*to, g[(at + i) * wide + at + j]);
             for (q = 0; q < n; q++) *to = cplx_fma(*to, g[(c->na + q) * wide + at + i], turned[q * t + j]);
         }
-    for (i = 0; i < c->na; i++)
+    for (i = 0; i < c->na; i++) {
         for (j = 0; j < t; j++) {
             cplx sum = g[i * wide + at + j];
             for (q = 0; q < n; q++) sum = cplx_fma(sum, d[q][i], turned[q * t + j]);
-            l->s[i * t + j] = sum;
+            l->s[i * CAV_COLUMNS + j] = sum;
         }
+        for (q = 0; q < np; q++) l->s[i * CAV_COLUMNS + t + q] = cplx_sub(c->top[q][i], g[i * wide + c->na + q]);
+    }
+    for (q = 0; q < np; q++) {
+        for (k = 0; k < np; k++) l->zeta[(t + q) * CAV_COLUMNS + t + k] = cplx_neg(g[(c->na + q) * wide + c->na + k]);
+        for (j = 0; j < t; j++) l->zeta[(t + q) * CAV_COLUMNS + j] = l->zeta[j * CAV_COLUMNS + t + q] = g[(c->na + q) * wide + at + j];
+    }
+    l->columns += np;
 }
 
 /*
@@ -52,18 +59,19 @@ static void traces_up(cav_load *l, const cav_step *c, const cplx *g, int wide, c
 **
 **     Y <- T - C M^-1 C' + d gamma d',  M = Y + B,  d = top - C M^-1 bottom,  1/gamma = loop + bottom' M^-1 bottom,
 **
-** all of it found in g = (C', bottom, s)' M^-1 (C', bottom, s).
+** all of it found in g = (C', bottom, s)' M^-1 (C', bottom, s). A pending wave of current j adds top j and bottom j to the
+** currents; its e = top.V_top - bottom.V_bottom is kept as a trace's voltage is, until its region ends.
 */
 int cav_step_up(cav_load *l, const cav_step *c)
 {
-    int na = c->na, nb = c->nb, n = c->loops, wide = na + n + l->traces, i, j, k, q;
+    int na = c->na, nb = c->nb, n = c->loops, extra = n + c->pending, wide = na + extra + l->columns, i, j, k, q;
     cplx m[CAV_WIDE * CAV_WIDE], r[CAV_WIDE * CAV_ALL], g[CAV_ALL * CAV_ALL], d[2][CAV_WIDE], e[2][CAV_WIDE], loop[4], gamma[4];
 
     for (i = 0; i < nb; i++) {
         for (j = i; j < nb; j++) m[i * nb + j] = cplx_add(c->bb[i * nb + j], l->y[i * nb + j]);
         for (j = 0; j < na; j++) r[i * wide + j] = c->tb[j * nb + i];
-        for (q = 0; q < n; q++) r[i * wide + na + q] = c->bottom[q][i];
-        for (j = 0; j < l->traces; j++) r[i * wide + na + n + j] = l->s[i * l->traces + j];
+        for (q = 0; q < extra; q++) r[i * wide + na + q] = c->bottom[q][i];
+        for (j = 0; j < l->columns; j++) r[i * wide + na + extra + j] = l->s[i * CAV_COLUMNS + j];
     }
     if (lstub__zgram(m, nb, r, wide, g) != 0) return -1;
     for (q = 0; q < n; q++) {
@@ -71,7 +79,7 @@ int cav_step_up(cav_load *l, const cav_step *c)
         for (i = 0; i < na; i++) d[q][i] = cplx_sub(c->top[q][i], g[i * wide + na + q]);
     }
     if (n > 0) invert(loop, n, gamma);
-    if (l->traces > 0) traces_up(l, c, g, wide, gamma, d);
+    if (l->columns + c->pending > 0) columns_up(l, c, g, wide, gamma, d);
     for (q = 0; q < n; q++)
         for (i = 0; i < na; i++) {
             e[q][i] = cplx_mul(gamma[q * n], d[0][i]);
@@ -113,16 +121,16 @@ static void join_trace(const lstub__cavity *m, cav_load *l, const int *cells, in
 {
     int column = (b == 0 ? 0 : m->taps[0]) + number, from = b == 0 ? 0 : cells[0], k;
 
-    for (k = 0; k < cells[b]; k++) l->s[(from + k) * l->traces + column] = cplx_of(1.0, 0.0);
+    for (k = 0; k < cells[b]; k++) l->s[(from + k) * CAV_COLUMNS + column] = cplx_of(1.0, 0.0);
 }
 
 static void start_traces(const lstub__cavity *m, cav_load *l)
 {
     int i;
 
-    l->traces = m->taps[0] + (m->barrels > 1 ? m->taps[1] : 0);
-    for (i = 0; i < l->traces * l->traces; i++) l->zeta[i] = cplx_of(0.0, 0.0);
-    for (i = 0; i < CAV_WIDE * l->traces; i++) l->s[i] = cplx_of(0.0, 0.0);
+    l->traces = l->columns = m->taps[0] + (m->barrels > 1 ? m->taps[1] : 0);
+    for (i = 0; i < CAV_COLUMNS * l->traces; i++) l->zeta[i] = cplx_of(0.0, 0.0);
+    for (i = 0; i < CAV_WIDE * CAV_COLUMNS && l->traces > 0; i++) l->s[i] = cplx_of(0.0, 0.0);
 }
 
 /* Ports of the load: currents into the feeds (or nothing, under a free end) and out of the traces. */
@@ -134,14 +142,14 @@ static int ports_of(const cav_load *l, int feeds, cplx unit, cplx *z)
     memcpy(y, l->y, (size_t)(n * n) * sizeof y[0]);
     for (i = 0; i < n; i++) {
         for (j = 0; j < feeds; j++) x[i * columns + j] = cplx_of(i == j ? 1.0 : 0.0, 0.0);
-        for (j = 0; j < t; j++) x[i * columns + feeds + j] = l->s[i * t + j];
+        for (j = 0; j < t; j++) x[i * columns + feeds + j] = l->s[i * CAV_COLUMNS + j];
     }
     if (lstub__zsolve(y, n, n, x, columns, columns) != 0) return -1;
     for (j = 0; j < columns; j++) {
         for (i = 0; i < feeds; i++) z[i * columns + j] = cplx_mul(unit, x[i * columns + j]);
         for (i = 0; i < t; i++) {
-            cplx sum = j < feeds ? cplx_of(0.0, 0.0) : cplx_neg(l->zeta[i * t + j - feeds]);
-            for (k = 0; k < n; k++) sum = cplx_fma(sum, l->s[k * t + i], x[k * columns + j]);
+            cplx sum = j < feeds ? cplx_of(0.0, 0.0) : cplx_neg(l->zeta[i * CAV_COLUMNS + j - feeds]);
+            for (k = 0; k < n; k++) sum = cplx_fma(sum, l->s[k * CAV_COLUMNS + i], x[k * columns + j]);
             z[(feeds + i) * columns + j] = cplx_mul(unit, sum);
         }
     }
@@ -223,6 +231,7 @@ static int climb(state *w, cav_load *l)
         if (flux.on && s->plane && s->r_in > 0.0) cav_flux_plane(w, &flux, s, l);
         cav_step_make(w, i, &flux, &room, &c);
         if (cav_step_up(l, &c) != 0) return -1;
+        if (cav_shared(w, s) && i == m->region[s->region].first) cav_region_end(w, &m->region[s->region], l);
     }
     if (m->feed == 0) {
         if (flux.on) cav_flux_stop(&flux, l);
@@ -230,7 +239,7 @@ static int climb(state *w, cav_load *l)
         for (b = 0; b < m->barrels; b++) if (m->cap_tap[b] >= 0) join_trace(m, l, cells, b, m->cap_tap[b]);
         if (m->lid_top) {
             cav_load above;                     /* the space under the lid, as seen from the barrel's upper end */
-            above.n = above.traces = 0;
+            above.n = above.traces = above.columns = 0;
             cav_step_make(w, 0, &flux, &room, &c);
             if (cav_step_up(&above, &c) != 0) return -1;
             for (i = 0; i < l->n * l->n; i++) l->y[i] = cplx_add(l->y[i], above.y[i]);

@@ -66,7 +66,7 @@ void cav_flux_plane(const state *w, cav_w *flux, const cav_slab *s, cav_load *l)
             for (j = 0; j < wide; j++) y[i * wide + j] = i < n && j < n ? l->y[i * n + j] : cplx_of(0.0, 0.0);
         y[wide * wide - 1] = flux->y;
         memcpy(l->y, y, (size_t)(wide * wide) * sizeof y[0]);
-        for (i = 0; i < l->traces; i++) l->s[n * l->traces + i] = cplx_of(0.0, 0.0);
+        for (i = 0; i < l->columns; i++) l->s[n * CAV_COLUMNS + i] = cplx_of(0.0, 0.0);
         l->n = wide;
         flux->started = 1;
     }
@@ -87,20 +87,20 @@ void cav_flux_plane(const state *w, cav_w *flux, const cav_slab *s, cav_load *l)
 /* Beyond the uppermost plane the line goes on. */
 void cav_flux_stop(cav_w *flux, cav_load *l)
 {
-    int n = l->n - 1, t = l->traces, i, j;
-    cplx y[CAV_WIDE * CAV_WIDE], inverse, sw[CAV_TRACES];
+    int n = l->n - 1, t = l->columns, i, j;
+    cplx y[CAV_WIDE * CAV_WIDE], inverse, sw[CAV_COLUMNS];
 
     flux->on = 0;
     if (!flux->started) return;
     inverse = cplx_inv(cplx_add(l->y[(n + 1) * (n + 1) - 1], flux->y));
-    for (i = 0; i < t; i++) sw[i] = l->s[n * t + i];
+    for (i = 0; i < t; i++) sw[i] = l->s[n * CAV_COLUMNS + i];
     for (i = 0; i < n; i++) {
         cplx x = cplx_mul(inverse, l->y[i * (n + 1) + n]);
         for (j = 0; j < n; j++) y[i * n + j] = cplx_fms(l->y[i * (n + 1) + j], x, l->y[n * (n + 1) + j]);
-        for (j = 0; j < t; j++) l->s[i * t + j] = cplx_fms(l->s[i * t + j], x, sw[j]);
+        for (j = 0; j < t; j++) l->s[i * CAV_COLUMNS + j] = cplx_fms(l->s[i * CAV_COLUMNS + j], x, sw[j]);
     }
     for (i = 0; i < t; i++)
-        for (j = 0; j < t; j++) l->zeta[i * t + j] = cplx_fms(l->zeta[i * t + j], cplx_mul(inverse, sw[i]), sw[j]);
+        for (j = 0; j < t; j++) l->zeta[i * CAV_COLUMNS + j] = cplx_fms(l->zeta[i * CAV_COLUMNS + j], cplx_mul(inverse, sw[i]), sw[j]);
     memcpy(l->y, y, (size_t)(n * n) * sizeof y[0]);
     l->n = n;
 }
@@ -194,7 +194,7 @@ static int find_capacitances(lstub__cavity *m, const lstub__cav_medium *medium, 
 
     none.on = none.started = 0;
     m->planes = 0;
-    s->load.n = s->load.traces = 0;
+    s->load.n = s->load.traces = s->load.columns = 0;
     if (m->half_opening[0] >= 0) {
         s->load.n = m->opening[m->half_opening[0]].cells;
         cav_half_admittance(&s->w, m->half[0], s->load.n, s->load.y);
@@ -247,6 +247,7 @@ int cav_flux_prepare(lstub__cavity *m, const lstub__cav_medium *medium, void *sc
     if (!m->returns.flux) return 0;
     for (i = 0; i < m->media; i++) eps[i] = cplx_of(medium[i].dk, 0.0);
     cav_state(&s->w, m, 2.0 * LSTUB_PI * 1e9 / LSTUB_C0, eps, NULL);
+    s->w.plain = 1;
     if (!(cplx_norm(mean_shape(&s->w)) > NOTHING * NOTHING * pow(m->returns.opening, 4.0))) {
         m->returns.flux = 0;
         return 0;

@@ -30,10 +30,22 @@ typedef struct cav_answer {         /* what answers the waves of some slabs */
 } cav_answer;
 
 typedef struct cav_tap {            /* where a trace leaves */
-    int    slab;                    /* beside it                                                    */
-    double depth, rim_in, rim_out;
-    double height;                  /* of the planes' distances from it, in parallel                */
+    int    region;
+    double depth, rim;
+    double up, down;                /* to the planes above and below; INFINITY: none                */
 } cav_tap;
+
+/*
+** A space between two planes, or beyond the outermost, where traces leave. Its slabs are apart only as far out as `reach`: beyond,
+** the wave is one (cavity_region.c).
+*/
+#define CAV_REGIONS (2 * LSTUB__CAV_TAPS)
+#define CAV_SHARED  12              /* most slabs of one                                            */
+typedef struct cav_region {
+    int    first, last;             /* slabs, of each barrel                                        */
+    int    ref;                     /* slab whose medium and vias the common wave has               */
+    double reach, height;           /* height INFINITY: no plane on one side                        */
+} cav_region;
 
 struct lstub__cavity {
     size_t  bytes;
@@ -54,6 +66,8 @@ struct lstub__cavity {
     lstub__cav_returns returns;         /* its vias lie in the same block                               */
     cav_answer answer[CAV_ANSWERS];
     cav_tap tap[2][LSTUB__CAV_TAPS];
+    cav_region region[CAV_REGIONS];
+    int     regions;
     double *plane_c;                    /* with flux: F over the Dk above, of each plane from the top, its opening seen as a whole */
     int     planes;
     double  ratio[LSTUB__CAV_MEDIA];

@@ -61,27 +61,38 @@ typedef struct two {                /* mode 0 of both, at their own cells */
     cplx *top[2], *bottom[2], r[4];
 } two;
 
+/*
+** Of mode 0 in a slab as if alone: T, what stands for 1/K0, and kappa a K1/K0 (0 where no barrel passes); a: the barrel's radius
+** or that of the pad on it.
+*/
+void cav_wave_of(state *w, const cav_slab *s, cplx *t, cplx *c, cplx *own)
+{
+    cplx k = w->kappa[s->medium], e = cplx_exp(cplx_scale(k, s->r_in));
+    lstub__zik b;
+
+    *t = *own = cplx_of(0.0, 0.0);
+    *c = cplx_mul(k, k);
+    if (s->r_in > 0.0) {
+        lstub__bessel_zik(cplx_scale(k, s->r_in), &b);
+        *t = cplx_mul(cplx_div(b.i0, b.k0), cplx_mul(e, e));
+        *c = cplx_div(e, b.k0);
+        *own = cplx_scale(cplx_mul(k, cplx_div(b.k1, b.k0)), s->r_in);
+    } else if (s->fill >= 0) {
+        mode_form f;
+        cav_make_form(w, s, 0, &f);
+        *t = f.t;
+        *c = k;
+    }
+}
+
 static void admittances(state *w, const cav_slab *const *each, const int *present, cplx *r)
 {
     const cav_slab *s = each[0];
     const cav_echo *echo = cav_echo_of(w, s);
-    cplx k = w->kappa[s->medium], k2 = cplx_mul(k, k), t[2], c[2], m[4], det, g[4];
-    double a = w->m->radius;
-    lstub__zik b;
+    cplx t[2], c[2], own[2], m[4], det, g[4];
     int i;
 
-    lstub__bessel_zik(cplx_scale(k, a), &b);
-    for (i = 0; i < 2; i++) {
-        cplx e = cplx_exp(cplx_scale(k, a));
-        t[i] = present[i] ? cplx_mul(cplx_div(b.i0, b.k0), cplx_mul(e, e)) : cplx_of(0.0, 0.0);
-        c[i] = present[i] ? cplx_div(e, b.k0) : k2;
-        if (!present[i] && each[i]->fill >= 0) {
-            mode_form f;
-            cav_make_form(w, each[i], 0, &f);
-            t[i] = f.t;
-            c[i] = k;
-        }
-    }
+    for (i = 0; i < 2; i++) cav_wave_of(w, each[i], &t[i], &c[i], &own[i]);
     for (i = 0; i < 4; i++) {           /* 1 + T Gamma */
         m[i] = cplx_mul(t[i / 2], echo->gamma[i]);
         if (i == 0 || i == 3) m[i].re += 1.0;
@@ -92,8 +103,7 @@ static void admittances(state *w, const cav_slab *const *each, const int *presen
     g[2] = cplx_mul(det, cplx_fms(cplx_mul(echo->gamma[2], m[3]), echo->gamma[3], m[2]));
     g[3] = cplx_mul(det, cplx_fms(cplx_mul(echo->gamma[3], m[0]), echo->gamma[2], m[1]));
     for (i = 0; i < 4; i++) r[i] = cplx_neg(cplx_mul(g[i], cplx_mul(c[i / 2], c[i % 2])));
-    for (i = 0; i < 2; i++)
-        if (present[i]) r[3 * i] = cplx_add(r[3 * i], cplx_scale(cplx_mul(k, cplx_div(b.k1, b.k0)), a));
+    for (i = 0; i < 2; i++) if (present[i]) r[3 * i] = cplx_add(r[3 * i], own[i]);
 }
 
 /* Adds g (top_q, -bottom_q)(top_p, -bottom_p)' to the matrices. */
@@ -195,7 +205,14 @@ static void pair_step(state *w, int slab, cav_room *room, cav_step *c)
         v.bottom[i] = b[i].bottom;
     }
     clear(c, room, na, nb);
+    c->pending = 0;
     for (i = 0; i < 2; i++) place(&b[i], v.na[i], v.nb[i], v.ra[i], v.rb[i], c);
+    if (cav_shared(w, s[0])) {
+        c->loops = 0;
+        c->pending = 2;
+        for (i = 0; i < 2; i++) add_column(c, &v, i, i, cplx_of(1.0, 0.0));
+        return;
+    }
     if (s[0]->outer == LSTUB__CAV_RING) {
         tie(w, s, &v, c);
         return;
@@ -230,14 +247,14 @@ static void with_flux(const cav_slab *s, const cav_w *flux, cav_room *room, cav_
     for (i = 0; i < in.nb; i++) for (j = 0; j < in.nb; j++) c->bb[i * nb + j] = in.bb[i * in.nb + j];
     c->tt[na * na - 1] = c->bb[nb * nb - 1] = cplx_scale(flux->y, (1.0 + e * e) * f);
     c->tb[na * nb - 1] = cplx_scale(flux->y, 2.0 * e * f);
-    if (in.loops > 0) {
+    if (in.loops + in.pending > 0) {
         for (i = 0; i < in.na; i++) c->top[0][i] = in.top[0][i];
         for (i = 0; i < in.nb; i++) c->bottom[0][i] = in.bottom[0][i];
     }
 }
 
 /* Loops of a slab with the loss of its metal; radius: of what carries the current. */
-static void add_metal(const state *w, const cav_slab *s, cplx *loop, int n, int stride)
+void cav_add_metal(const state *w, const cav_slab *s, cplx *loop, int n, int stride)
 {
     const cplx *z = w->surface;
     cplx planes = cplx_of(0.0, 0.0), wall, m;
@@ -267,7 +284,7 @@ void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_st
 
     if (m->barrels > 1) {
         pair_step(w, slab, room, c);
-        if (slab >= m->feed) add_metal(w, s->r_in > 0.0 ? s : &m->slab[m->slabs + slab], c->loop, c->loops, c->loops);
+        if (slab >= m->feed) cav_add_metal(w, s->r_in > 0.0 ? s : &m->slab[m->slabs + slab], c->loop, c->loops, c->loops);
         return;
     }
     point(&b, room->own[0], room->ends[0]);
@@ -280,7 +297,8 @@ void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_st
     c->top[0] = b.top;
     c->bottom[0] = b.bottom;
     c->loop[0] = b.loop;
-    c->loops = b.loop.re != 0.0 || b.loop.im != 0.0;
-    if (slab >= m->feed) add_metal(w, s, c->loop, c->loops, 1);
+    c->pending = cav_shared(w, s);
+    c->loops = !c->pending && (b.loop.re != 0.0 || b.loop.im != 0.0);
+    if (slab >= m->feed) cav_add_metal(w, s, c->loop, c->loops, 1);
     if (flux->on && flux->started) with_flux(s, flux, room, c);
 }

@@ -33,6 +33,7 @@ typedef struct cav_slab {
     int    plane;                               /* its lower face is the (lower) face of a plane        */
     int    tap;                                 /* number of the trace that leaves at its lower face, -1 */
     unsigned vias;                              /* which return vias join the planes around it, a bit each */
+    int    region;                              /* number of the space between planes with traces it is part of, -1 */
     int    answer;                              /* number of (vias, barrel, medium), of what answers its waves */
     int    kernel;
     int    metal_top, metal_bottom, metal_wall; /* of the planes above and below and of the tube around; -1: none */

@@ -42,6 +42,7 @@ typedef struct state {
     const lstub__cavity *m;
     const cplx *eps, *surface;      /* surface null: perfect metal */
     double k0;
+    int plain;                      /* every slab as if no trace left: for the planes' capacitances */
     cplx kappa[LSTUB__CAV_MEDIA];
     int echo_known[CAV_ANSWERS];
     cav_echo echo[CAV_ANSWERS];
@@ -66,6 +67,9 @@ typedef struct mode_form {
     cplx kf, s, sigma, qi, c1, c2, inner_log, outer_log, jump, w;
 } mode_form;
 
+
+/* Whether a slab's outer wave is its region's. */
+static inline int cav_shared(const state *w, const cav_slab *s) { return s->region >= 0 && !w->plain; }
 
 /* A mode at the rims of an opening of a slab: cavity_wave.c. */
 void cav_make_form(state *w, const cav_slab *s, int mode, mode_form *f);

@@ -140,6 +140,7 @@ const cav_echo *cav_echo_of(state *w, const cav_slab *s)
 
 static cplx reflection(state *w, const cav_slab *s, int mode, cplx kappa)
 {
+    if (mode == 0 && cav_shared(w, s)) return cplx_of(0.0, 0.0);
     if (s->outer == LSTUB__CAV_WALL) {
         cplx i, k;
         if (mode == 0) {
@@ -201,13 +202,13 @@ static void hole_form(const cav_slab *s, cplx qf, cplx kf, mode_form *f)
 }
 
 /* Square of the greatest radius that counts in a slab. */
-static double reach_of(const lstub__cavity *m, const cav_slab *s)
+static double reach_of(const lstub__cavity *m, const cav_slab *s, int shared)
 {
     const cav_opening *a = &m->opening[s->top], *b = s->bottom >= 0 ? &m->opening[s->bottom] : a;
     double r = a->x[a->points - 1];
 
     if (b->x[b->points - 1] > r) r = b->x[b->points - 1];
-    if (s->outer == LSTUB__CAV_WALL && s->r_out > r) r = s->r_out;
+    if (s->outer == LSTUB__CAV_WALL && !shared && s->r_out > r) r = s->r_out;
     return r * r;
 }
 
@@ -217,7 +218,7 @@ void cav_make_form(state *w, const cav_slab *s, int mode, mode_form *f)
     double k0 = w->k0;
 
     f->hole = s->fill >= 0;
-    f->small = mode == 0 && !f->hole && cplx_norm(w->kappa[s->medium]) * reach_of(w->m, s) < (w->m->barrels > 1 ? 144.0 : 30.0);    /* two are tied by this form alone */
+    f->small = mode == 0 && !f->hole && cplx_norm(w->kappa[s->medium]) * reach_of(w->m, s, cav_shared(w, s)) < (w->m->barrels > 1 || cav_shared(w, s) ? 144.0 : 30.0);    /* these are tied by this form alone */
     f->kappa = mode == 0 ? w->kappa[s->medium] : wave_number(eps, w->m->ratio[s->medium], k0, mode, s->h);
     f->q = reflection(w, s, mode, f->kappa);
     f->t = cplx_of(0.0, 0.0);
@@ -268,12 +269,12 @@ static void hole_at(const mode_form *f, const cav_slab *s, const cav_opening *o,
 }
 
 /* Radial admittance at the barrel, kappa a (K1 + Q I1)/(K0 - Q I0); behind a wall P/U there. */
-static cplx admittance(const mode_form *f, const cav_slab *s, cplx k2)
+static cplx admittance(const mode_form *f, const cav_slab *s, cplx k2, int shared)
 {
     double a = s->r_in;
     cplx rho, t;
 
-    if (s->outer == LSTUB__CAV_WALL) {
+    if (s->outer == LSTUB__CAV_WALL && !shared) {
         cplx ia, sa, i1, k1, ig, sg, u, p;
         small_waves(f->kappa, a, &ia, &sa);
         small_first(k2, a, &i1, &k1);
@@ -316,7 +317,7 @@ static void small_mode(const state *w, const mode_form *f, const cav_slab *s, co
         }
         return;
     }
-    v->loop = cplx_div(cplx_of(w->k0 * w->k0, 0.0), admittance(f, s, k2));
+    v->loop = cplx_div(cplx_of(w->k0 * w->k0, 0.0), admittance(f, s, k2, cav_shared(w, s)));
     memcpy(v->phi, r->i, (size_t)o->points * sizeof *r->i);
     memcpy(v->psi, r->s, (size_t)o->points * sizeof *r->s);
     memcpy(v->lambda, r->l, (size_t)o->points * sizeof *r->l);
@@ -353,6 +354,7 @@ void cav_state(state *w, const lstub__cavity *m, double k0, const cplx *eps, con
     w->eps = eps;
     w->surface = surface;
     w->k0 = k0;
+    w->plain = 0;
     w->stored = w->singles = w->blocks = 0;
     for (i = 0; i < m->media; i++) {
         cplx r = cplx_sqrt(eps[i]);

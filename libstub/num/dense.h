@@ -16,7 +16,7 @@ int lstub__zsolve(cplx *a, int n, int sa, cplx *b, int rhs, int sb);
 ** Returns 0, or -1 as lstub__zsolve.
 */
 #define LSTUB__GRAM_N    26
-#define LSTUB__GRAM_WIDE 36
+#define LSTUB__GRAM_WIDE 60
 int lstub__zgram(cplx *m, int n, cplx *r, int wide, cplx *g);
 
 /* The same as lstub__zsolve for real numbers. */

@@ -97,9 +97,27 @@ static double central(double x, const void *context)
     return d->f(x + d->h, d->context) - d->f(x - d->h, d->context);
 }
 
+/* A Newton step on the central difference towards the minimum near x; NaN where the curve is not hollow there. */
+static double step_to_dip(lstub__function *f, const void *context, double x, double h)
+{
+    double low = f(x - h, context), here = f(x, context), high = f(x + h, context), bend = (high - here) + (low - here);
+    return bend > 0.0 ? -0.5 * h * (high - low) / bend : NAN;
+}
+
 double lstub__dip(lstub__function *f, const void *context, double a, double b)
 {
-    double x = lstub__minimum(f, context, a, b, 2e-5 * b), reach = 1e-4 * x;
+    double x = lstub__minimum(f, context, a, b, 5e-4 * b), h = 1e-4 * x;
+    for (int turn = 0; turn < 6 && x - h > a && x + h < b; turn++) {
+        double step = step_to_dip(f, context, x, h);
+        if (!(fabs(step) < 2e-3 * x) || x + step <= a || x + step >= b)
+            break;
+        x += step;
+        if (turn > 0 && fabs(step) < 1e-8 * x)     /* the next would be shorter by far more than that */
+            return x;
+        h = 1e-6 * x;
+    }
+    x = lstub__minimum(f, context, a, b, 2e-5 * b);
+    double reach = 1e-4 * x;
     difference d = {f, context, 1e-6 * x};
     double sharp = lstub__root(central, &d, fmax(a, x - reach), fmin(b, x + reach), 1e-13 * x);
     return isnan(sharp) ? x : sharp;

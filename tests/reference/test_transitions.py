@@ -140,7 +140,7 @@ def curve_errors(case, result):
 
 def test_curves(capsys):
     """Where there is no notch the curves are compared up to 40 GHz, farther than a limit was set for; there the slot without a
-    stub is 0.08 off in S11."""
+    stub is 0.065 off in S11."""
     through, back = {}, {}
     for case, result in WITH_TRACE:
         through[case["id"]], back[case["id"]] = curve_errors(case, result)
@@ -148,7 +148,7 @@ def test_curves(capsys):
     told(capsys, summary("S11", back, ""))
     stubless = {case["id"] for case, result in WITH_TRACE if "f1_Hz" not in result}
     assert len(stubless) == 7 and {name: e for name, e in through.items() if e > 0.3} == {}
-    assert {name: e for name, e in back.items() if e > (0.09 if name == "ndo_k5" else 0.05)} == {}
+    assert {name: e for name, e in back.items() if e > (0.07 if name == "ndo_k5" else 0.05)} == {}
     assert max(through[name] for name in stubless) <= 0.15
 
 

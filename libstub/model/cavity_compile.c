@@ -697,8 +697,8 @@ int lstub__cavity_compile(const lstub__cav_barrel *barrel, const lstub__cav_opti
         w->face = get(w, (CAV_SLABS + 4) * sizeof *w->face);
     }
     failed = w == NULL || scratch == NULL || w->mesh == NULL || w->face == NULL ? -1 : 0;
-    if (!failed && ((cells + 3) * refine + 1 > LSTUB__CAV_POINTS || cells + 3 > LSTUB__CAV_CELLS
-                    || barrel->media > LSTUB__CAV_MEDIA || barrel->returns.vias > LSTUB__CAV_VIAS || (barrel->partner != NULL && 2 * (cells + 4) > LSTUB__CAV_CELLS))) failed = -2;
+    if (!failed && ((cells + 4) * refine + 1 > LSTUB__CAV_POINTS || cells + 6 > LSTUB__CAV_CELLS
+                    || barrel->media > LSTUB__CAV_MEDIA || barrel->returns.vias > LSTUB__CAV_VIAS || (barrel->partner != NULL && 2 * (cells + 6) > LSTUB__CAV_CELLS))) failed = -2;
     if (!failed) {
         w->mesh->face = w->face;
         failed = cav_mesh_make(barrel, cells, refine, scratch, w->mesh);

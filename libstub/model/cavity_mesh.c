@@ -354,6 +354,15 @@ static double clear_radius(const lstub__cav_barrel *barrel)
     return least;
 }
 
+/* The same between layers without plane, where a pad as it grows wider than the barrel makes copper of it. */
+static double padless(const lstub__cav_barrel *barrel, const cav_slab *s, double width)
+{
+    double n = s != NULL ? 1.5 - s->h / (THIN * width) : 0.0;
+
+    n = n > 1.0 ? 1.0 : n > 0.0 ? n : 0.0;
+    return s != NULL && s->r_in > barrel->radius ? n * (1.0 - edge(s->r_in - barrel->radius, width)) : n;
+}
+
 typedef struct seam {               /* two slabs meet, or one and a half-space (null) */
     const part *a, *b;              /* above, below */
     double z, thin_antipad, thin_pad;
@@ -373,7 +382,7 @@ static void face_between(const lstub__cav_barrel *barrel, const lstub__cav_cut *
     const part *a = m->a, *b = m->b;
     const cav_slab *upper = a != NULL ? &a->slab : NULL, *lower = b != NULL ? &b->slab : NULL;
     double ra = upper != NULL ? upper->r_in : 0.0, rb = lower != NULL ? lower->r_in : 0.0, r0 = ra > rb ? ra : rb, r1, reach, mid;
-    double middle, gap, step, near = 0.0, by_pad, pad = 0.0;
+    double middle, gap, step, inner, tip, near = 0.0, by_pad, pad = 0.0;
     int plane = (a != NULL && a->antipad > 0.0) || (b != NULL && b->antipad > 0.0) || m->thin_antipad > 0.0;
 
     if (m->thin_pad > r0) r0 = m->thin_pad;
@@ -395,28 +404,30 @@ static void face_between(const lstub__cav_barrel *barrel, const lstub__cav_cut *
     }
     middle = a != NULL && a->keep && ra > 0.0 ? 0.5 * (a->top + a->bottom) : b != NULL && b->keep && rb > 0.0 ? 0.5 * (b->top + b->bottom) : m->z;
     mid = near_antipad(barrel, middle, &near, &gap);
-    if (r0 == 0.0) {                            /* two dielectrics beyond the barrel's end */
-        r1 = least_outer(upper, lower, mid > 0.0 ? 2.0 * mid : 2.0 * barrel->hole + 3.0 * (upper != NULL ? upper->h : lower->h));
-        rims(AXIS * barrel->radius, barrel->radius, INSIDE, 0.0, 0.0, face->x);
-        rims(barrel->radius, r1, cells, 0.0, 0.0, face->x + INSIDE);
-        set_face(face, cells + INSIDE, 1, 0);
+    inner = r0 > 0.0 ? r0 : barrel->radius;     /* 0: dielectrics beyond the barrel's end, cut as its end is */
+    reach = fmax(inner + REACH * gap, fmax(2.0 * mid, 2.0 * inner));
+    if (mid == 0.0) reach = fmax(reach, 2.0 * barrel->hole + 3.0 * (upper != NULL ? upper->h : lower->h));
+    reach = fmin(reach, fmax(clear_radius(barrel), 1.2 * inner));
+    r1 = least_outer(upper, lower, reach);
+    if (mid < inner + 0.25 * (r1 - inner)) mid = inner + 0.25 * (r1 - inner);
+    if (mid > inner + 0.75 * (r1 - inner)) mid = inner + 0.75 * (r1 - inner);
+    near = nearness(near, mid - inner);
+    tip = end_nearness(own, m->z, mid - inner);
+    if (r0 == 0.0) {
+        rims(AXIS * inner, inner, INSIDE, 0.0, tip, face->x);
+        rims(inner, mid, cells, tip, near, face->x + INSIDE);
+        rims(mid, r1, OUTSIDE, 0.0, 0.0, face->x + INSIDE + cells);
+        set_face(face, INSIDE + cells + OUTSIDE, 1, 0);
         return;
     }
-    reach = r0 + REACH * gap;
-    if (reach < 2.0 * mid) reach = 2.0 * mid;
-    if (reach < 2.0 * r0) reach = 2.0 * r0;
-    reach = fmin(reach, fmax(clear_radius(barrel), 1.2 * r0));
-    r1 = least_outer(upper, lower, reach);
-    if (mid < r0 + 0.25 * (r1 - r0)) mid = r0 + 0.25 * (r1 - r0);
-    if (mid > r0 + 0.75 * (r1 - r0)) mid = r0 + 0.75 * (r1 - r0);
     if (step == 0.0 && m->tap < 0 && !(a != NULL && a->keep) && m->thin_pad == 0.0 && !(b != NULL && b->keep)) refine = 1;  /* only the dielectric changes */
-    near = nearness(near, mid - r0);
-    rims(r0, mid, cells * refine, edge(step, mid - r0), near, face->x);
+    tip = fmax(tip, edge(step, mid - r0));
+    rims(r0, mid, cells * refine, tip, near, face->x);
     by_pad = near_pad(barrel, own, m->z, r0, mid, &pad);
-    if (by_pad > 0.0) draw_to_pad(r0, pad, mid, by_pad, cells * refine, edge(step, mid - r0), near, face->x);
+    if (by_pad > 0.0) draw_to_pad(r0, pad, mid, by_pad, cells * refine, tip, near, face->x);
     rims(mid, r1, OUTSIDE * refine, 0.0, 0.0, face->x + cells * refine);
     set_face(face, cells + OUTSIDE, refine, cells);
-    face->plain = near;
+    face->plain = fmax(near, fmax(padless(barrel, upper, mid - r0), padless(barrel, lower, mid - r0)));
 }
 
 /* The first opening, and the coaxial line above it that carries the port. */

@@ -105,13 +105,18 @@ static int32_t give_layers(lstub__barrel *b, const lstub__site *site, int arm, l
 
 #define PAIR_RING 6           /* evenly spread vias around a barrel of a pair, at most: their places are not known anyway */
 
-/* Adds a via unless it meets one that is there; a status. */
+/* Adds a via unless it is there already; a status. */
 static int32_t add_via(lstub__barrel *b, const lstub_via *in, int32_t number, double x, double y, lstub_error *err)
 {
     lstub__cav_returns *r = &b->shape.returns;
-    for (int i = 0; i < r->vias; i++)
-        if (hypot(x - b->via[i].x, y - b->via[i].y) <= in->return_drill)
+    for (int i = 0; i < r->vias; i++) {
+        double d = hypot(x - b->via[i].x, y - b->via[i].y);
+        if (d <= 1e-9 || (in->return_xy == NULL && d <= in->return_drill))
             return LSTUB_OK;
+        if (d <= in->return_drill)
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", number, "return_xy[%ld]: it or its mirror image at %.9g, %.9g m touches another of a pair's "
+                               "return vias, which stand as their mirror images do", (long)number, x, y);
+    }
     if (r->vias == LSTUB__CAV_VIAS)
         return lstub__fail(err, LSTUB_E_UNSUPPORTED, "return_count", -1, "return_count = %ld: more than %d return vias here, mirror images of a "
                            "pair included, are not computed", (long)in->return_count, LSTUB__CAV_VIAS);
@@ -139,6 +144,8 @@ static int32_t give_pair_vias(lstub__barrel *b, const lstub_via *in, lstub_error
         double angle = LSTUB_PI * (2 * i + 1) / count;
         double x = in->return_xy != NULL ? in->return_xy[2 * i] : in->return_distance * cos(angle);
         double y = in->return_xy != NULL ? in->return_xy[2 * i + 1] : in->return_distance * sin(angle);
+        if (in->return_xy == NULL && fabs(2.0 * x - in->pair_pitch) <= in->return_drill)
+            x = 0.5 * in->pair_pitch;               /* would touch its image: stands in the middle, its own image */
         if (hypot(x - in->pair_pitch, y) <= reach) {
             if (in->return_xy == NULL)
                 continue;

@@ -253,27 +253,35 @@ static void with_flux(const cav_slab *s, const cav_w *flux, cav_room *room, cav_
     }
 }
 
-/* Loops of a slab with the loss of its metal; radius: of what carries the current. */
+/* What planes of surface impedance z add to a loop: j z |loop|/(k0 eta0 h), a resistance whether the loop is inductive or, past a
+** resonance of its walls, not. */
+static cplx of_planes(cplx z, cplx loop, double k0, double h)
+{
+    return cplx_scale(cplx_of(-z.im, z.re), cplx_abs(loop) / (k0 * LSTUB_ETA0 * h));
+}
+
+/* Loops of a slab with the loss of its metal; r_in: of what carries the current. */
 void cav_add_metal(const state *w, const cav_slab *s, cplx *loop, int n, int stride)
 {
     const cplx *z = w->surface;
-    cplx planes = cplx_of(0.0, 0.0), wall, m;
-    int i, j;
+    cplx planes = cplx_of(0.0, 0.0), wall;
+    int i;
 
     if (z == NULL || n == 0 || s->r_in <= 0.0) return;
     if (s->metal_top >= 0) planes = cplx_add(planes, z[s->metal_top]);
     if (s->metal_bottom >= 0) planes = cplx_add(planes, z[s->metal_bottom]);
-    m = cplx_scale(cplx_of(planes.im, -planes.re), 1.0 / (w->k0 * LSTUB_ETA0 * s->h));
-    m.re += 1.0;
     wall = cplx_scale(z[0], s->h / s->r_in);
     if (s->metal_wall >= 0) wall = cplx_add(wall, cplx_scale(z[s->metal_wall], s->h / s->r_out));
     wall = cplx_scale(cplx_of(-wall.im, wall.re), w->k0 / LSTUB_ETA0);         /* jw eps0 Zs h/a */
-    for (i = 0; i < n; i++)
-        for (j = 0; j < n; j++) {
-            cplx *to = &loop[i * stride + j];
-            *to = cplx_mul(*to, m);
-            if (i == j) *to = cplx_add(*to, wall);
-        }
+    if (n == 2 && loop[0].re < 0.0 && loop[stride + 1].re < 0.0) {             /* what two barrels share, too */
+        cplx shared = cplx_scale(cplx_of(planes.im, -planes.re), loop[1].re / (w->k0 * LSTUB_ETA0 * s->h));
+        loop[1] = cplx_add(loop[1], shared);
+        loop[stride] = cplx_add(loop[stride], shared);
+    }
+    for (i = 0; i < n; i++) {
+        cplx *to = &loop[i * stride + i];
+        *to = cplx_add(cplx_add(*to, of_planes(planes, *to, w->k0, s->h)), wall);
+    }
 }
 
 void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_step *c)

@@ -32,7 +32,7 @@ typedef struct cav_slab {
     int    copper;                              /* within a copper layer: its faces share their shape   */
     int    plane;                               /* its lower face is the (lower) face of a plane        */
     int    tap;                                 /* number of the trace that leaves at its lower face, -1 */
-    unsigned vias;                              /* which return vias join the planes around it, a bit each */
+    unsigned vias;                              /* which return vias join the planes around it, a bit each, and CAV_BEYOND */
     int    region;                              /* number of the space between planes with traces it is part of, -1 */
     int    answer;                              /* number of (vias, barrel, medium), of what answers its waves */
     int    kernel;
@@ -63,6 +63,9 @@ typedef struct cav_mesh {
     int cap_tap[2];                             /* trace that leaves at that face, -1                   */
     int half_face[2];                           /* face that looks into the lower half-space, or -1     */
 } cav_mesh;
+
+/* Of a slab beyond the outermost plane: edges of planes are none of it. */
+#define CAV_BEYOND 0x80000000u
 
 /* Return vias that join two planes, a bit each; beyond the outermost plane (-INFINITY, INFINITY) those that reach it. */
 unsigned cav_joining(const lstub__cav_returns *returns, double above, double below);

@@ -90,7 +90,7 @@ static cplx even_ring(const lstub__cav_returns *r, cplx kappa)
 unsigned cav_joining(const lstub__cav_returns *r, double above, double below)
 {
     const double slack = 1e-9;
-    unsigned mask = 0;
+    unsigned mask = above == -INFINITY || below == INFINITY ? CAV_BEYOND : 0;
     int i;
 
     for (i = 0; i < r->vias; i++) {
@@ -226,7 +226,7 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
 {
     scatterer list[LSTUB__CAV_VIAS + 2];
     cplx a[UNKNOWNS * UNKNOWNS], b[UNKNOWNS * 2], k[2 * ORDERS + 1], ratio[ORDERS + 1], barrel_ratio = cplx_of(0.0, 0.0), direct = cplx_of(0.0, 0.0);
-    int vias = 0, top, count, n, i, j, v, s, columns = two ? 2 : 1;
+    int vias = 0, top, count, n, i, j, v, s, columns = two ? 2 : 1, edges = r->edge[0] > 0.0 && !(mask & CAV_BEYOND);
     const cplx zero = cplx_of(0.0, 0.0);
 
     for (i = 0; i < r->vias; i++) vias += (int)(mask >> i & 1u);
@@ -256,7 +256,7 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
         }
         for (i = 0; i < j; i++) couple(&list[i], at, kappa, a, n);
     }
-    if (r->edge[0] > 0.0) add_edges(r, list, count, kappa, two, a, n, b, columns);
+    if (edges) add_edges(r, list, count, kappa, two, a, n, b, columns);
     if (n > 0 && lstub__zsolve(a, n, n, b, columns, columns) != 0) { out->gamma[0] = cplx_of(NAN, NAN); return; }
     if (r->pitch > 0.0) {
         waves(kappa, r->pitch, 1, k);
@@ -276,7 +276,7 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
             }
         }
     }
-    if (r->edge[0] > 0.0) add_edges_back(r, list, count, kappa, two, b, columns, out->gamma);
+    if (edges) add_edges_back(r, list, count, kappa, two, b, columns, out->gamma);
     if (r->flux && !two && (barrels & 1)) {
         const scatterer *own = &list[count - 1];
         while (own->barrel != 0) own--;

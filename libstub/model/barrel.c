@@ -134,9 +134,9 @@ static int32_t add_via(lstub__barrel *b, const lstub_via *in, int32_t number, do
 
 /*
 ** Vias around a pair, whose partner is at (pair_pitch, 0). Odd mode is a mode only of a pattern that its mirror image leaves
-** as it is: every via brings its image. Evenly spread ones stand so that the partner is midway between two.
+** as it is: every via brings its image; two barrels of their own take given places as they are. Evenly spread ones stand so that the partner is midway between two.
 */
-static int32_t give_pair_vias(lstub__barrel *b, const lstub_via *in, lstub_error *err)
+static int32_t give_pair_vias(lstub__barrel *b, const lstub_via *in, int images, lstub_error *err)
 {
     int32_t count = in->return_xy == NULL && in->return_count > PAIR_RING ? PAIR_RING : in->return_count;
     double reach = 0.5 * (in->drill + in->return_drill);
@@ -153,7 +153,7 @@ static int32_t give_pair_vias(lstub__barrel *b, const lstub_via *in, lstub_error
                                (long)i, x, y, in->pair_pitch);
         }
         int32_t status = add_via(b, in, i, x, y, err);
-        if (status == LSTUB_OK)
+        if (status == LSTUB_OK && images)
             status = add_via(b, in, i, in->pair_pitch - x, y, err);
         if (status < 0)
             return status;
@@ -259,7 +259,7 @@ static int32_t give_returns(lstub__barrel *b, const lstub__site *site, double si
         b->shape.outer = LSTUB__CAV_WALL;
     if (in->return_kind == LSTUB_RETURN_VIAS) {
         b->shape.outer = LSTUB__CAV_RING;
-        status = in->pair_kind != LSTUB_PAIR_NONE ? give_pair_vias(b, in, err) : give_vias(b, in, err);
+        status = in->pair_kind != LSTUB_PAIR_NONE ? give_pair_vias(b, in, sign != 0.0 || in->return_xy == NULL, err) : give_vias(b, in, err);
     }
     if (in->edges[0] > 0.0) {
         b->shape.outer = LSTUB__CAV_RING;

@@ -17,7 +17,7 @@
 #define LSTUB__CAV_POINTS   42      /* most rims of annuli, refined                                     */
 #define LSTUB__CAV_MEDIA    64
 #define LSTUB__CAV_METALS   8
-#define LSTUB__CAV_VIAS     16      /* most return vias at given positions                              */
+#define LSTUB__CAV_VIAS     24      /* most return vias at given positions                              */
 
 typedef struct lstub__cav_medium {
     double dk;                      /* through-plane, at the reference: sets ranges only; > 0           */

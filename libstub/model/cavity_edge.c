@@ -14,7 +14,8 @@
 #include "num/bessel.h"
 
 #define EULER 0.57721566490153286061
-#define ENOUGH 1e-9
+#define ENOUGH 3e-8         /* of what is left out, about */
+#define NOTHING 36.0        /* e^-36: not seen beside 1 */
 #define MOST 20000
 
 /* ln(1 - 2 q cos t + q^2), q = e^-s: near s = t = 0 as ln(s^2 + t^2) and what is left of it. */
@@ -55,16 +56,19 @@ cplx cav_edge(const lstub__cav_returns *r, cplx kappa, double x, double y, doubl
     for (m = r->shorted ? 1 : 0; m < MOST; m++) {
         double beta = m * LSTUB_PI / a, f = (m > 0 ? 2.0 : 1.0) * (r->shorted ? sin(m * u) * sin(m * v) : cos(m * u) * cos(m * v));
         cplx g = cplx_sqrt(cplx_of(beta * beta + k2.re, k2.im)), e2, back, direct, term;
-        e2 = cplx_exp(cplx_scale(g, -2.0 * b));
-        /* of the walls of y: (e^-2g low + e^-2g high) sign + ..., over 1 - e^-2gB */
-        back = cplx_add(cplx_exp(cplx_scale(g, -(2.0 * low + gap))), cplx_exp(cplx_scale(g, -(2.0 * high + gap))));
-        back = cplx_scale(back, sign);
-        back = cplx_add(back, cplx_exp(cplx_scale(g, gap - 2.0 * b)));
-        back = cplx_add(back, cplx_mul(e2, cplx_exp(cplx_scale(g, -gap))));
-        back = cplx_div(back, cplx_sub(cplx_of(1.0, 0.0), e2));
-        direct = cplx_exp(cplx_scale(g, -gap));
+        back = cplx_of(0.0, 0.0);
+        if (g.re * (2.0 * fmin(low, high) + gap) < NOTHING) {
+            /* of the walls of y: (e^-2g low + e^-2g high) sign + ..., over 1 - e^-2gB */
+            e2 = cplx_exp(cplx_scale(g, -2.0 * b));
+            back = cplx_add(cplx_exp(cplx_scale(g, -(2.0 * low + gap))), cplx_exp(cplx_scale(g, -(2.0 * high + gap))));
+            back = cplx_scale(back, sign);
+            back = cplx_add(back, cplx_exp(cplx_scale(g, gap - 2.0 * b)));
+            back = cplx_add(back, cplx_mul(e2, cplx_exp(cplx_scale(g, -gap))));
+            back = cplx_div(back, cplx_sub(cplx_of(1.0, 0.0), e2));
+        }
+        direct = gap > 0.0 ? cplx_exp(cplx_scale(g, -gap)) : cplx_of(1.0, 0.0);
         term = cplx_div(cplx_add(direct, back), cplx_scale(g, 2.0));
-        if (m > 0) term.re -= exp(-beta * gap) / (2.0 * beta);
+        if (m > 0) term.re -= (gap > 0.0 ? exp(-beta * gap) : 1.0) / (2.0 * beta);
         sum = cplx_add(sum, cplx_scale(term, f * 2.0 * LSTUB_PI / a));
         if (m > 4 && cplx_abs(term) * 2.0 * LSTUB_PI / a * m < ENOUGH && beta * beta > 4.0 * cplx_abs(k2)) break;
     }

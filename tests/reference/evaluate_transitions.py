@@ -33,22 +33,28 @@ def mode_of(case):
 
 
 class Run:
-    """A case as a network, its loss met at its first notch, and its S-parameters as far up as they are answered."""
+    """A case as a network: its constant conductivity is met at the first notch, and for the curves at every frequency."""
 
     def __init__(self, case):
         self.case, self.mode, f_ref = case, mode_of(case), F_LOSS
         for _ in range(3):
-            self.transition = transition_of(case, f_ref)
-            self.f, self.s = answered(self.transition)
+            transition = transition_of(case, f_ref)
+            top = min(GRID[-1], answered(transition))
             self.notches = []
             if case["trace"] is not None:
-                self.notches = self.transition.notches(up_to=self.f[-1], to=1, from_=0, mode=self.mode)
+                self.notches = transition.notches(up_to=top, to=1, from_=0, mode=self.mode)
             if not self.notches or abs(self.notches[0].f / f_ref - 1) < 1e-3 or not F_REF_RANGE[0] < self.notches[0].f < F_REF_RANGE[1]:
                 break
             f_ref = self.notches[0].f
+        self.f = [f for f in GRID if f <= top]
+        self.s = [self.at(f) for f in self.f]
         if case["pair"] is not None and self.mode != "single":
             sign = -1.0 if self.mode == "odd" else 1.0
             self.s = [in_mode(matrix, sign) for matrix in self.s]
+
+    def at(self, f):
+        """S at a frequency, with the permittivity that the case has there."""
+        return transition_of(self.case, min(max(f, 1e5), 1e11)).s([f]).tolist()[0]
 
     def names(self):
         """Row, column and name of what the curve's columns hold."""
@@ -60,13 +66,15 @@ class Run:
 
 
 def answered(transition):
-    """The grid and S on it, as far up as the model answers at all."""
-    try:
-        return GRID, transition.s(GRID).tolist()
-    except ls.ArgumentError as error:
-        if error.field != "freq" or error.index < 1:
-            raise
-        return GRID[:error.index], transition.s(GRID[:error.index]).tolist()
+    """As far up in the grid as the model answers at all, Hz."""
+    for f in reversed(GRID):
+        try:
+            transition.s([f])
+            return f
+        except ls.ArgumentError as error:
+            if error.field != "freq":
+                raise
+    raise ValueError("the model answers nowhere in the grid")
 
 
 def in_mode(s, sign):
@@ -78,7 +86,7 @@ def in_mode(s, sign):
 def zeros(run):
     """Where S11 is real and negative: Im Zin is zero, and Zin nearer to a short than to an open end, which leaves out poles."""
     def imaginary(f):
-        s = run.transition.s([f]).tolist()[0]
+        s = run.at(f)
         if run.case["pair"] is not None and run.mode != "single":
             s = in_mode(s, -1.0 if run.mode == "odd" else 1.0)
         return s[0][0].imag             # of the sign of Im Zin

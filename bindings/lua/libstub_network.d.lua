@@ -355,6 +355,7 @@ function libstub.fit_coupons(stackup, vias, f, f_sigma, options) end
 ---@field stubs? "kept"|"removed" removed: as if the barrel ended on its outermost connecting layers: what the stubs do is the difference; default kept, as drilled
 ---@field metal? "lossy"|"perfect" lossy, the default: barrel and planes of the stackup's conductors
 ---@field annuli? integer as in libstub.model_options
+---@field table_up_to? number Hz, 1e9 to 200e9: S up to there is tabulated once, within 1e-9 of the model, then read in well under a microsecond
 
 ---What a transition rests on, or not. radiates: no return via, partner or edge near. launch: a trace over antipads outside 0.3 to
 ---0.55 mm radius, 0.15 to 0.4 mm plane distance, or unequal ones. outer: a trace on an outer layer: derived, compared with nothing.

@@ -3,7 +3,7 @@
 
 #include <string.h>
 
-static const char *const transition_keys[] = {"ports", "stubs", "annuli", "metal", NULL};
+static const char *const transition_keys[] = {"ports", "stubs", "annuli", "metal", "table_up_to", NULL};
 static const char *const port_keys[] = {
     "layer", "kind", "trace", "impedance", "dk", "loss_tangent", "width", "distance", "z_ref", NULL
 };
@@ -98,6 +98,7 @@ int lslua_transition_new(lua_State *L)
     lslua_word_field(&at, "stubs", stubs, &options.stubs);
     lslua_word_field(&at, "metal", metals, &options.metal);
     lslua_integer(&at, "annuli", &options.annuli);
+    lslua_number(&at, "table_up_to", &options.f_table);
     lua_getiuservalue(L, 1, 1);
     lslua_stackup(L, 3, 0);
     status = read_ports(&at, 3, &ports, &count, &err);

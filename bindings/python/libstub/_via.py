@@ -471,12 +471,13 @@ class Via(Immutable):
         return Model(self, fidelity=fidelity, z_ref=z_ref, annuli=annuli)
 
     def transition(
-        self, ports: Sequence[Port], *, stubs: Stubs = "kept", metal: Metal = "lossy", annuli: int | None = None
+        self, ports: Sequence[Port], *, stubs: Stubs = "kept", metal: Metal = "lossy", annuli: int | None = None,
+        table_up_to: float | None = None,
     ) -> Transition:
-        """The whole via as a network, compiled; ports, stubs, metal and annuli as `Transition`."""
+        """The whole via as a network, compiled; ports, stubs, metal, annuli and table_up_to as `Transition`."""
         from ._transition import Transition
 
-        return Transition(self, ports, stubs=stubs, metal=metal, annuli=annuli)
+        return Transition(self, ports, stubs=stubs, metal=metal, annuli=annuli, table_up_to=table_up_to)
 
     def replace(self, **changes: Any) -> Via:
         """The same via but for some arguments, also on another stackup (layers are carried over by name).

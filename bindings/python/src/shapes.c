@@ -70,7 +70,7 @@ static const core_member port[] = {
 };
 static const core_member transition[] = {
     VALUE(lstub_transition_options, stubs, 'i'), VALUE(lstub_transition_options, annuli, 'i'),
-    VALUE(lstub_transition_options, metal, 'i'),
+    VALUE(lstub_transition_options, metal, 'i'), VALUE(lstub_transition_options, f_table, 'd'),
 };
 static const core_member search[] = {
     VALUE(lstub_search, window, 'd'), VALUE(lstub_search, f_low, 'd'), VALUE(lstub_search, f_high, 'd'),

@@ -7,6 +7,8 @@
 # The rules (which net carries which signal, what the fabricator can do) are those named by LSTUB_RULES, else those that
 # examples/data has for the board, else examples/data/generic_rules.txt.
 # Installs what is missing to build (Debian), builds in build/examples, plans. Exit 0: done, 1: an error, named.
+# Without a board, three more examples follow on the demo board's stackup: via_sparameters, and where Lua 5.4 is or can be
+# installed measured_coupon and pair_skew. What they print goes to out/NAME.txt.
 set -eu
 
 usage() {
@@ -54,13 +56,31 @@ log=$build.log
 mkdir -p "$root/build" || fail "cannot make the folder '$root/build'"
 configure() {
     cmake -S "$root" -B "$build" -DCMAKE_BUILD_TYPE=Release -DLSTUB_IPC2581=ON -DLSTUB_BUILD_EXAMPLES=ON \
-        -DLSTUB_BUILD_TESTS=OFF >"$log" 2>&1
+        -DLSTUB_BUILD_TESTS=OFF "$@" >"$log" 2>&1
 }
 echo "building in $build" >&2
-if ! configure; then           # a cache from another place or another compiler: once more from nothing
+if ! configure -DLSTUB_LUA=OFF; then       # a cache from another place or another compiler: once more from nothing
     rm -rf "$build"
-    configure || { cat "$log" >&2; fail "cmake cannot configure the build"; }
+    configure -DLSTUB_LUA=OFF || { cat "$log" >&2; fail "cmake cannot configure the build"; }
 fi
 cmake --build "$build" --parallel --target board_plan >"$log" 2>&1 || { cat "$log" >&2; fail "the build failed"; }
 
 "$build/examples/board_plan" "$board" "$rules" "$out"
+[ $# -eq 0 ] || exit 0
+
+example() {     # name, command: what it prints goes to a file, and so do its networks
+    name=$1
+    shift
+    echo "$name: see $out/$name.txt" >&2
+    "$@" "$board" "$out" >"$out/$name.txt" || fail "$name failed"
+}
+cmake --build "$build" --parallel --target via_sparameters >"$log" 2>&1 || { cat "$log" >&2; fail "the build failed"; }
+example via_sparameters "$build/examples/via_sparameters"
+if sh "$here/install_packages.sh" lua5.4 liblua5.4-dev && configure -DLSTUB_LUA=ON &&
+    cmake --build "$build" --parallel --target lua_libstub >"$log" 2>&1; then
+    export LUA_CPATH="$build/bindings/lua/?.so" LUA_PATH="$here/lua/?.lua"
+    example measured_coupon lua5.4 "$here/lua/measured_coupon.lua"
+    example pair_skew lua5.4 "$here/lua/pair_skew.lua"
+else
+    echo "not run: measured_coupon and pair_skew, which need Lua 5.4 here" >&2
+fi

@@ -57,7 +57,8 @@ local function invent_measurements(file, folder)
         local ports = invented.trace_ports(board, exit_layer, 40e-3)
         local s = assert(assert(ls.transition(make_via(board, exit_layer, backdrill), { ports = ports })):s(f))
         s = ls.complex(add_noise(s:interleaved(), 7e-4, seed), 2)
-        assert(ls.touchstone_save({ freq = f, data = s, unit = "GHz", digits = 6, comments = { " invented: computed, with noise, not measured" } },
+        assert(ls.touchstone_save({ freq = f, data = s, unit = "GHz", digits = 6,
+                                    comments = { " invented: computed, with noise, not measured" } },
                                   folder .. "/coupon_" .. name .. ".s2p"))
     end
     for seed, name in ipairs(exits) do measure(name, name, nil, seed) end
@@ -109,7 +110,7 @@ local function fit_laminate(board, names, notches)
     return fit, fitted
 end
 
--- How long the stub of the drilled coupon is, from its notch. Its effective Dk depends on its length, a little: again and again.
+-- How long the stub of the drilled coupon is, from its notch. Its effective Dk depends on its length, a little: by turns.
 local function check_drill(board, notch, ratio_sigma)
     local ordered = stub_length(make_via(board, "IN1", drill))
     local length, sigma, dk = ordered, nil, nil

@@ -89,8 +89,9 @@ local networks = make_networks(arg[1])
 print("A via of an invented board from TOP to IN3, with 5 mm of trace on either side, at 16 GHz: Nyquist of 32 GBd NRZ.\n" ..
       "Caused by the stub: what differs from the same via without it. Ripple: of the loss about a smooth one, to Nyquist.\n" ..
       "TDR: least and greatest impedance that an edge of 15 ps sees from TOP.\n")
-print(string.format("%-18s%8s%9s%9s%9s%9s%9s%9s%9s%7s", "", "stub", "loss", "caused", "ripple", "S11", "change", "notch", "TDR", "TDR"))
-print(string.format("%-18s%8s%9s%9s%9s%9s%9s%9s%9s%7s", "", "mm", "dB", "dB", "dB rms", "dB", "of S11", "GHz", "ohm", "ohm"))
+local head = "%-18s%8s%9s%9s%9s%9s%9s%9s%9s%7s"
+print(string.format(head, "", "stub", "loss", "caused", "ripple", "S11", "change", "notch", "TDR", "TDR"))
+print(string.format(head, "", "mm", "dB", "dB", "dB rms", "dB", "of S11", "GHz", "ohm", "ohm"))
 show(networks)
 print()
 for _, remark in ipairs(networks[1][2]:remarks()) do

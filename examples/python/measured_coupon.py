@@ -2,9 +2,9 @@
 
     python measured_coupon.py BOARD.xml[.gz] OUTDIR
 
-On the stackup of the demo board, examples/data/demo_board.xml.gz. The measurements are invented: this program makes them itself,
-with another in-plane Dk than the stackup has, lossy traces and noise, writes them to OUTDIR as Touchstone files, and then knows
-no more than a lab would. Where Matplotlib is there it also draws measured_coupon.png.
+On the stackup of the demo board, examples/data/demo_board.xml.gz. The measurements are invented: this program makes them
+itself, with another in-plane Dk than the stackup has, lossy traces and noise, writes them to OUTDIR as Touchstone files, and
+then knows no more than a lab would. Where Matplotlib is there it also draws measured_coupon.png.
 """
 
 import math
@@ -22,7 +22,8 @@ LENGTH_SIGMA = 5e-6  # m, of a stub's length on a microsection
 DRILL = ls.BackDrill("bottom", 1.0e-3, 0.45e-3)  # as ordered for one more coupon, TOP to IN1
 LINK = ls.Signal(32e9)
 CRITERIA = ls.Criteria(notch_over_nyquist=2.0, added_loss_db=0.5)
-FABRICATOR = ls.Capability(depth_tolerance=50e-6, cut_clearance=50e-6, residual_min=50e-6, residual_target=150e-6, bit_oversize=0.2e-3)
+FABRICATOR = ls.Capability(depth_tolerance=50e-6, cut_clearance=50e-6, residual_min=50e-6, residual_target=150e-6,
+                           bit_oversize=0.2e-3)
 
 
 def make_via(board, exit_layer, backdrills=()):
@@ -92,15 +93,16 @@ def fit_laminate(vias, notches):
     sigma = [notch.f_sigma for notch in notches]
     fit, free = ls.fit_coupons(vias, f, sigma), ls.fit_coupons(vias, f, sigma, with_offset=True)
     print("\nIn-plane Dk over the data sheet's, all laminates alike: %.4f +/- %.4f, 95 %%: %.4f to %.4f (assumed: %.2f)\n"
-          "chi2 %.2f of %d: the model %s" % (fit.ratio, fit.ratio_sigma, fit.ratio_low, fit.ratio_high, ASSUMED, fit.chi2, fit.dof,
-                                           "describes them" if fit.describes else "does NOT describe them: do not use it"))
+          "chi2 %.2f of %d: the model %s" % (
+              fit.ratio, fit.ratio_sigma, fit.ratio_low, fit.ratio_high, ASSUMED, fit.chi2, fit.dof,
+              "describes them" if fit.describes else "does NOT describe them: do not use it"))
     print("with all stubs longer by the same: %.4f +/- %.4f, longer by %.1f um, 95 %%: %.1f to %.1f" % (
         free.ratio, free.ratio_sigma, free.offset * 1e6, free.offset_low * 1e6, free.offset_high * 1e6))
     return fit, f
 
 
 def check_drill(board, notch, ratio_sigma):
-    """How long the stub of the drilled coupon is, from its notch. Its effective Dk depends on its length, a little: again and again."""
+    """How long the stub of the drilled coupon is, from its notch. Its effective Dk depends on its length, a little: by turns."""
     ordered = make_via(board, "IN1", [DRILL]).stubs[0].length
     length = ordered
     for _ in range(4):
@@ -109,7 +111,8 @@ def check_drill(board, notch, ratio_sigma):
         length, sigma = ls.fit_length(notch.f / pull(via), dk, f_sigma=notch.f_sigma, dk_sigma=dk * ratio_sigma)
     print("\nDrilled coupon: notch at %.3f GHz, with a Dk of %.3f a stub of %.3f +/- %.3f mm; ordered %.3f mm:\n"
           "the drill stopped %.3f mm short, of %.3f mm allowed. One hole says little of the next one." % (
-              notch.f / 1e9, dk, length * 1e3, sigma * 1e3, ordered * 1e3, (length - ordered) * 1e3, FABRICATOR.depth_tolerance * 1e3))
+              notch.f / 1e9, dk, length * 1e3, sigma * 1e3, ordered * 1e3, (length - ordered) * 1e3,
+              FABRICATOR.depth_tolerance * 1e3))
 
 
 def predict(boards):
@@ -140,13 +143,14 @@ def draw(curves, vias, f, sigma, fitted, folder):
         axes[0].text(-0.4, shift, name, color=colour, fontsize=9, ha="right", va="center")
         if notch is not None:
             axes[0].plot(notch.f / 1e9, found.averaged_db[abs(file.frequency - notch.f).argmin()] + shift, "v", color=colour)
-    axes[0].set(xlim=(-5, 40), xticks=range(0, 41, 5), xlabel="frequency, GHz", ylabel="|S21|, dB; each coupon 8 dB lower than the last",
+    axes[0].set(xlim=(-5, 40), xticks=range(0, 41, 5), xlabel="frequency, GHz",
+                ylabel="|S21|, dB; each coupon 8 dB lower than the last",
                 title="Coupons: S21, loss without the stub (dashed), first notch")
     predicted = {"assumed ratio %.2f" % ASSUMED: ls.first_notch_batch(vias).f1,
                  "fitted ratio %.3f" % fitted.ratio: np.array(f) - np.array(fitted.residuals)}
     for (label, p), marker in zip(predicted.items(), "os"):
-        axes[1].errorbar([via.stubs[0].length * 1e3 for via in vias], 100 * (np.array(f) / p - 1), yerr=200 * np.array(sigma) / p,
-                         fmt=marker, capsize=3, label=label)
+        axes[1].errorbar([via.stubs[0].length * 1e3 for via in vias], 100 * (np.array(f) / p - 1),
+                         yerr=200 * np.array(sigma) / p, fmt=marker, capsize=3, label=label)
     axes[1].axhline(0.0, color="black", linewidth=0.8)
     axes[1].set(xlabel="stub, mm", ylabel="measured over predicted first notch - 1, %", title="Notch of the stub, with 2 sigma")
     axes[1].legend(fontsize=9, loc="center right")

@@ -17,7 +17,8 @@ from invented import trace_ports
 
 LINK = ls.Signal(32e9)
 CRITERIA = ls.Criteria(notch_over_nyquist=2.0, added_loss_db=0.5)
-FABRICATOR = ls.Capability(depth_tolerance=50e-6, cut_clearance=50e-6, residual_min=50e-6, residual_target=150e-6, bit_oversize=0.2e-3)
+FABRICATOR = ls.Capability(depth_tolerance=50e-6, cut_clearance=50e-6, residual_min=50e-6, residual_target=150e-6,
+                           bit_oversize=0.2e-3)
 RISE_TIME = 15e-12  # of the step, 20 to 80 percent
 F = np.arange(1, 1341) * 50e6  # to 67 GHz: 1/RISE_TIME and more
 T = np.arange(-50, 251) * 1e-12
@@ -33,7 +34,8 @@ def make_networks(path):
     cut = ls.plan(board, [ls.Job(via, LINK, CRITERIA)], FABRICATOR)[0].bottom
     drill = ls.BackDrill("bottom", cut.depth - (cut.residual_most - cut.residual), cut.diameter)
     drilled = via.replace(backdrills=[drill])
-    pair = drilled.replace(pair=ls.Pair(1.0e-3), returns=ls.Vias([(-1e-3, 0.0), (0.0, -1e-3), (0.0, 1e-3)]))  # the partner's mirror them
+    returns = ls.Vias([(-1e-3, 0.0), (0.0, -1e-3), (0.0, 1e-3)])  # the partner's mirror them
+    pair = drilled.replace(pair=ls.Pair(1.0e-3), returns=returns)
     return {
         "via_as_it_is": via.transition(ports),
         "via_drilled": drilled.transition(ports),
@@ -64,7 +66,8 @@ def save(networks, folder):
         file = "%s.s%dp" % (name, len(via.reference))
         ports = "1 TOP, 2 IN3" + ("" if len(via.reference) == 2 else "; of the partner 3 TOP, 4 IN3")
         comments = [" %s, invented: an estimate from a model" % name, " ports: %s" % ports]
-        ls.touchstone_save(os.path.join(folder, file), F, via.s(F), reference=via.reference, unit="GHz", digits=9, comments=comments)
+        ls.touchstone_save(os.path.join(folder, file), F, via.s(F), reference=via.reference, unit="GHz", digits=9,
+                           comments=comments)
         print("written: %s" % file)
 
 

@@ -6,10 +6,12 @@
 C programs are taken from the build, examples/python and examples/lua from the tree. `board_plan` is run on the demo
 board, and on the boards of ../shared/boards where that folder is, with the rules that examples/data has for each.
 Those of ON_DEMO_BOARD get the demo board and a folder, and leave the files named there and maybe a picture.
-Any other example must end well and, with its picture files, leave something behind.
+Any other example must end well and, with its picture files, leave something behind. The text blocks that examples/README.md
+shows in the section of an example are lines of what it prints, in their order; `  ...` stands for lines left out.
 """
 import argparse
 import os
+import re
 import subprocess
 import sys
 import tempfile
@@ -19,6 +21,7 @@ BOARDS = (("demo_board.xml.gz", "demo_rules.txt"), ("testcase10.xml.gz", "testca
 ON_DEMO_BOARD = {
     "via_sparameters": {"via_as_it_is.s2p", "via_drilled.s2p", "via_without_stub.s2p", "pair_drilled.s4p"},
     "measured_coupon": {f"coupon_{name}.s2p" for name in ("IN1", "IN2", "IN3", "IN5", "IN6", "IN7", "drilled")},
+    "pair_skew": {"pair_one_missing.ts"},
 }
 
 
@@ -78,6 +81,26 @@ class Check:
             self.compare(what, results)
         return results
 
+    def readme(self, name, results):
+        lines = shown(self.args.root / "examples" / "README.md", name)
+        for text, _ in list(results.values())[:1]:       # the others print the same
+            if lines:
+                lost = missing(lines, text)
+                self.tell(lost is None, f"{name}: examples/README.md shows what it prints" + (f", not {lost!r}" if lost else ""))
+
+
+def shown(readme, name):
+    """Lines of the text blocks in the section of an example."""
+    section = re.search(rf"^## {name}\n(.*?)(?=^## |\Z)", readme.read_text(encoding="utf-8"), re.M | re.S)
+    blocks = re.findall(r"^```text\n(.*?)^```", section[1] if section else "", re.M | re.S)
+    return [line for block in blocks for line in block.splitlines() if line.strip() not in ("", "...")]
+
+
+def missing(lines, text):
+    """The first of the lines that does not follow in the text, or None."""
+    printed = iter(line.rstrip() for line in text.decode().splitlines())
+    return next((line for line in lines if line.rstrip() not in printed), None)
+
 
 def main():
     parser = argparse.ArgumentParser()
@@ -107,9 +130,11 @@ def main():
             for language, (_, files) in results.items():
                 tables = {file for file in files if not file.endswith(".png")}
                 check.tell(tables == wanted, f"{name} in {language}: {sorted(files)}")
+            check.readme(name, results)
         for name in sorted(names - {"board_plan", *ON_DEMO_BOARD}):
             results = check.example(name, name, [], scratch)
             check.tell(any(text or files for text, files in results.values()), f"{name} says something")
+            check.readme(name, results)
     print(f"{check.count} checks, {check.failed} failed")
     return 1 if check.failed or check.count < 20 else 0
 

@@ -47,6 +47,31 @@ static void waves(cplx kappa, double d, int n, cplx *k)
     for (q = 0; q <= n; q++) k[q] = cplx_mul(k[q], decay);
 }
 
+/*
+** Between planes with edges only order 0 knows of these (cavity_edge.c). What other orders radiate then has nowhere to go: of K_m
+** there is left the part that stands, K_m + j pi/2 (-1)^m I_m, for which nothing leaves without loss.
+*/
+static cplx standing(cplx k, cplx i, int m)
+{
+    double f = (m & 1 ? -0.5 : 0.5) * LSTUB_PI;
+
+    return cplx_of(k.re - f * i.im, k.im + f * i.re);
+}
+
+/* waves(), but for order 0, made to stand; *same: K0 so, for waves of equal orders other than 0. */
+static void near_waves(cplx kappa, double d, int n, int edges, cplx *k, cplx *same)
+{
+    cplx i[2 * ORDERS + 2], rise = cplx_exp(cplx_scale(kappa, d));
+    int m;
+
+    waves(kappa, d, n, k);
+    *same = k[0];
+    if (!edges) return;
+    lstub__bessel_zin(cplx_scale(kappa, d), n, i);
+    *same = standing(k[0], cplx_mul(i[0], rise), 0);
+    for (m = 1; m <= n; m++) k[m] = standing(k[m], cplx_mul(i[m], rise), m);
+}
+
 /* What a source at distance (dx, dy) from a via, seen from the source, sends into its order q, with the sign of the
 ** right-hand side. */
 static cplx sent(const cplx *k, double dx, double dy, int q)
@@ -138,20 +163,21 @@ static int list_scatterers(const lstub__cav_returns *r, unsigned mask, int barre
 }
 
 /* What the wave of scatterer i becomes at scatterer j, and back. */
-static void couple(const scatterer *i, const scatterer *j, cplx kappa, cplx *a, int n)
+static void couple(const scatterer *i, const scatterer *j, cplx kappa, int edges, cplx *a, int n)
 {
-    cplx k[2 * ORDERS + 1], turns[2 * ORDERS + 1];
+    cplx k[2 * ORDERS + 1], turns[2 * ORDERS + 1], same;
     double dx = j->x - i->x, dy = j->y - i->y, d = hypot(dx, dy);
     int top = i->order[i->orders - 1] + j->order[j->orders - 1], u, v;
 
-    waves(kappa, d, top, k);
+    near_waves(kappa, d, top, edges, k, &same);
     turns[0] = cplx_of(1.0, 0.0);
     for (u = 1; u <= top; u++) turns[u] = cplx_mul(turns[u - 1], cplx_of(dx / d, dy / d));
     for (v = 0; v < j->orders; v++) {
         for (u = 0; u < i->orders; u++) {
             int p = i->order[u], q = j->order[v], m = abs(p - q);
             cplx turn_there = p < q ? cplx_conj(turns[m]) : turns[m];           /* e^(j (p - q) theta) */
-            cplx there = cplx_mul(k[m], turn_there), here = cplx_scale(cplx_mul(k[m], cplx_conj(turn_there)), m & 1 ? -1.0 : 1.0);
+            cplx wave = m == 0 && p != 0 ? same : k[m];
+            cplx there = cplx_mul(wave, turn_there), here = cplx_scale(cplx_mul(wave, cplx_conj(turn_there)), m & 1 ? -1.0 : 1.0);
             a[(j->first + v) * n + i->first + u] = cplx_scale(there, q & 1 ? -1.0 : 1.0);
             a[(i->first + u) * n + j->first + v] = cplx_scale(here, p & 1 ? -1.0 : 1.0);
         }
@@ -225,7 +251,7 @@ static void add_edges_back(const lstub__cav_returns *r, const scatterer *list, i
 void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double radius, cplx kappa, int two, cav_echo *out)
 {
     scatterer list[LSTUB__CAV_VIAS + 2];
-    cplx a[UNKNOWNS * UNKNOWNS], b[UNKNOWNS * 2], k[2 * ORDERS + 1], ratio[ORDERS + 1], barrel_ratio = cplx_of(0.0, 0.0), direct = cplx_of(0.0, 0.0);
+    cplx a[UNKNOWNS * UNKNOWNS], b[UNKNOWNS * 2], k[2 * ORDERS + 1], ratio[ORDERS + 1], barrel_ratio = cplx_of(0.0, 0.0), direct = cplx_of(0.0, 0.0), same;
     int vias = 0, top, count, n, i, j, v, s, columns = two ? 2 : 1, edges = r->edge[0] > 0.0 && !(mask & CAV_BEYOND);
     const cplx zero = cplx_of(0.0, 0.0);
 
@@ -243,18 +269,19 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
         const scatterer *at = &list[j];
 
         rim_ratio(kappa, at->radius, at->order[at->orders - 1], ratio);
+        for (v = 1; edges && v <= at->order[at->orders - 1]; v++) ratio[v] = standing(ratio[v], cplx_of(1.0, 0.0), v);
         if (at->barrel == 0) barrel_ratio = ratio[1];
         for (v = 0; v < at->orders; v++) a[(at->first + v) * n + at->first + v] = ratio[abs(at->order[v])];
         for (s = 0; s < (r->pitch > 0.0 ? 2 : 1); s++) {            /* the barrels as sources */
             double dx = at->x - s * r->pitch;
             if (at->barrel == s) continue;
-            waves(kappa, hypot(dx, at->y), at->order[at->orders - 1] + 1, k);
+            near_waves(kappa, hypot(dx, at->y), at->order[at->orders - 1] + 1, edges, k, &same);
             for (v = 0; v < at->orders; v++) {
                 cplx *to = &b[(at->first + v) * columns + (two ? s : 0)];
                 *to = cplx_add(*to, cplx_scale(sent(k, dx, at->y, at->order[v]), s == 1 && !two ? r->sign : 1.0));
             }
         }
-        for (i = 0; i < j; i++) couple(&list[i], at, kappa, a, n);
+        for (i = 0; i < j; i++) couple(&list[i], at, kappa, edges, a, n);
     }
     if (edges) add_edges(r, list, count, kappa, two, a, n, b, columns);
     if (n > 0 && lstub__zsolve(a, n, n, b, columns, columns) != 0) { out->gamma[0] = cplx_of(NAN, NAN); return; }
@@ -269,7 +296,7 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
         for (s = 0; s < columns; s++) {                             /* arriving at barrel s */
             double dx = s * r->pitch - from->x;
             if (from->barrel == s) continue;
-            waves(kappa, hypot(dx, from->y), from->order[from->orders - 1] + 1, k);
+            near_waves(kappa, hypot(dx, from->y), from->order[from->orders - 1] + 1, edges, k, &same);
             for (v = 0; v < from->orders; v++) {
                 cplx t = cplx_mul(k[abs(from->order[v])], turn(dx, -from->y, from->order[v]));
                 for (i = 0; i < columns; i++) out->gamma[columns * s + i] = cplx_fma(out->gamma[columns * s + i], t, b[(from->first + v) * columns + i]);

@@ -3,7 +3,9 @@
 ** no sheet of copper, beyond it the space is one. Mode 0 of slab q, A_q I0 - B_q K0 outside, then has a common part, weighted by height,
 ** that sees the return vias (or walls, or nothing) of the whole space, A = -Gamma_c B, and differences, which end there:
 **
-**     A_q = -sum_p Gamma_qp B_p,  Gamma_qp = (h_p/H) Gamma_c + (delta_qp - h_p/H) Gamma_d,  Gamma_d = -K0/I0 (kappa reach).
+**     A_q = -sum_p Gamma_qp B_p,  Gamma_qp = (h_p/H) Gamma_c + (delta_qp - h_p/H) Gamma_d,  Gamma_d = -K0/I0 (kappa reach),
+**
+** the delta's Gamma_d of each slab's own dielectric.
 **
 ** H is infinite beyond the outermost plane. With T and G as in cavity_pair.c the currents of the waves are j = K e, e their
 ** voltages, K = -(R_qp/h_p)/k0^2. While the slabs are stepped over the waves are pending columns; here they are closed:
@@ -13,7 +15,7 @@
 
 #define MOST CAV_PENDING
 
-typedef struct wave { cplx t, c, own, metal; double h; int barrel; } wave;
+typedef struct wave { cplx t, c, own, metal, ended; double h; int barrel; } wave;
 
 static void common(state *w, const cav_region *r, cplx *gamma)
 {
@@ -44,7 +46,7 @@ static wave wave_of(state *w, const cav_slab *s, int barrel)
 
     v.h = s->h;
     v.barrel = barrel;
-    v.metal = cplx_of(0.0, 0.0);
+    v.metal = v.ended = cplx_of(0.0, 0.0);
     cav_wave_of(w, s, &v.t, &v.c, &v.own);
     return v;
 }
@@ -111,7 +113,10 @@ void cav_region_end(state *w, const cav_region *r, cav_load *l)
     int n = 0, i, j, b, q;
 
     for (i = r->last; i >= r->first; i--)       /* in the order in which they were stepped over */
-        for (b = 0; b < m->barrels; b++) v[n++] = wave_of(w, &m->slab[b * m->slabs + i], b);
+        for (b = 0; b < m->barrels; b++) {
+            v[n] = wave_of(w, &m->slab[b * m->slabs + i], b);
+            v[n++].ended = ended(w, r->reach, m->slab[i].medium);
+        }
     common(w, r, c);
     d = ended(w, r->reach, m->slab[r->ref].medium);
     for (i = 0; i < n; i++)
@@ -120,7 +125,8 @@ void cav_region_end(state *w, const cav_region *r, cav_load *l)
             int same = v[i].barrel == v[j].barrel;
             cplx *to = &gamma[i * n + j];
             *to = r->height == INFINITY ? cplx_of(0.0, 0.0) : cplx_scale(m->barrels > 1 ? c[2 * v[i].barrel + v[j].barrel] : c[0], share);
-            if (same) *to = cplx_add(*to, cplx_scale(d, (i == j ? 1.0 : 0.0) - (r->height == INFINITY ? 0.0 : share)));
+            if (same && r->height < INFINITY) *to = cplx_sub(*to, cplx_scale(d, share));
+            if (i == j) *to = cplx_add(*to, v[i].ended);
         }
     if (admittances(v, n, gamma, admittance) != 0) { l->y[0] = cplx_of(NAN, NAN); return; }
     for (i = 0; i < n; i++) for (j = 0; j < n; j++) k[i * n + j] = cplx_scale(admittance[i * n + j], -1.0 / (w->k0 * w->k0 * v[j].h));

@@ -81,7 +81,7 @@ void cav_wave_of(state *w, const cav_slab *s, cplx *t, cplx *c, cplx *own)
         mode_form f;
         cav_make_form(w, s, 0, &f);
         *t = f.t;
-        *c = k;
+        *c = cplx_div(cplx_mul(k, k), f.kappa);
     }
 }
 

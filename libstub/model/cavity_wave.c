@@ -212,6 +212,9 @@ static double reach_of(const lstub__cavity *m, const cav_slab *s, int shared)
     return r * r;
 }
 
+/* Below this, 30 MHz, mode 0 around a hole, which divides by kappa^2, is taken from there. */
+#define LEAST_K0 0.63
+
 void cav_make_form(state *w, const cav_slab *s, int mode, mode_form *f)
 {
     cplx d = cplx_of(1.0, 0.0), eps = w->eps[s->medium];
@@ -224,6 +227,11 @@ void cav_make_form(state *w, const cav_slab *s, int mode, mode_form *f)
     f->t = cplx_of(0.0, 0.0);
     if (f->hole) {
         cplx ef = w->eps[s->fill];
+        if (mode == 0 && k0 < LEAST_K0) {       /* ln kappa goes into Q, all else is the static field to (kappa r)^2 */
+            f->kappa = cplx_scale(f->kappa, LEAST_K0 / k0);
+            f->q.re -= log(LEAST_K0 / k0);
+            k0 = LEAST_K0;
+        }
         hole_form(s, cplx_div(ef, eps), wave_number(ef, 1.0, k0, mode, s->h), f);
         f->scale = eps;
         return;

@@ -46,6 +46,7 @@ class Run:
             if not self.notches or abs(self.notches[0].f / f_ref - 1) < 1e-3 or not F_REF_RANGE[0] < self.notches[0].f < F_REF_RANGE[1]:
                 break
             f_ref = self.notches[0].f
+        self.transition = transition
         self.f = [f for f in GRID if f <= top]
         self.s = [self.at(f) for f in self.f]
         if case["pair"] is not None and self.mode != "single":

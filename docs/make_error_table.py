@@ -177,7 +177,7 @@ def unequal_table():
     for kind, names in kinds.items():
         worst = max(abs(run.s[k][place[n][0]][place[n][1]] - curves[n][k]) for n in names for k, x in enumerate(f) if x <= 40e9)
         text.append(f"| {kind}: {', '.join(n.replace('_', ',') for n in names)} | {worst:.3f} |")
-    mixed = ls.to_mixed(run.s, [(0, 2), (1, 3)], z=run.transition.reference).s
+    mixed = ls.to_mixed(run.s, [(0, 2), (1, 3)], z=transitions.transition_of(case).reference).s
     text += ["", "| common wave out of the traces for a differential one in, Scd21 | full wave, dB | difference, dB |", "|---|---|---|"]
     for x in (5e9, 10e9, 20e9, 30e9, 35e9):
         k = f.index(x)

@@ -28,7 +28,6 @@ sys.path[:0] = [str(ROOT / "tests" / "reference"), str(ROOT / "docs")]
 sys.dont_write_bytecode = True
 import transitions  # noqa: E402
 from cells import DATA, cases, via_of  # noqa: E402
-from evaluate_transitions import Run  # noqa: E402
 from make_error_table import curves_of  # noqa: E402
 
 FIDELITIES = {"bulk": "tab:gray", "loaded": "tab:orange", "ladder": "tab:green", "cavity": "tab:blue"}
@@ -206,7 +205,7 @@ def transitions_picture(folder):
         for axis, (i, j) in ((left, (1, 0)), (middle, (0, 0))):
             axis.plot(grid / 1e9, decibels(s[:, i, j]), color=colour, linewidth=1.2, label=text)
             axis.plot(f[::2] / 1e9, decibels(curves[f"S{i + 1}1"])[::2], ".", color="k", markersize=2.4, label="3-D" if name == "n_k4" else None)
-    case = Run(json.loads((transitions.DATA / "unequal_pair" / "case.json").read_text(encoding="utf-8"))).transition
+    case = transitions.transition_of(json.loads((transitions.DATA / "unequal_pair" / "case.json").read_text(encoding="utf-8")))
     mixed = ls.to_mixed(np.array(case.s(grid)), [(0, 2), (1, 3)], z=case.reference).s
     f, curves = curves_of(transitions.DATA / "unequal_pair" / "curves.csv")
     c = {name: np.array(values) for name, values in curves.items()}

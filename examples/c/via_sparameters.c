@@ -15,7 +15,8 @@
 enum { POINTS = 1340, TIMES = 301, PORTS_MOST = 4 };
 #define RISE_TIME 15e-12           /* of the step, 20 to 80 percent */
 
-static const double returns_of_pair[] = {-1e-3, 0.0, 0.0, -1e-3, 0.0, 1e-3};   /* return vias; the partner's mirror them */
+/* Return vias around a pair with its first barrel at (0, 0) and its partner at (1, 0) mm: x, y, m. */
+static const double around_pair[] = {-1e-3, 0.0, 0.0, -1e-3, 0.0, 1e-3, 1e-3, -1e-3, 1e-3, 1e-3, 2e-3, 0.0};
 static double F[POINTS], T[TIMES];
 
 static void must(int32_t status, const lstub_error *err)
@@ -245,8 +246,8 @@ int main(int argc, char **argv)
     lstub_via pair = drilled;
     pair.pair_kind = LSTUB_PAIR_SEPARATE;
     pair.pair_pitch = 1.0e-3;
-    pair.return_xy = returns_of_pair;
-    pair.return_count = 3;
+    pair.return_xy = around_pair;
+    pair.return_count = 6;
 
     lstub_stub stub;
     int32_t stubs;

@@ -42,6 +42,9 @@ function M.make_via(stackup, connects)
                                     returns = { count = 4, distance = 1.0e-3 }, connects = connects }))
 end
 
+-- Return vias around a pair with its first barrel at (0, 0) and its partner at (1, 0) mm, m.
+M.around_pair = { { -1e-3, 0.0 }, { 0.0, -1e-3 }, { 0.0, 1e-3 }, { 1e-3, -1e-3 }, { 1e-3, 1e-3 }, { 2e-3, 0.0 } }
+
 local function pick(layer, keys)
     local found = {}
     for _, key in ipairs(keys) do

@@ -27,7 +27,7 @@ local function make_pair(board, first, partner)
     local via = assert(ls.via(board, {
         drill = 0.25e-3, pad = 0.50e-3, antipad = 0.75e-3, connects = { "TOP", "IN3" }, backdrills = drills(first),
         pair = { pitch = 1.0e-3, backdrills = drills(partner) },
-        returns = { xy = { { -1e-3, 0.0 }, { 0.0, -1e-3 }, { 0.0, 1e-3 } } },  -- the partner's mirror them
+        returns = { xy = invented.around_pair },
     }))
     return (assert(ls.transition(via, { ports = invented.trace_ports(board, "IN3", 5e-3) })))
 end

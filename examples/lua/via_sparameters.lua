@@ -32,7 +32,7 @@ local function make_networks(path)
     options.backdrills = { { side = "bottom", depth = cut.depth - (cut.residual_most - cut.residual), diameter = cut.diameter } }
     local drilled = assert(ls.via(board, options))
     options.pair = { pitch = 1.0e-3 }
-    options.returns = { xy = { { -1e-3, 0.0 }, { 0.0, -1e-3 }, { 0.0, 1e-3 } }, drill = 0.25e-3 }  -- the partner's mirror them
+    options.returns = { xy = invented.around_pair }
     local pair = assert(ls.via(board, options))
     return {
         { "via_as_it_is", assert(ls.transition(via, { ports = ports })), via },

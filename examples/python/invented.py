@@ -40,6 +40,10 @@ def make_via(stackup, connects):
     return ls.Via(stackup, drill=0.25e-3, pad=0.50e-3, antipad=0.75e-3, returns=ls.Ring(4, 1.0e-3), connects=connects)
 
 
+# Return vias around a pair with its first barrel at (0, 0) and its partner at (1, 0) mm, m.
+AROUND_PAIR = [(-1e-3, 0.0), (0.0, -1e-3), (0.0, 1e-3), (1e-3, -1e-3), (1e-3, 1e-3), (2e-3, 0.0)]
+
+
 def trace_ports(board, exit_layer, distance):
     """Ports of a via on the Heron line card of examples/data: a microstrip on TOP, a stripline on one of its inner layers.
 

@@ -14,7 +14,7 @@ import warnings
 
 import libstub as ls
 import numpy as np
-from invented import trace_ports
+from invented import AROUND_PAIR, trace_ports
 
 LINK = ls.Signal(25.78125e9)
 DEPTH, BIT = 1.45e-3, 0.45e-3  # as ordered, m
@@ -32,7 +32,7 @@ def make_pair(board, depth, partner_depth):
 
     via = ls.Via(board, drill=0.25e-3, pad=0.50e-3, antipad=0.75e-3, connects=("TOP", "IN3"), backdrills=drills(depth),
                  pair=ls.Pair(1.0e-3, backdrills=drills(partner_depth)),
-                 returns=ls.Vias([(-1e-3, 0.0), (0.0, -1e-3), (0.0, 1e-3)]))  # the partner's mirror them
+                 returns=ls.Vias(AROUND_PAIR))
     return via.transition(trace_ports(board, "IN3", distance=5e-3))
 
 

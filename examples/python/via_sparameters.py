@@ -13,7 +13,7 @@ import warnings
 
 import libstub as ls
 import numpy as np
-from invented import trace_ports
+from invented import AROUND_PAIR, trace_ports
 
 LINK = ls.Signal(32e9)
 CRITERIA = ls.Criteria(notch_over_nyquist=2.0, added_loss_db=0.5)
@@ -34,8 +34,7 @@ def make_networks(path):
     cut = ls.plan(board, [ls.Job(via, LINK, CRITERIA)], FABRICATOR)[0].bottom
     drill = ls.BackDrill("bottom", cut.depth - (cut.residual_most - cut.residual), cut.diameter)
     drilled = via.replace(backdrills=[drill])
-    returns = ls.Vias([(-1e-3, 0.0), (0.0, -1e-3), (0.0, 1e-3)])  # the partner's mirror them
-    pair = drilled.replace(pair=ls.Pair(1.0e-3), returns=returns)
+    pair = drilled.replace(pair=ls.Pair(1.0e-3), returns=ls.Vias(AROUND_PAIR))
     return {
         "via_as_it_is": via.transition(ports),
         "via_drilled": drilled.transition(ports),

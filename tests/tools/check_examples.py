@@ -1,15 +1,17 @@
 #!/usr/bin/env python3
 """Runs every example in every language it is written in and compares: the same task gives the same bytes.
 
-    check_examples.py ROOT --build DIR [--lua LUA]          (with the Python that has the binding)
+    check_examples.py ROOT --build DIR [--lua LUA] [--refresh]      (with the Python that has the binding)
 
 C programs are taken from the build, examples/python and examples/lua from the tree. `board_plan` is run on the demo
 board, and on the boards of ../shared/boards where that folder is, with the rules that examples/data has for each.
 Those of ON_DEMO_BOARD get the demo board and a folder, and leave the files named there and maybe a picture.
 Any other example must end well and, with its picture files, leave something behind. The text blocks that examples/README.md
 shows in the section of an example are lines of what it prints, in their order; `  ...` stands for lines left out.
+--refresh puts what is printed in their place.
 """
 import argparse
+import difflib
 import os
 import re
 import subprocess
@@ -81,25 +83,32 @@ class Check:
             self.compare(what, results)
         return results
 
-    def readme(self, name, results):
-        lines = shown(self.args.root / "examples" / "README.md", name)
-        for text, _ in list(results.values())[:1]:       # the others print the same
-            if lines:
-                lost = missing(lines, text)
-                self.tell(lost is None, f"{name}: examples/README.md shows what it prints" + (f", not {lost!r}" if lost else ""))
+    def readme(self, name, results, section=None):
+        """Lines that examples/README.md shows in a section are lines of what is printed, in their order."""
+        path = self.args.root / "examples" / "README.md"
+        text = path.read_text(encoding="utf-8")
+        part = re.search(rf"^## {section or name}\n(.*?)(?=^## |\Z)", text, re.M | re.S)
+        if not part or not results:
+            return
+        printed = [line.rstrip() for line in next(iter(results.values()))[0].decode().splitlines()]
+        fresh = re.sub(r"(?<=^```text\n).*?(?=^```)", lambda block: as_printed(block[0], printed), part[1], flags=re.M | re.S)
+        if fresh != part[1] and self.args.refresh:
+            path.write_text(text.replace(part[1], fresh), encoding="utf-8")
+        elif "```text" in part[1]:
+            self.tell(fresh == part[1], f"{name}: examples/README.md shows what it prints (else --refresh, and look)")
 
 
-def shown(readme, name):
-    """Lines of the text blocks in the section of an example."""
-    section = re.search(rf"^## {name}\n(.*?)(?=^## |\Z)", readme.read_text(encoding="utf-8"), re.M | re.S)
-    blocks = re.findall(r"^```text\n(.*?)^```", section[1] if section else "", re.M | re.S)
-    return [line for block in blocks for line in block.splitlines() if line.strip() not in ("", "...")]
-
-
-def missing(lines, text):
-    """The first of the lines that does not follow in the text, or None."""
-    printed = iter(line.rstrip() for line in text.decode().splitlines())
-    return next((line for line in lines if line.rstrip() not in printed), None)
+def as_printed(block, printed):
+    """A shown block with each line replaced by the printed one most like it, in their order."""
+    lines, start = [], 0
+    for line in block.splitlines():
+        if line.strip() not in ("", "..."):
+            exact = line.rstrip() in printed[start:]
+            near = [line.rstrip()] if exact else difflib.get_close_matches(line, printed[start:], 1, 0.0)
+            line = near[0] if near else "(not printed)"
+            start = printed.index(line, start) + 1 if near else start
+        lines.append(line + "\n")
+    return "".join(lines)
 
 
 def main():
@@ -107,6 +116,7 @@ def main():
     parser.add_argument("root", type=lambda p: Path(p).resolve())
     parser.add_argument("--build", required=True, type=lambda p: Path(p).resolve())
     parser.add_argument("--lua", default="lua5.4")
+    parser.add_argument("--refresh", action="store_true")
     args = parser.parse_args()
     check = Check(args)
     data, shared = args.root / "examples" / "data", args.root.parent / "shared" / "boards"
@@ -122,6 +132,8 @@ def main():
                 print(f"not run: board_plan on {board}, which is not here")
                 continue
             results = check.example(f"board_plan {board}", "board_plan", [path, data / rules, "."], scratch)
+            if board == "demo_board.xml.gz":
+                check.readme("board_plan", results, "The main job")
             for language, (_, files) in results.items():
                 check.tell({"plan.csv", "drill_table.csv"} < set(files) and len(files) == 3, f"{board} in {language}: {sorted(files)}")
         for name, wanted in ON_DEMO_BOARD.items():

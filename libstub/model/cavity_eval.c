@@ -257,7 +257,7 @@ int lstub__cavity_ports(const lstub__cavity *m, double freq, const cplx *eps, co
     state w;
     cav_load l;
     double omega = 2.0 * LSTUB_PI * freq;
-    int feeds = m->feed > 0 ? m->barrels : 0, ports = feeds + m->taps[0] + (m->barrels > 1 ? m->taps[1] : 0), failed, i;
+    int feeds = m->feed > 0 ? m->barrels : 0, ports = feeds + m->taps[0] + (m->barrels > 1 ? m->taps[1] : 0), failed, i, j;
 
     cav_state(&w, m, omega / LSTUB_C0, eps, surface);
     failed = climb(&w, &l);
@@ -268,6 +268,8 @@ int lstub__cavity_ports(const lstub__cavity *m, double freq, const cplx *eps, co
         for (i = 0; i < ports * ports; i++) z[i] = cplx_of(NAN, NAN);
         return -1;
     }
+    for (i = 0; i < ports; i++)                 /* reciprocal to the last digit */
+        for (j = 0; j < i; j++) z[i * ports + j] = z[j * ports + i] = cplx_scale(cplx_add(z[i * ports + j], z[j * ports + i]), 0.5);
     sort_ports(m, feeds, ports, z);
     return ports;
 }

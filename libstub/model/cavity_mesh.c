@@ -188,13 +188,13 @@ static int mark_taps(parts *all, int *cap)
 static void mark_vias(const lstub__cav_barrel *barrel, parts *all)
 {
     const lstub__cav_returns *r = &barrel->returns;
-    double above = barrel->top == LSTUB__CAV_FREE ? -INFINITY : 0.0, below;
+    double above = barrel->top == LSTUB__CAV_FREE && all->cap_antipad == 0.0 ? -INFINITY : 0.0, below;
     int i, j, k;
 
     for (i = 0; i < all->count; i = j) {
         for (j = i; j < all->count && all->list[j].antipad == 0.0; j++) if (all->list[j].thin_antipad > 0.0) { j++; break; }
         below = j > i ? all->list[j - 1].bottom : all->list[i].bottom;
-        if (j == all->count) below = INFINITY;
+        if (j == all->count && !(j > i && all->list[j - 1].thin_antipad > 0.0)) below = INFINITY;
         for (k = i; k < j; k++) all->list[k].slab.vias = cav_joining(r, above, below);
         if (j < all->count && all->list[j].antipad > 0.0) { below = all->list[j].bottom; j++; }
         above = below;

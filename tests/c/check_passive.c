@@ -49,8 +49,11 @@ static void free_top(stage *g, double loss)
 }
 static void lid(stage *g, double loss) { free_top(g, loss); g->via.lid_distance = 1e-3; }
 static void lid_and_wall(stage *g, double loss) { lid(g, loss); stage_wall(g, 2e-3); }
+static void microstrip_top(stage *g, double loss) { stage_begin(g, "SPPSPP", 0.2e-3, 17e-6, loss); trace(g, 0); trace(g, 3); stage_ring(g, 4, 0.9e-3); }
+static void microstrip_both(stage *g, double loss) { stage_begin(g, "SPPPS", 0.2e-3, 17e-6, loss); trace(g, 0); trace(g, 4); stage_ring(g, 4, 0.9e-3); }
 static void open_edges(stage *g, double loss) { plain(g, loss); stage_edges(g, LSTUB_EDGE_OPEN, 5e-3, 9e-3, 6e-3, 8e-3); }
 static void shorted_edges(stage *g, double loss) { plain(g, loss); stage_edges(g, LSTUB_EDGE_SHORTED, 5e-3, 9e-3, 6e-3, 8e-3); }
+static void edges_and_vias(stage *g, double loss) { open_edges(g, loss); stage_ring(g, 4, 0.9e-3); }
 static void pair_round(stage *g, double loss) { plain(g, loss); stage_pair(g, LSTUB_PAIR_SEPARATE, 0.9e-3); }
 static void pair_slot(stage *g, double loss) { plain(g, loss); stage_pair(g, LSTUB_PAIR_SHARED, 0.9e-3); }
 static void pair_round_via(stage *g, double loss) { pair_round(g, loss); stage_place(g, -0.9e-3, 0.2e-3, 0, 5); }
@@ -74,8 +77,8 @@ static const struct { const char *what; build *make; int closed; } rows[] = {
     {"four vias", single_ring, 0}, {"one via", single_one, 0}, {"no via", single_none, 0}, {"a wall", single_wall, 0},
     {"vias of any span", single_places, 0}, {"three ports", three, 0}, {"two traces in one space", two_in_one_space, 0},
     {"drilled from both ends", drilled_twice, 0}, {"a free upper end", free_top, 0}, {"a lid", lid, 0}, {"a lid and a wall", lid_and_wall, 1},
-    {"open edges", open_edges, 0},
-    {"shorted edges", shorted_edges, 0}, {"a pair", pair_round, 0}, {"a pair in a slot", pair_slot, 0},
+    {"a microstrip on top", microstrip_top, 0}, {"microstrips on both sides", microstrip_both, 0}, {"open edges", open_edges, 0},
+    {"shorted edges", shorted_edges, 0}, {"edges and vias", edges_and_vias, 0}, {"a pair", pair_round, 0}, {"a pair in a slot", pair_slot, 0},
     {"a pair with vias", pair_round_via, 0}, {"a pair in a slot in a ring", pair_slot_ring, 0}, {"an unequal pair", pair_unequal, 0},
     {"an unequal pair in a slot", pair_unequal_slot, 0}, {"a pair unequal at the top", pair_unequal_top, 0},
     {"stubs removed", removed, 0},

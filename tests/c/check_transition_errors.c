@@ -420,6 +420,13 @@ START_TEST(random_transitions)
             for (int k = 0; k < 2 * p * p; k++)
                 ck_assert_msg(each[i] < 0 ? isnan(s[i * 2 * p * p + k]) : isfinite(s[i * 2 * p * p + k]), "%d: status %d, %.9g at %.9g Hz", n, (int)each[i],
                               s[i * 2 * p * p + k], f[i]);
+        for (int i = 0; i < 6; i++) {
+            double sigma;
+            if (each[i] < 0)
+                continue;
+            assert_ok(lstub_network_passivity(s + i * 2 * p * p, 1, p, &sigma, NULL, &err), err);
+            ck_assert_msg(sigma <= 1.0 + 1e-6, "%d: gains %.3g at %.9g Hz", n, sigma - 1.0, f[i]);
+        }
         lstub_transition_destroy(t);
         stage_end(&g);
     }

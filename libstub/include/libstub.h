@@ -587,8 +587,9 @@ typedef struct lstub_via {
                                       is soldered and fills the hole, which is then never drilled      */
     const double *return_xy;       /* m, [2 return_count]: x, y of the return vias about the axis; null:
                                       evenly spread on the circle of radius return_distance. The partner of
-                                      a pair is at (pair_pitch, 0); the mirror images of its vias are added,
-                                      and of evenly spread ones no more than 6 stand for all           */
+                                      a pair is at (pair_pitch, 0). A stub's odd mode adds the mirror images of
+                                      its vias, of evenly spread ones no more than 6 in all; a transition takes
+                                      given places as they are                                         */
     double  outside_dk;            /* of what lies beyond the outer copper; 0: 1, air        1 to 1000 */
     double  lid_distance;          /* m, from the outer copper to a conducting lid; 0: open space      */
     double  hole_dk;               /* of what fills a drilled hole; 0: 1, air                1 to 1000 */

@@ -236,7 +236,21 @@ static double end_pull(const lstub__site *site, int32_t end, double sign)
 
 int lstub__edges_even(const lstub_via *in)
 {
-    return fabs(in->edges[0] - (in->edges[1] - in->pair_pitch)) <= 1e-9;
+    return in->edges[0] == 0.0 || fabs(in->edges[0] - (in->edges[1] - in->pair_pitch)) <= 1e-9;
+}
+
+int lstub__pair_even(const lstub_via *in)
+{
+    for (int32_t i = 0; in->return_xy != NULL && i < in->return_count; i++) {
+        int32_t k = 0;
+        while (k < in->return_count
+               && (hypot(in->return_xy[2 * k] - (in->pair_pitch - in->return_xy[2 * i]), in->return_xy[2 * k + 1] - in->return_xy[2 * i + 1]) > 1e-9
+                   || (in->return_spans != NULL && memcmp(&in->return_spans[2 * k], &in->return_spans[2 * i], 2 * sizeof in->return_spans[0]) != 0)))
+            k++;
+        if (k == in->return_count)
+            return 0;
+    }
+    return lstub__edges_even(in);
 }
 
 /* sign: of the partner, driven; 0: it is a barrel of its own. */

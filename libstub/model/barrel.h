@@ -37,6 +37,8 @@ int32_t lstub__barrel_make(lstub__barrel **out, const lstub__site *site, int arm
 int32_t lstub__barrel_whole(lstub__barrel **out, const lstub__site *site, const lstub__passage *way, lstub_error *err);
 /* Whether a pair stands in the middle of its planes: else it has no odd and even mode. */
 int     lstub__edges_even(const lstub_via *in);
+/* The same of its edges and its return vias at given places. */
+int     lstub__pair_even(const lstub_via *in);
 void    lstub__barrel_free(lstub__barrel *barrel);
 /* Impedance of its metals at f. */
 void    lstub__barrel_metals(const lstub__barrel *barrel, double f, cplx *surface);

@@ -369,6 +369,11 @@ typedef struct seam {               /* two slabs meet, or one and a half-space (
     int    tap;
 } seam;
 
+static int between_planes(const seam *m)
+{
+    return m->a != NULL && m->b != NULL && !(m->a->slab.vias & CAV_BEYOND) && !(m->b->slab.vias & CAV_BEYOND);
+}
+
 static double end_nearness(const lstub__cav_cut *own, double z, double width)
 {
     double near = own->end > 0.0 ? nearness(z - own->end, width) : 0.0;
@@ -407,7 +412,7 @@ static void face_between(const lstub__cav_barrel *barrel, const lstub__cav_cut *
     inner = r0 > 0.0 ? r0 : barrel->radius;     /* 0: dielectrics beyond the barrel's end, cut as its end is */
     reach = fmax(inner + REACH * gap, fmax(2.0 * mid, 2.0 * inner));
     if (mid == 0.0) reach = fmax(reach, 2.0 * barrel->hole + 3.0 * (upper != NULL ? upper->h : lower->h));
-    reach = fmin(reach, fmax(clear_radius(barrel), 1.2 * inner));
+    if (between_planes(m)) reach = fmin(reach, fmax(clear_radius(barrel), 1.2 * inner));
     r1 = least_outer(upper, lower, reach);
     if (mid < inner + 0.25 * (r1 - inner)) mid = inner + 0.25 * (r1 - inner);
     if (mid > inner + 0.75 * (r1 - inner)) mid = inner + 0.75 * (r1 - inner);

@@ -273,7 +273,7 @@ void cav_add_metal(const state *w, const cav_slab *s, cplx *loop, int n, int str
     wall = cplx_scale(z[0], s->h / s->r_in);
     if (s->metal_wall >= 0) wall = cplx_add(wall, cplx_scale(z[s->metal_wall], s->h / s->r_out));
     wall = cplx_scale(cplx_of(-wall.im, wall.re), w->k0 / LSTUB_ETA0);         /* jw eps0 Zs h/a */
-    if (n == 2 && loop[0].re < 0.0 && loop[stride + 1].re < 0.0) {             /* what two barrels share, too */
+    if (n == 2 && loop[0].re < 0.0 && loop[stride + 1].re < 0.0 && loop[1].re * loop[1].re < loop[0].re * loop[stride + 1].re) {  /* what two share */
         cplx shared = cplx_scale(cplx_of(planes.im, -planes.re), loop[1].re / (w->k0 * LSTUB_ETA0 * s->h));
         loop[1] = cplx_add(loop[1], shared);
         loop[stride] = cplx_add(loop[stride], shared);

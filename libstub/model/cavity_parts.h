@@ -64,10 +64,10 @@ typedef struct cav_mesh {
     int half_face[2];                           /* face that looks into the lower half-space, or -1     */
 } cav_mesh;
 
-/* Of a slab beyond the outermost plane: edges of planes are none of it. */
+/* Of a slab beyond the outermost plane: no vias, no edges. */
 #define CAV_BEYOND 0x80000000u
 
-/* Return vias that join two planes, a bit each; beyond the outermost plane (-INFINITY, INFINITY) those that reach it. */
+/* Return vias that join two planes, a bit each; CAV_BEYOND where there is none on one side (-INFINITY, INFINITY). */
 unsigned cav_joining(const lstub__cav_returns *returns, double above, double below);
 
 size_t cav_mesh_scratch(void);

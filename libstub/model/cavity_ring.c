@@ -49,27 +49,28 @@ static void waves(cplx kappa, double d, int n, cplx *k)
 
 /*
 ** Between planes with edges only order 0 knows of these (cavity_edge.c). What other orders radiate then has nowhere to go: of K_m
-** there is left the part that stands, K_m + j pi/2 (-1)^m I_m, for which nothing leaves without loss.
+** there is left the part that stands, K_m + j pi/2 (-1)^m I_m, for which nothing leaves without loss; of edges so far that little
+** comes back, e^(-2 kappa distance), as much less.
 */
-static cplx standing(cplx k, cplx i, int m)
+static cplx standing(cplx k, cplx i, int m, double part)
 {
-    double f = (m & 1 ? -0.5 : 0.5) * LSTUB_PI;
+    double f = (m & 1 ? -0.5 : 0.5) * LSTUB_PI * part;
 
     return cplx_of(k.re - f * i.im, k.im + f * i.re);
 }
 
 /* waves(), but for order 0, made to stand; *same: K0 so, for waves of equal orders other than 0. */
-static void near_waves(cplx kappa, double d, int n, int edges, cplx *k, cplx *same)
+static void near_waves(cplx kappa, double d, int n, double edges, cplx *k, cplx *same)
 {
     cplx i[2 * ORDERS + 2], rise = cplx_exp(cplx_scale(kappa, d));
     int m;
 
     waves(kappa, d, n, k);
     *same = k[0];
-    if (!edges) return;
+    if (edges == 0.0) return;
     lstub__bessel_zin(cplx_scale(kappa, d), n, i);
-    *same = standing(k[0], cplx_mul(i[0], rise), 0);
-    for (m = 1; m <= n; m++) k[m] = standing(k[m], cplx_mul(i[m], rise), m);
+    *same = standing(k[0], cplx_mul(i[0], rise), 0, edges);
+    for (m = 1; m <= n; m++) k[m] = standing(k[m], cplx_mul(i[m], rise), m, edges);
 }
 
 /* What a source at distance (dx, dy) from a via, seen from the source, sends into its order q, with the sign of the
@@ -115,15 +116,13 @@ static cplx even_ring(const lstub__cav_returns *r, cplx kappa)
 unsigned cav_joining(const lstub__cav_returns *r, double above, double below)
 {
     const double slack = 1e-9;
-    unsigned mask = above == -INFINITY || below == INFINITY ? CAV_BEYOND : 0;
+    unsigned mask = 0;
     int i;
 
+    if (above == -INFINITY || below == INFINITY) return CAV_BEYOND;     /* no pair of planes: nothing to join */
     for (i = 0; i < r->vias; i++) {
         const lstub__cav_via *v = &r->via[i];
-        int all = v->from == 0.0 && v->to == 0.0, up = above == -INFINITY || v->from <= above + slack, down = below == INFINITY || v->to >= below - slack;
-        if (above == -INFINITY) up = up && v->from <= below + slack;    /* beyond the outermost plane: reaches it */
-        if (below == INFINITY) down = down && v->to >= above - slack;
-        if (all || (up && down)) mask |= 1u << i;
+        if ((v->from == 0.0 && v->to == 0.0) || (v->from <= above + slack && v->to >= below - slack)) mask |= 1u << i;
     }
     return mask;
 }
@@ -163,7 +162,7 @@ static int list_scatterers(const lstub__cav_returns *r, unsigned mask, int barre
 }
 
 /* What the wave of scatterer i becomes at scatterer j, and back. */
-static void couple(const scatterer *i, const scatterer *j, cplx kappa, int edges, cplx *a, int n)
+static void couple(const scatterer *i, const scatterer *j, cplx kappa, double edges, cplx *a, int n)
 {
     cplx k[2 * ORDERS + 1], turns[2 * ORDERS + 1], same;
     double dx = j->x - i->x, dy = j->y - i->y, d = hypot(dx, dy);
@@ -253,6 +252,7 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
     scatterer list[LSTUB__CAV_VIAS + 2];
     cplx a[UNKNOWNS * UNKNOWNS], b[UNKNOWNS * 2], k[2 * ORDERS + 1], ratio[ORDERS + 1], barrel_ratio = cplx_of(0.0, 0.0), direct = cplx_of(0.0, 0.0), same;
     int vias = 0, top, count, n, i, j, v, s, columns = two ? 2 : 1, edges = r->edge[0] > 0.0 && !(mask & CAV_BEYOND);
+    double returned = edges ? exp(-2.0 * kappa.re * fmin(fmin(r->edge[0], r->edge[1]), fmin(r->edge[2], r->edge[3]))) : 0.0;
     const cplx zero = cplx_of(0.0, 0.0);
 
     for (i = 0; i < r->vias; i++) vias += (int)(mask >> i & 1u);
@@ -269,19 +269,19 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
         const scatterer *at = &list[j];
 
         rim_ratio(kappa, at->radius, at->order[at->orders - 1], ratio);
-        for (v = 1; edges && v <= at->order[at->orders - 1]; v++) ratio[v] = standing(ratio[v], cplx_of(1.0, 0.0), v);
+        for (v = 1; edges && v <= at->order[at->orders - 1]; v++) ratio[v] = standing(ratio[v], cplx_of(1.0, 0.0), v, returned);
         if (at->barrel == 0) barrel_ratio = ratio[1];
         for (v = 0; v < at->orders; v++) a[(at->first + v) * n + at->first + v] = ratio[abs(at->order[v])];
         for (s = 0; s < (r->pitch > 0.0 ? 2 : 1); s++) {            /* the barrels as sources */
             double dx = at->x - s * r->pitch;
             if (at->barrel == s) continue;
-            near_waves(kappa, hypot(dx, at->y), at->order[at->orders - 1] + 1, edges, k, &same);
+            near_waves(kappa, hypot(dx, at->y), at->order[at->orders - 1] + 1, returned, k, &same);
             for (v = 0; v < at->orders; v++) {
                 cplx *to = &b[(at->first + v) * columns + (two ? s : 0)];
                 *to = cplx_add(*to, cplx_scale(sent(k, dx, at->y, at->order[v]), s == 1 && !two ? r->sign : 1.0));
             }
         }
-        for (i = 0; i < j; i++) couple(&list[i], at, kappa, edges, a, n);
+        for (i = 0; i < j; i++) couple(&list[i], at, kappa, returned, a, n);
     }
     if (edges) add_edges(r, list, count, kappa, two, a, n, b, columns);
     if (n > 0 && lstub__zsolve(a, n, n, b, columns, columns) != 0) { out->gamma[0] = cplx_of(NAN, NAN); return; }
@@ -296,7 +296,7 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
         for (s = 0; s < columns; s++) {                             /* arriving at barrel s */
             double dx = s * r->pitch - from->x;
             if (from->barrel == s) continue;
-            near_waves(kappa, hypot(dx, from->y), from->order[from->orders - 1] + 1, edges, k, &same);
+            near_waves(kappa, hypot(dx, from->y), from->order[from->orders - 1] + 1, returned, k, &same);
             for (v = 0; v < from->orders; v++) {
                 cplx t = cplx_mul(k[abs(from->order[v])], turn(dx, -from->y, from->order[v]));
                 for (i = 0; i < columns; i++) out->gamma[columns * s + i] = cplx_fma(out->gamma[columns * s + i], t, b[(from->first + v) * columns + i]);

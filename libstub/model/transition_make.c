@@ -245,7 +245,7 @@ int32_t lstub_transition_create(const lstub_stackup *stackup, const lstub_via *v
     t->perfect = ours.metal == LSTUB_METAL_PERFECT;
     status = take_ports(t, &site.via, ports, count, stride, &way, err);
     way.removed = ours.stubs == LSTUB_STUBS_REMOVED;
-    int pair = site.via.in.pair_kind != LSTUB_PAIR_NONE, two = pair && ((site.via.unequal && !way.removed) || (has_edges(&site.via.in) && !lstub__edges_even(&site.via.in)));
+    int pair = site.via.in.pair_kind != LSTUB_PAIR_NONE, two = pair && ((site.via.unequal && !way.removed) || !lstub__pair_even(&site.via.in));
     t->modes = !pair ? 1 : two ? 0 : 2;
     t->remarks |= find_remarks(&site.via, two);
     for (int i = 0; status == LSTUB_OK && i < (t->modes == 2 ? 2 : 1); i++) {

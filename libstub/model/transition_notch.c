@@ -80,8 +80,9 @@ static void keep(seeing *c, double f, found *list)
 static void search(seeing *c, double f_max, found *list)
 {
     const double rise = pow(10.0, 0.1 * LEAST_DB), step = fmin(STEP, f_max / 64.0);
-    double at = step, least = power(step, c), highest = least;
-    for (int i = 2; i * step <= f_max; i++) {
+    int first = (int)ceil(1e6 / step);
+    double at = first * step, least = power(at, c), highest = least;
+    for (int i = first + 1; i * step <= f_max; i++) {
         double f = i * step, p = power(f, c);
         if (highest >= least * rise && p >= least * rise) {
             keep(c, lstub__dip(power, c, at - 0.99 * step, at + step), list);

@@ -53,6 +53,7 @@ static void stage_run(stage *g, const run *r)
     if (r->pair) {
         stage_pair(g, r->pair, 0.9e-3);
         stage_place(g, -0.9e-3, 0.0, 0, 10);
+        stage_place(g, 1.8e-3, 0.0, 0, 10);
     }
     if (r->drilled > 0.0) {
         stage_drill(g, LSTUB_SIDE_BOTTOM, r->drilled);

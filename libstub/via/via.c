@@ -440,8 +440,8 @@ static int32_t check_edges(const lstub_via *in, lstub_error *err)
         return lstub__fail(err, LSTUB_E_GEOMETRY, "edges", -1, "edges: must be 0 with a closed wall around the barrel");
     for (int32_t i = 0; given > 0 && in->return_xy != NULL && i < in->return_count; i++)
         if (beyond(in, in->return_xy[2 * i], in->return_xy[2 * i + 1]))
-            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: it or its mirror image lies beyond the edges of the "
-                               "planes", (long)i, in->return_xy[2 * i], in->return_xy[2 * i + 1]);
+            return lstub__fail(err, LSTUB_E_GEOMETRY, "return_xy", i, "return_xy[%ld] = %.9g, %.9g m: beyond the edges of the planes%s", (long)i,
+                               in->return_xy[2 * i], in->return_xy[2 * i + 1], in->pair_kind != LSTUB_PAIR_NONE ? ", it or its mirror image" : "");
     for (int i = 0; given > 0 && in->return_kind == LSTUB_RETURN_VIAS && in->return_xy == NULL && i < 4; i++)
         if (in->return_distance + 0.5 * in->return_drill + (i == 1 && in->pair_kind != LSTUB_PAIR_NONE ? in->pair_pitch : 0.0) >= in->edges[i])
             return lstub__fail(err, LSTUB_E_GEOMETRY, "return_distance", i, "return_distance = %.9g m: the return vias lie beyond edges[%d] = %.9g m",

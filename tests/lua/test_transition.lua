@@ -185,13 +185,13 @@ t.fails("to = 3: must be 1 to 2, a port of the first barrel", ls.E_ARGUMENT, two
 t.fails("f_max = -1 Hz", ls.E_ARGUMENT, whole:notches(-1))
 t.fails("count = 0", ls.E_ARGUMENT, make {})
 t.fails("ports[1]: there is no layer 'Z9'", ls.E_NONE, make { { layer = "Z9" } })
-t.fails("ports[2]: layer = 11: is not one that the via connects", ls.E_GEOMETRY, make { ports()[1], { layer = 11, impedance = 50 } })
-t.fails("ports[2]: layer = 1: has port 1 already", ls.E_GEOMETRY, make { ports()[1], ports()[1] })
+t.fails("ports[2]: layer = 11 'Z0.8': is not one that the via connects", ls.E_GEOMETRY, make { ports()[1], { layer = 11, impedance = 50 } })
+t.fails("ports[2]: layer = 1 'Z0': has port 1 already", ls.E_GEOMETRY, make { ports()[1], ports()[1] })
 t.fails("ports[1]: impedance = 0 ohm", ls.E_ARGUMENT, make { { layer = "Z0.7" } })
 t.fails("ports[2]: distance = 0.0001 m", ls.E_ARGUMENT, make(ports { distance = 1e-4 }))
 t.fails("ports[2]: z_ref = 0.5 ohm", ls.E_ARGUMENT, make(ports { z_ref = 0.5 }))
 t.fails("ports[1]: kind = 'coax': ", ls.E_GEOMETRY, make { { kind = "coax", layer = "Z0", impedance = 50 } })
-t.fails("layer = 5: a coaxial port is computed on the layer the barrel begins on, 1", ls.E_UNSUPPORTED,
+t.fails("layer = 5 'SIG1': a coaxial port is computed on the layer the barrel begins on, 1 'TOP'", ls.E_UNSUPPORTED,
   ls.transition(fixture.via(board), { ports = { { kind = "coax", layer = "SIG1" } } }))
 t.fails("a trace that leaves within a plane is not computed", ls.E_UNSUPPORTED, ls.transition(
   fixture.via(board, { connects = { "TOP", "GND2" }, antipads = { GND2 = 0.8e-3 } }), { ports = { { layer = "GND2", impedance = 50 } } }))

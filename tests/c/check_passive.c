@@ -71,6 +71,7 @@ static void pair_unequal_top(stage *g, double loss)
     stage_drill(g, LSTUB_SIDE_TOP, 0.3e-3);
     stage_partner(g, LSTUB_SIDE_TOP, 0.15e-3);
 }
+static void pair_edges(stage *g, double loss) { pair_round(g, loss); stage_edges(g, LSTUB_EDGE_OPEN, 6e-3, 8e-3, 6e-3, 8e-3); }
 static void removed(stage *g, double loss) { three(g, loss); g->options.stubs = LSTUB_STUBS_REMOVED; }
 
 static const struct { const char *what; build *make; int closed; } rows[] = {
@@ -80,7 +81,7 @@ static const struct { const char *what; build *make; int closed; } rows[] = {
     {"a microstrip on top", microstrip_top, 0}, {"microstrips on both sides", microstrip_both, 0}, {"open edges", open_edges, 0},
     {"shorted edges", shorted_edges, 0}, {"edges and vias", edges_and_vias, 0}, {"a pair", pair_round, 0}, {"a pair in a slot", pair_slot, 0},
     {"a pair with vias", pair_round_via, 0}, {"a pair in a slot in a ring", pair_slot_ring, 0}, {"an unequal pair", pair_unequal, 0},
-    {"an unequal pair in a slot", pair_unequal_slot, 0}, {"a pair unequal at the top", pair_unequal_top, 0},
+    {"an unequal pair in a slot", pair_unequal_slot, 0}, {"a pair unequal at the top", pair_unequal_top, 0}, {"a pair between edges", pair_edges, 0},
     {"stubs removed", removed, 0},
 };
 

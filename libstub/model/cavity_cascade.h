@@ -38,6 +38,8 @@ typedef struct cav_w {              /* the axial flux: a line along the barrel, 
 } cav_w;
 
 int  cav_step_up(cav_load *l, const cav_step *c);                                            /* cavity_eval.c */
+/* Inverse of a 1 x 1 or symmetric 2 x 2 matrix. */
+void cav_invert(const cplx *a, int n, cplx *out);
 void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_step *c);       /* cavity_pair.c */
 
 void cav_flux_start(state *w, cav_w *flux);                                                   /* cavity_flux.c */

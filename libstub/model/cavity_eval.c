@@ -10,8 +10,7 @@
 
 /* ---- steps -------------------------------------------------------------------------------------- */
 
-/* Inverse of a 1 x 1 or symmetric 2 x 2 matrix. */
-static void invert(const cplx *a, int n, cplx *out)
+void cav_invert(const cplx *a, int n, cplx *out)
 {
     cplx det;
 
@@ -78,7 +77,7 @@ int cav_step_up(cav_load *l, const cav_step *c)
         for (k = 0; k < n; k++) loop[q * n + k] = cplx_add(c->loop[q * n + k], g[(na + q) * wide + na + k]);
         for (i = 0; i < na; i++) d[q][i] = cplx_sub(c->top[q][i], g[i * wide + na + q]);
     }
-    if (n > 0) invert(loop, n, gamma);
+    if (n > 0) cav_invert(loop, n, gamma);
     if (l->columns + c->pending > 0) columns_up(l, c, g, wide, gamma, d);
     for (q = 0; q < n; q++)
         for (i = 0; i < na; i++) {
@@ -237,17 +236,15 @@ static int climb(state *w, cav_load *l)
         if (flux.on) cav_flux_stop(&flux, l);
         for (b = 0; b < m->barrels; b++) cells[b] = m->opening[m->cap_opening[b]].cells;
         for (b = 0; b < m->barrels; b++) if (m->cap_tap[b] >= 0) join_trace(m, l, cells, b, m->cap_tap[b]);
+        cav_load above;                         /* what the barrel's upper end sees: the space under a lid, or open */
+        above.n = above.traces = above.columns = 0;
         if (m->lid_top) {
-            cav_load above;                     /* the space under the lid, as seen from the barrel's upper end */
-            above.n = above.traces = above.columns = 0;
             cav_step_make(w, 0, &flux, &room, &c);
             if (cav_step_up(&above, &c) != 0) return -1;
-            for (i = 0; i < l->n * l->n; i++) l->y[i] = cplx_add(l->y[i], above.y[i]);
         } else {
-            cav_load above;
             half_spaces(w, m->cap_opening, m->half_top, &above);
-            for (i = 0; i < l->n * l->n; i++) l->y[i] = cplx_add(l->y[i], above.y[i]);
         }
+        for (i = 0; i < l->n * l->n; i++) l->y[i] = cplx_add(l->y[i], above.y[i]);
     }
     return 0;
 }

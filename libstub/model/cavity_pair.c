@@ -2,7 +2,7 @@
 ** A slab of one barrel, with the axial flux, or of two barrels side by side.
 **
 ** Loss in metal: mode 0's loops are inductances jw mu0 h/(2 pi rho), in series with the surface impedance of the barrel, Zs h/(2 pi a),
-** and with that of the planes, over which its current spreads as its flux does: n planes make mu0 (1 + n Zs/(jw mu0 h)).
+** and with that of the planes, over which its current spreads as its flux does: Zs/(w mu0 h) of the loop's magnitude for each.
 **
 ** Two barrels: each has its own waves as if it were alone (Q = 0), and mode 0 ties them. A barrel's wave K0 comes back to barrel q
 ** as Gamma_qp I0. With T = I0/K0 of each barrel that passes (0 where it has ended) and G = Gamma (1 + T Gamma)^-1 the radial
@@ -144,29 +144,27 @@ static void tie(state *w, const cav_slab *const *each, const two *v, cav_step *c
 {
     const cav_slab *s = each[0];
     const cplx one = cplx_of(1.0, 0.0);
-    cplx r[4], unit = cplx_of(-1.0 / (s->h * w->k0 * w->k0), 0.0), det, ratio;
+    cplx r[4], ratio;
     int i, q;
 
     admittances(w, each, v->present, r);
+    for (i = 0; i < 4; i++) r[i] = cplx_scale(r[i], -1.0 / (s->h * w->k0 * w->k0));
     if (v->present[0] && v->present[1]) {
         c->loops = 2;
         add_column(c, v, 0, 0, one);
         add_column(c, v, 1, 1, one);
-        det = cplx_inv(cplx_mul(unit, cplx_fms(cplx_mul(r[0], r[3]), r[1], r[2])));
-        c->loop[0] = cplx_mul(r[3], det);
-        c->loop[3] = cplx_mul(r[0], det);
-        c->loop[1] = c->loop[2] = cplx_neg(cplx_mul(r[1], det));
+        cav_invert(r, 2, c->loop);
     } else if (v->present[0] || v->present[1]) {
         q = v->present[0] ? 0 : 1;
         ratio = cplx_div(r[1], r[3 * q]);
         c->loops = 1;
         add_column(c, v, 0, q, one);
         add_column(c, v, 0, 1 - q, ratio);
-        c->loop[0] = cplx_inv(cplx_mul(unit, r[3 * q]));
-        add_term(c, v, 1 - q, 1 - q, cplx_mul(unit, cplx_fms(r[3 - 3 * q], ratio, r[1])));
+        c->loop[0] = cplx_inv(r[3 * q]);
+        add_term(c, v, 1 - q, 1 - q, cplx_fms(r[3 - 3 * q], ratio, r[1]));
     } else {
         c->loops = 0;
-        for (i = 0; i < 4; i++) add_term(c, v, i / 2, i % 2, cplx_mul(unit, r[i]));
+        for (i = 0; i < 4; i++) add_term(c, v, i / 2, i % 2, r[i]);
     }
 }
 
@@ -190,16 +188,14 @@ static void pair_step(state *w, int slab, cav_room *room, cav_step *c)
         point(&b[i], room->own[i], room->ends[i]);
         cav_block(w, s[i], &b[i]);
         if (b[i].top != room->ends[i]) {        /* kept, and the keeper may be overwritten by the other's */
-            memcpy(room->own[i], b[i].tt, (size_t)(v.na[i] * v.na[i]) * sizeof(cplx));
-            memcpy(room->own[i] + CAV_CELLS * CAV_CELLS, b[i].bb, (size_t)(v.nb[i] * v.nb[i]) * sizeof(cplx));
-            memcpy(room->own[i] + 2 * CAV_CELLS * CAV_CELLS, b[i].tb, (size_t)(v.na[i] * v.nb[i]) * sizeof(cplx));
-            memcpy(room->ends[i], b[i].top, (size_t)v.na[i] * sizeof(cplx));
-            memcpy(room->ends[i] + CAV_CELLS, b[i].bottom, (size_t)v.nb[i] * sizeof(cplx));
-            b[i].tt = room->own[i];
-            b[i].bb = room->own[i] + CAV_CELLS * CAV_CELLS;
-            b[i].tb = room->own[i] + 2 * CAV_CELLS * CAV_CELLS;
-            b[i].top = room->ends[i];
-            b[i].bottom = room->ends[i] + CAV_CELLS;
+            block kept = b[i];
+            point(&b[i], room->own[i], room->ends[i]);
+            memcpy(b[i].tt, kept.tt, (size_t)(v.na[i] * v.na[i]) * sizeof(cplx));
+            memcpy(b[i].bb, kept.bb, (size_t)(v.nb[i] * v.nb[i]) * sizeof(cplx));
+            memcpy(b[i].tb, kept.tb, (size_t)(v.na[i] * v.nb[i]) * sizeof(cplx));
+            memcpy(b[i].top, kept.top, (size_t)v.na[i] * sizeof(cplx));
+            memcpy(b[i].bottom, kept.bottom, (size_t)v.nb[i] * sizeof(cplx));
+            b[i].loop = kept.loop;
         }
         v.top[i] = b[i].top;
         v.bottom[i] = b[i].bottom;

@@ -17,6 +17,15 @@
 
 typedef struct wave { cplx t, c, own, metal, ended; double h; int barrel; } wave;
 
+/* Answer of a short circuit at a radius. */
+static cplx ended(const state *w, double reach, int medium)
+{
+    cplx i0, k0;
+
+    lstub__bessel_zik0(cplx_scale(w->kappa[medium], reach), &i0, &k0);
+    return cplx_neg(cplx_div(k0, i0));
+}
+
 static void common(state *w, const cav_region *r, cplx *gamma)
 {
     const cav_slab *s = &w->m->slab[r->ref];
@@ -26,18 +35,8 @@ static void common(state *w, const cav_region *r, cplx *gamma)
     if (s->outer == LSTUB__CAV_RING) {
         memcpy(gamma, cav_echo_of(w, s)->gamma, 4 * sizeof gamma[0]);
     } else if (s->outer == LSTUB__CAV_WALL) {
-        cplx i0, k0;
-        lstub__bessel_zik0(cplx_scale(w->kappa[s->medium], s->r_out), &i0, &k0);
-        gamma[0] = cplx_neg(cplx_div(k0, i0));
+        gamma[0] = ended(w, s->r_out, s->medium);
     }
-}
-
-static cplx ended(const state *w, double reach, int medium)
-{
-    cplx i0, k0;
-
-    lstub__bessel_zik0(cplx_scale(w->kappa[medium], reach), &i0, &k0);
-    return cplx_neg(cplx_div(k0, i0));
 }
 
 static wave wave_of(state *w, const cav_slab *s, int barrel)

@@ -16,25 +16,23 @@ typedef struct seeing {
 static double power(double f, const void *context)
 {
     const seeing *c = context;
+    const lstub_transition *t = c->t;
+    int m = t->ways, at = c->to * (t->modes == 0 ? 2 * m : m) + c->from;
     cplx s[4 * LSTUB__WAYS * LSTUB__WAYS];
-    int n = c->t->modes == 0 ? 2 * c->t->ways : c->t->ways, m = c->t->ways;
-    if (c->t->modes != 0 || c->mode == LSTUB_MODE_SINGLE) {
-        if (c->t->modes == 2 && c->mode == LSTUB_MODE_SINGLE) {
-            cplx e[LSTUB__WAYS * LSTUB__WAYS], sum;
-            int a = c->to % m, b = c->from % m, across = (c->to < m) != (c->from < m);
-            lstub__transition_mode(c->t, 0, f, s);
-            lstub__transition_mode(c->t, 1, f, e);
-            sum = across ? cplx_sub(e[a * m + b], s[a * m + b]) : cplx_add(e[a * m + b], s[a * m + b]);
-            return 0.25 * cplx_norm(sum);
-        }
-        lstub__transition_mode(c->t, c->mode == LSTUB_MODE_EVEN ? 1 : 0, f, s);
-        return cplx_norm(s[c->to * n + c->from]);
+    if (c->mode == LSTUB_MODE_SINGLE) {
+        double all[LSTUB__TABLE_SIZE];
+        const double *one = &all[2 * (c->to * t->size + c->from)];
+        lstub__transition_whole(t, f, all);
+        return one[0] * one[0] + one[1] * one[1];
     }
-    double sign = c->mode == LSTUB_MODE_ODD ? -1.0 : 1.0;
-    lstub__transition_mode(c->t, 0, f, s);
-    cplx own = cplx_add(s[c->to * n + c->from], s[(c->to + m) * n + c->from + m]);
-    own = cplx_add(own, cplx_scale(cplx_add(s[c->to * n + c->from + m], s[(c->to + m) * n + c->from]), sign));
-    return 0.25 * cplx_norm(own);
+    if (t->modes == 2) {
+        lstub__transition_mode(t, c->mode == LSTUB_MODE_EVEN, f, s);
+        return cplx_norm(s[at]);
+    }
+    lstub__transition_mode(t, 0, f, s);             /* both barrels in one model: the mean of what each does in that mode */
+    const cplx *first = &s[at], *second = &s[at + m * (2 * m + 1)];
+    cplx own = cplx_add(first[0], second[0]), across = cplx_add(first[m], second[-m]);
+    return 0.25 * cplx_norm(c->mode == LSTUB_MODE_ODD ? cplx_sub(own, across) : cplx_add(own, across));
 }
 
 static double over_level(double f, const void *context) { return power(f, context) - ((const seeing *)context)->level; }

@@ -79,6 +79,7 @@ build = {
         "libstub/model/cavity_region.c",
         "libstub/model/cavity_ring.c",
         "libstub/model/cavity_sheet.c",
+        "libstub/model/cavity_step.c",
         "libstub/model/cavity_wave.c",
         "libstub/model/coupons.c",
         "libstub/model/ladder.c",

@@ -111,7 +111,6 @@ int  lstub__cavity_compile(const lstub__cav_barrel *barrel, const lstub__cav_opt
                            void *(*allocate)(void *, size_t), void (*release)(void *, void *), void *user,
                            lstub__cavity **out);
 void lstub__cavity_destroy(lstub__cavity *cavity);         /* null is allowed */
-size_t lstub__cavity_bytes(const lstub__cavity *cavity);
 
 /* Highest frequency at which the series of the compiled model hold, Hz: 1.1 times f_max, less where a slab is thicker than
 ** 0.7 wavelengths. Above it results are wrong without any sign: the caller must compare. */
@@ -127,7 +126,5 @@ cplx lstub__cavity_zin(const lstub__cavity *cavity, double freq, const cplx *eps
 */
 #define LSTUB__CAV_PORTS (2 * (LSTUB__CAV_TAPS + 1))
 int lstub__cavity_ports(const lstub__cavity *cavity, double freq, const cplx *eps, const cplx *surface, cplx *z);
-/* Amplitude of I0(kappa rho) that answers K0(kappa rho) from the barrel, in a cavity of this medium between two depths. */
-cplx lstub__cavity_answer(const lstub__cav_returns *returns, double from, double to, cplx kappa);
 
 #endif

@@ -40,14 +40,16 @@ typedef struct cav_w {              /* the axial flux: a line along the barrel, 
 int  cav_step_up(cav_load *l, const cav_step *c);                                            /* cavity_eval.c */
 /* Inverse of a 1 x 1 or symmetric 2 x 2 matrix. */
 void cav_invert(const cplx *a, int n, cplx *out);
-void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_step *c);       /* cavity_pair.c */
+void cav_step_make(state *w, int slab, const cav_w *flux, cav_room *room, cav_step *c);       /* cavity_step.c */
+void cav_step_clear(cav_step *c, cav_room *room, int na, int nb);                             /* all zero, in that room */
+void cav_block_at(block *b, cplx *own, cplx *ends);
+void cav_pair_step(state *w, int slab, cav_room *room, cav_step *c);                          /* cavity_pair.c */
 
 void cav_flux_start(state *w, cav_w *flux);                                                   /* cavity_flux.c */
 void cav_flux_plane(const state *w, cav_w *flux, const cav_slab *s, cav_load *l);
 void cav_flux_stop(cav_w *flux, cav_load *l);
 
 
-void cav_wave_of(state *w, const cav_slab *s, cplx *t, cplx *c, cplx *own);
 void cav_add_metal(const state *w, const cav_slab *s, cplx *loop, int n, int stride);
 void cav_region_end(state *w, const cav_region *r, cav_load *l);                              /* cavity_region.c */
 void cav_take_sheets(const state *w, int feeds, int ports, cplx *z);                                /* cavity_sheet.c */

@@ -664,7 +664,6 @@ static int build(work *w, lstub__cavity **out)
     p.base = get(w, p.at);
     if (p.base == NULL) return -1;
     *out = (lstub__cavity *)(void *)p.base;
-    (*out)->bytes = p.at;
     (*out)->release = w->release;
     (*out)->user = w->user;
     p.at = 0;
@@ -716,8 +715,6 @@ int lstub__cavity_compile(const lstub__cav_barrel *barrel, const lstub__cav_opti
     if (scratch != NULL) release(user, scratch);
     return failed;
 }
-
-size_t lstub__cavity_bytes(const lstub__cavity *cavity) { return cavity->bytes; }
 
 void lstub__cavity_destroy(lstub__cavity *cavity)
 {

@@ -48,7 +48,6 @@ typedef struct cav_region {
 } cav_region;
 
 struct lstub__cavity {
-    size_t  bytes;
     void  (*release)(void *, void *);
     void   *user;
     int     barrels, slabs, openings, kernels, media, outer, rim_sets, answers;

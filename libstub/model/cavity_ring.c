@@ -310,11 +310,3 @@ void cav_ring(const lstub__cav_returns *r, unsigned mask, int barrels, double ra
         out->flux = flux_shape(r, b[own->first], b[own->first + 1], barrel_ratio, radius, kappa);
     }
 }
-
-cplx lstub__cavity_answer(const lstub__cav_returns *r, double from, double to, cplx kappa)
-{
-    cav_echo echo;
-
-    cav_ring(r, cav_joining(r, from, to), 0, 0.0, kappa, 0, &echo);
-    return echo.gamma[0];
-}

@@ -74,6 +74,7 @@ static inline int cav_shared(const state *w, const cav_slab *s) { return s->regi
 /* A mode at the rims of an opening of a slab: cavity_wave.c. */
 void cav_make_form(state *w, const cav_slab *s, int mode, mode_form *f);
 void cav_mode_on(state *w, const mode_form *f, const cav_slab *s, const cav_opening *o, int mode, mode_at *v);
+void cav_wave_of(state *w, const cav_slab *s, cplx *t, cplx *c, cplx *own);
 const cav_echo *cav_echo_of(state *w, const cav_slab *s);
 
 /* The block of a slab: cavity_block.c. `own` has room for N x N cells in each matrix; the result may lie elsewhere. */

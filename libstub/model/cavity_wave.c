@@ -251,6 +251,30 @@ void cav_make_form(state *w, const cav_slab *s, int mode, mode_form *f)
     f->w = cplx_div(f->scale, d);
 }
 
+/*
+** Of mode 0 in a slab as if alone: T, what stands for 1/K0, and kappa a K1/K0 (0 where no barrel passes); a: the barrel's radius
+** or that of the pad on it.
+*/
+void cav_wave_of(state *w, const cav_slab *s, cplx *t, cplx *c, cplx *own)
+{
+    cplx k = w->kappa[s->medium], e = cplx_exp(cplx_scale(k, s->r_in));
+    lstub__zik b;
+
+    *t = *own = cplx_of(0.0, 0.0);
+    *c = cplx_mul(k, k);
+    if (s->r_in > 0.0) {
+        lstub__bessel_zik(cplx_scale(k, s->r_in), &b);
+        *t = cplx_mul(cplx_div(b.i0, b.k0), cplx_mul(e, e));
+        *c = cplx_div(e, b.k0);
+        *own = cplx_scale(cplx_mul(k, cplx_div(b.k1, b.k0)), s->r_in);
+    } else if (s->fill >= 0) {
+        mode_form f;
+        cav_make_form(w, s, 0, &f);
+        *t = f.t;
+        *c = cplx_div(cplx_mul(k, k), f.kappa);
+    }
+}
+
 static void hole_at(const mode_form *f, const cav_slab *s, const cav_opening *o, mode_at *v)
 {
     int p;
